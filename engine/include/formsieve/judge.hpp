@@ -1,0 +1,126 @@
+// Room judge, result types: scores, the ranked shortlist and its named lines. May call: base and the result types of
+// fit, checks, backtransform, forms.
+#pragma once
+
+#include <formsieve/backtransform.hpp>
+#include <formsieve/checks.hpp>
+#include <formsieve/fit.hpp>
+#include <formsieve/forms.hpp>
+
+#include <cstddef>
+#include <cstdint>
+#include <map>
+#include <optional>
+#include <string>
+#include <vector>
+
+namespace formsieve::judge {
+
+/// Cross-validated error over all held-out rows and repeats, in own units unless named otherwise. Unset where a
+/// held-out prediction is undefined.
+struct CrossValidation {
+  std::optional<double> rmse;        ///< with training-fold smearing
+  std::optional<double> rmse_se;     ///< delta method from the fold-wise mean squared errors
+  std::optional<double> bias;        ///< mean of predicted − measured
+  std::optional<double> mae;         ///< mean absolute error
+  std::optional<double> mae_median;  ///< median absolute error
+  std::optional<double> rmse_naive;  ///< without bias correction
+  double rmse_form_scale = 0.0;      ///< on the response form's scale
+  double bias_form_scale = 0.0;
+  std::vector<double> fold_mse;  ///< [folds × repeats] own-units mean squared error by fold; NaN where undefined
+  std::size_t n_undefined = 0;   ///< held-out predictions that are undefined
+};
+
+/// Range of raw values seen by a term, and where its form is defined.
+struct ValidRange {
+  std::string column;
+  double seen_min = 0.0, seen_max = 0.0;
+  forms::Interval defined{};
+  std::vector<std::string> levels;  ///< text columns: the levels known
+};
+
+struct Term {
+  std::string column;
+  forms::Form form;
+};
+
+/// One examined candidate in full.
+struct Candidate {
+  std::size_t rank = 0;            ///< 1 = best by the plan's criterion, among all examined
+  std::string number;              ///< its number in the space, decimal
+  std::vector<std::string> marks;  ///< of "best", "recommended", "simplest", "lowest AIC"
+  std::string response_column;
+  forms::Form response;
+  std::vector<Term> terms;                     ///< in plan order
+  std::string equation;                        ///< on the form's scale, rounded for reading
+  std::vector<fit::Coefficient> coefficients;  ///< intercept first
+  std::size_t n = 0;
+  double rss = 0.0;    ///< weighted, form's scale
+  double sigma = 0.0;  ///< √(rss/(n − coefficients)), form's scale
+  fit::Likelihood likelihood;
+  CrossValidation cv;
+  double r2_form_scale = 0.0;
+  std::optional<double> r2_own_units;  ///< 1 − SSE/TSS of the smeared predictions on the rows in use
+  std::vector<checks::Check> checks;
+  backtransform::Summary back;
+  std::vector<ValidRange> ranges;
+  std::vector<std::string> cautions;
+};
+
+enum class Criterion { cv_rmse, aic, aicc, bic };
+
+/// What was searched, and how far.
+struct Coverage {
+  std::string candidates;  ///< decimal, exact
+  std::string scored;
+  std::string inseparable = "0";  ///< not entered because a relative pivot fell below the guard in some fold
+  std::string strategy = "every";
+  bool complete = true;  ///< false when stopped early
+  bool proved = true;    ///< the listed pool is certainly the best by its screening scores
+  double gap = 0.0;
+  std::size_t pooled = 0, examined = 0;
+  std::size_t set_aside_direction = 0;  ///< pooled candidates whose fitted effect contradicts a declared direction
+  std::size_t set_aside_require = 0;    ///< pooled candidates that fail a required check
+  std::string pool_formed;              ///< in words: which lists, how long
+  std::string pool_margin;              ///< in words: how far the last pooled lie behind the shortlist
+  double seconds = 0.0;                 ///< wall time of the search; not part of the byte-identical shortlist
+};
+
+struct DataSummary {
+  std::string file, sha256, response, weight, group, order, fold;
+  std::size_t rows_read = 0, rows_used = 0;
+  std::vector<std::pair<std::string, std::size_t>>
+      dropped;  ///< column, rows dropped because it was missing there (first such column in table order)
+};
+
+struct FoldSummary {
+  std::size_t count = 0, repeats = 1;
+  std::uint64_t seed = 0;
+  std::string kind;  ///< "shuffled", "grouped", "ordered", "given"
+};
+
+/// Menus as searched.
+struct PredictorMenu {
+  std::string column;
+  bool always = false;
+  std::vector<forms::Form> forms;
+  std::vector<std::string> labels;
+  std::vector<std::string> notes;  ///< struck and merged forms with their reasons
+};
+
+struct Shortlist {
+  std::string formsieve;  ///< version that wrote it
+  DataSummary data;
+  Coverage space;
+  FoldSummary folds;
+  Criterion criterion = Criterion::cv_rmse;
+  double near_tie = 0.02;
+  std::vector<forms::Form> responses;
+  std::vector<std::string> response_notes;
+  std::vector<PredictorMenu> menus;
+  std::vector<Candidate> candidates;  ///< the first `rank.shortlist` by rank, then named lines that lie further down
+  std::vector<std::string> remarks;   ///< sentences about the whole result (picks that differ, folds reduced, …)
+  std::vector<std::string> cautions;  ///< said once per result
+};
+
+}  // namespace formsieve::judge

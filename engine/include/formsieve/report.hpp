@@ -1,0 +1,23 @@
+// Room report: JSON and CSV of results. Computes nothing. May call: base, result types; forms for printed equations.
+#pragma once
+
+#include <formsieve/base.hpp>
+#include <formsieve/judge.hpp>
+#include <formsieve/survey.hpp>
+
+#include <string>
+
+namespace formsieve::report {
+
+/// shortlist.json, schema 1 (design.md, "What a run folder holds"). Doubles read back to the same bits; non-finite
+/// values are null.
+std::string shortlist_json(const judge::Shortlist& shortlist);
+Result<judge::Shortlist> read_shortlist_json(const std::string& text, const std::string& path);
+
+/// One line a candidate, RFC 4180, decimal point.
+std::string shortlist_csv(const judge::Shortlist& shortlist);
+
+/// survey.json
+std::string survey_json(const survey::Survey& survey);
+
+}  // namespace formsieve::report

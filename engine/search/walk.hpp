@@ -1,0 +1,67 @@
+// The exact elimination walk over every candidate, in plain form.
+//
+// For fold f, A is the training Gram with the intercept eliminated and V the validation Gram after the same
+// elimination. Bringing column c in:
+//     A_ij ← A_ij − A_ic A_cj / A_cc
+//     V_ij ← V_ij − m_i V_cj − V_ic m_j + m_i m_j V_cc,   m = A_c· / A_cc
+// Afterwards A_yy is the training RSS and V_yy the held-out sum of squared errors of that fold, exactly (Furnival &
+// Wilson 1974 for the sharing of eliminations along a tree).
+#pragma once
+
+#include "base/gram.hpp"
+#include "search/space.hpp"
+
+#include <cstddef>
+#include <cstdint>
+#include <functional>
+#include <stop_token>
+#include <vector>
+
+namespace formsieve::search {
+
+/// Which score a list of the pool is ordered by. All are per response form; smaller is better.
+enum class Score {
+  cv_sse,         ///< held-out sum of squared errors on the form's scale, over all folds and repeats
+  penalised_rss,  ///< RSS · exp(penalty[k] / n): orders as AIC, AICc or BIC within one response form
+};
+
+struct PoolRule {
+  Score score = Score::cv_sse;
+  std::size_t keep = 0;  ///< per response form
+  std::vector<double>
+      penalty;  ///< penalised_rss: criterion penalty by number of design columns k, 0 … most; may hold +infinity
+};
+
+struct WalkOptions {
+  std::vector<PoolRule> rules;
+  unsigned threads = 0;  ///< 0: all that the process may use
+  std::stop_token stop;
+  std::function<void(std::uint64_t scored)> progress;  ///< called from worker threads with increments; may be empty
+  double smallest_pivot_rel =
+      1e-8;  ///< a child below it in any fold (or in all rows) is not entered (search.md section 3)
+};
+
+struct Scored {
+  Choice choice;
+  BigCount number;
+  double cv_sse = 0.0;        ///< response_scale applied: form's scale
+  double rss = 0.0;           ///< all rows, form's scale
+  std::size_t n_columns = 0;  ///< design columns without intercept
+};
+
+struct WalkResult {
+  /// [rule][response] best first, ties by candidate number; the same for any number of threads when complete.
+  std::vector<std::vector<std::vector<Scored>>> lists;
+  std::uint64_t n_scored = 0;
+  BigCount n_inseparable = 0;  ///< candidates below a child that was not entered
+  bool complete = true;        ///< false when stopped
+};
+
+/// Scores every candidate. Cost: O(folds) for the last predictor of each candidate, O(folds · open columns²) per
+/// interior node; nothing depends on the number of rows.
+WalkResult walk(const Space& space, const base::GramSet& grams, const WalkOptions& options);
+
+/// Candidates scored per second on a thread, from a walk over a sample of subtrees for about `seconds`.
+double calibrate(const Space& space, const base::GramSet& grams, const WalkOptions& options, double seconds);
+
+}  // namespace formsieve::search
