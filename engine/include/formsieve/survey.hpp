@@ -60,18 +60,28 @@ struct Options {
   std::size_t rare_level_count = 5;
   std::vector<std::string> ignore;
   std::string response;  ///< when given, its forms are response forms
+  unsigned threads = 0;  ///< 0: all that the process may use; the result does not depend on it
 };
 
-/// Profiles every column of a table. Errors (kind data): a bound that the data break, an unknown column in options.
-/// Cost O(columns · n log n).
+/// Profiles every column of a table that is not ignored. A predictor that repeats an earlier one, or the response, in
+/// every row is set aside too. Errors (kind data): a bound that the data break (the earliest row), bounds for text or
+/// the wrong way round, an unknown column in options (the nearest named). Cost O(columns · n log n).
 Result<Survey> profile(const table::Table& table, const Options& options);
 
-/// The facts and profile of one set of values; NaN counts as missing.
+/// Columns that cannot serve as predictors whatever the form, by name with the reason: no values, one value, one level,
+/// nearly as many levels as rows, only rare levels, a copy of another column. Those that profile() sets aside, without
+/// the cost of a profile: O(cells).
+std::map<std::string, std::string> unusable_columns(const table::Table& table, const Options& options);
+
+/// The facts and profile of one set of values as a predictor; NaN counts as missing, every other value is finite.
+/// Moments that too few values leave undefined are 0, and a note says so.
 ColumnProfile profile_numbers(const std::string& name, std::vector<double> values,
                               std::optional<std::pair<double, double>> bounds);
 
 /// Of the menu's one-column forms, those whose columns correlate beyond 0.9999 in absolute value on these rows are one
-/// form: the simpler is kept.
+/// form: the simpler is kept (forms::complexity, then menu order) and `merged` says so. A form of numbers with values
+/// beyond the range of doubles on these rows is struck. NaN in `values` is passed over; forms of several columns and
+/// levels are kept as they are. Cost O(entries² · n).
 forms::Menu merge_near_equal(forms::Menu menu, const std::vector<double>& values, const std::string& column);
 
 }  // namespace formsieve::survey

@@ -1,0 +1,1 @@
+#include <formsieve/pipeline.hpp>

@@ -1,0 +1,87 @@
+#include "survey/advice.hpp"
+
+#include <array>
+#include <charconv>
+#include <cmath>
+
+#include "survey/box_cox.hpp"
+#include "survey/words.hpp"
+
+namespace formsieve::survey {
+
+namespace {
+
+/// Log rule: values over more than one order of magnitude (Weisberg).
+constexpr double kWideRange = 10.0;
+/// Range rule: "considerably less than one order of magnitude" (Weisberg), read as a factor of 3, half an order.
+constexpr double kNarrowRange = 3.0;
+/// Medcouple below which the middle of the column counts as symmetric: a judgement.
+constexpr double kSymmetricMedcouple = 0.05;
+/// Share of missing values worth a sentence, since a candidate's rows are complete rows: a judgement.
+constexpr double kManyMissing = 0.1;
+/// Ratios beyond it are told as orders of magnitude.
+constexpr double kLargestTold = 1e6;
+
+std::string ratio_text(double smallest, double largest) {
+  const double orders = std::log10(largest) - std::log10(smallest);
+  if (orders >= std::log10(kLargestTold)) return "10^" + std::to_string(std::lround(orders));
+  std::array<char, 40> digits{};
+  const auto end = std::to_chars(digits.data(), digits.data() + digits.size(), largest / smallest,
+                                 std::chars_format::fixed, largest / smallest < kWideRange ? 2 : 0)
+                       .ptr;
+  return {digits.data(), end};
+}
+
+void add_range_rules(const forms::ColumnFacts& facts, std::vector<std::string>& notes) {
+  if (facts.min <= 0.0) return;
+  const double orders = std::log10(facts.max) - std::log10(facts.min);
+  const std::string ratio = "its largest value is " + ratio_text(facts.min, facts.max) + " times its smallest";
+  if (orders > std::log10(kWideRange)) {
+    notes.push_back(ratio + ", beyond 10: ln is likely to help (log rule, Weisberg; advice, not a filter)");
+  } else if (orders < std::log10(kNarrowRange)) {
+    notes.push_back(ratio +
+                    ", well under one order of magnitude: no transformation is likely to matter much (range rule, "
+                    "Weisberg; the limit of 3 is ours; advice, not a filter)");
+  }
+}
+
+void add_fragile_skewness(const ColumnProfile& profile, std::vector<std::string>& notes) {
+  const bool skewed = profile.skew == forms::SkewClass::moderate || profile.skew == forms::SkewClass::severe;
+  const double along = std::copysign(1.0, profile.facts.skewness) * profile.medcouple;
+  if (!skewed || along >= kSymmetricMedcouple) return;
+  notes.push_back("the skewness rests on few rows: the medcouple, which they cannot move, is " +
+                  readable(std::round(profile.medcouple * 1000.0) / 1000.0) +
+                  " (look at the outlying values before choosing a form; a judgement)");
+}
+
+void add_missing(const ColumnProfile& profile, std::vector<std::string>& notes) {
+  const double n_rows = static_cast<double>(profile.facts.n + profile.n_missing);
+  if (static_cast<double>(profile.n_missing) <= kManyMissing * n_rows) return;
+  notes.push_back("it is missing on " + std::to_string(profile.n_missing) + " of " +
+                  std::to_string(profile.facts.n + profile.n_missing) +
+                  " rows, which a search that uses it must leave out");
+}
+
+}  // namespace
+
+std::vector<std::string> advice(const ColumnProfile& profile, bool outlying_by_mean_deviation) {
+  std::vector<std::string> notes;
+  const forms::ColumnFacts& facts = profile.facts;
+  if (facts.n < 3)
+    notes.push_back("it has too few values for a skewness, which needs three (shown as 0)");
+  else if (facts.n < 4)
+    notes.push_back("it has too few values for an excess kurtosis, which needs four (shown as 0)");
+  add_range_rules(facts, notes);
+  add_fragile_skewness(profile, notes);
+  if (outlying_by_mean_deviation)
+    notes.push_back(
+        "more than half of its values are equal, so their median absolute deviation is 0; outlying values are judged "
+        "by the mean absolute deviation instead (common practice)");
+  if (profile.box_cox_lambda == kLowestLambda || profile.box_cox_lambda == kHighestLambda)
+    notes.push_back("the Box–Cox power of the column by itself lies at or beyond " + readable(*profile.box_cox_lambda) +
+                    ", the end of the range looked at");
+  add_missing(profile, notes);
+  return notes;
+}
+
+}  // namespace formsieve::survey
