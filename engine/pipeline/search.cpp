@@ -1,1 +1,308 @@
-// placeholder until the room is written
+#include <formsieve/pipeline.hpp>
+
+#include "base/parallel.hpp"
+#include "checks/checks.hpp"
+#include "judge/judge.hpp"
+#include "pipeline/estimate.hpp"
+#include "pipeline/examine.hpp"
+#include "pipeline/meter.hpp"
+#include "pipeline/outputs.hpp"
+#include "pipeline/pool.hpp"
+#include "pipeline/prepare.hpp"
+#include "search/walk.hpp"
+
+#include <spdlog/spdlog.h>
+
+#include <algorithm>
+#include <map>
+
+namespace formsieve::pipeline {
+
+namespace {
+
+/// Candidates examined between two looks at the wish to stop.
+constexpr std::size_t kExamineChunk = 64;
+
+/// Pooled candidates that are still examined after a stop, best of every list first, so that what was scored leaves a
+/// usable shortlist within seconds.
+constexpr std::size_t kExamineAfterStop = 256;
+
+/// The steps of one search, in order, each reading what the steps before it left.
+class Search {
+ public:
+  Search(const run::Plan& plan, const SearchOptions& options, std::stop_token stop)
+      : plan_(plan), options_(options), meter_(options.progress, plan.search.budget_seconds, std::move(stop)) {}
+
+  Result<SearchOutcome> run();
+
+ private:
+  Status check_plan() const;
+  Status read_and_prepare();
+  Status open_outputs();
+  Status count_and_announce();
+  void screen();
+  void examine();
+  void keep_only_required();
+  Status complete(std::vector<judge::Candidate>& candidates) const;
+  Status rank_and_complete();
+  void describe();
+  Result<SearchOutcome> write();
+
+  search::WalkOptions walk_options() const;
+  const search::Choice& choice_of(const judge::Candidate& candidate) const {
+    return choice_by_number_.at(candidate.number);
+  }
+
+  const run::Plan& plan_;
+  const SearchOptions& options_;
+  Meter meter_;
+  std::optional<Prepared> prepared_;
+  std::optional<Examiner> examiner_;
+  std::unique_ptr<Outputs> outputs_;
+  base::GramSet grams_;
+  std::vector<search::PoolRule> rules_;
+  search::WalkResult walked_;
+  std::vector<search::Scored> pool_;
+  std::map<std::string, search::Choice> choice_by_number_;
+  std::vector<judge::Candidate> candidates_;
+  judge::Shortlist shortlist_;
+  bool examined_all_ = true;
+};
+
+judge::Criterion criterion_of(const std::string& name) {
+  if (name == "aic") return judge::Criterion::aic;
+  if (name == "aicc") return judge::Criterion::aicc;
+  if (name == "bic") return judge::Criterion::bic;
+  return judge::Criterion::cv_rmse;
+}
+
+std::string kind_words(design::FoldKind kind) {
+  switch (kind) {
+    case design::FoldKind::grouped:
+      return "grouped";
+    case design::FoldKind::ordered:
+      return "ordered";
+    case design::FoldKind::given:
+      return "given";
+    case design::FoldKind::shuffled:
+      break;
+  }
+  return "shuffled";
+}
+
+Status Search::check_plan() const {
+  const auto known = checks::names();
+  for (const auto& name : plan_.rank.require) {
+    if (std::find(known.begin(), known.end(), name) != known.end()) continue;
+    std::string list;
+    for (const auto& check : known) list += (list.empty() ? "" : ", ") + check;
+    const auto near = run::nearest(name, known);
+    return Error{ErrorKind::plan, "'rank.require' names the check '" + name + "', which does not exist",
+                 where_in_plan(plan_, "rank.require"),
+                 near ? "did you mean '" + *near + "'?" : "the checks are " + list};
+  }
+  return {};
+}
+
+Status Search::read_and_prepare() {
+  meter_.begin("reading", 0.0, "rows");
+  auto table = load_table(plan_, options_.threads);
+  if (!table) return table.error();
+  auto prepared = prepare(std::move(*table), plan_);
+  if (!prepared) return prepared.error();
+  prepared_.emplace(std::move(*prepared));
+  return {};
+}
+
+Status Search::open_outputs() {
+  auto outputs = Outputs::open(folder_name(plan_, options_.out), options_.replace);
+  if (!outputs) return outputs.error();
+  outputs_ = std::move(*outputs);
+  outputs_->log().info("formsieve {}, table {} (sha256 {})", version(), prepared_->summary.file,
+                       prepared_->summary.sha256);
+  outputs_->log().info("{} rows read, {} in use; {} predictors", prepared_->summary.rows_read,
+                       prepared_->summary.rows_used, prepared_->data.predictors.size());
+  for (const auto& note : prepared_->notes) outputs_->log().info("{}", note);
+  return outputs_->write_inputs(*prepared_, plan_);
+}
+
+search::WalkOptions Search::walk_options() const {
+  search::WalkOptions options;
+  options.rules = rules_;
+  options.threads = options_.threads;
+  return options;
+}
+
+Status Search::count_and_announce() {
+  meter_.begin("building Gram matrices", 0.0, "rows");
+  auto grams = design::build_grams(prepared_->data, prepared_->folds, options_.threads);
+  if (!grams) return grams.error();
+  grams_ = std::move(*grams);
+  rules_ = pool_rules(*prepared_, plan_);
+  examiner_.emplace(*prepared_);
+  const Estimate time = estimate(*prepared_, grams_, walk_options(), *examiner_, plan_.search.pool);
+  if (auto status = check_budget(time, *prepared_, plan_); !status) return status;
+
+  Announcement news;
+  news.candidates = time.candidates.str();
+  news.n_responses = prepared_->data.response_forms.size();
+  news.n_predictors = prepared_->data.predictors.size();
+  for (const auto& menu : prepared_->menus) news.n_forms += menu.forms.size();
+  news.rows_read = prepared_->summary.rows_read;
+  news.rows_used = prepared_->summary.rows_used;
+  news.folds = prepared_->folds.count;
+  news.repeats = prepared_->folds.repeats;
+  news.seconds_estimate = time.total();
+  news.notes = prepared_->notes;
+  outputs_->log().info("{} candidates; about {} at {:.3g} candidates a second", grouped(time.candidates),
+                       duration_words(time.total()), time.candidates_per_second);
+  shortlist_.space.candidates = news.candidates;
+  if (options_.announce) options_.announce(news);
+  return {};
+}
+
+void Search::screen() {
+  meter_.begin("screening", search::BigCount(shortlist_.space.candidates).convert_to<double>(), "candidates");
+  search::WalkOptions options = walk_options();
+  options.stop = meter_.token();
+  options.progress = [this](std::uint64_t scored) { meter_.add(scored); };
+  walked_ = search::walk(prepared_->space, grams_, options);
+  meter_.end();
+  pool_ = unite(walked_, plan_.search.pool);
+  outputs_->log().info("screened {} candidates in {:.2f} s, {} inseparable; {} pooled", walked_.n_scored,
+                       meter_.seconds(), walked_.n_inseparable.str(), pool_.size());
+}
+
+void Search::examine() {
+  const bool stopped_before = meter_.stopped();
+  const std::size_t most = stopped_before ? std::min(pool_.size(), kExamineAfterStop) : pool_.size();
+  meter_.begin("examining", static_cast<double>(most), "candidates");
+  std::size_t examined = 0;
+  while (examined < most && !(examined > 0 && !stopped_before && meter_.stopped())) {
+    const std::size_t count = std::min(kExamineChunk, most - examined);
+    std::vector<Examined> results(count);
+    base::parallel_for(count, options_.threads, [&](std::size_t i) {
+      results[i] = examiner_->score(pool_[examined + i].choice, pool_[examined + i].number);
+      meter_.add(1);
+    });
+    for (auto& result : results) {
+      if (result.contradicts_direction) {
+        ++shortlist_.space.set_aside_direction;
+      } else if (result.candidate) {
+        choice_by_number_.emplace(result.candidate->number, result.choice);
+        candidates_.push_back(std::move(*result.candidate));
+      } else {
+        outputs_->log().warn("a pooled candidate could not be fitted: {}", result.failure);
+      }
+    }
+    examined += count;
+  }
+  meter_.end();
+  examined_all_ = examined == pool_.size();
+  shortlist_.space.pooled = pool_.size();
+  shortlist_.space.examined = examined;
+}
+
+Status Search::complete(std::vector<judge::Candidate>& candidates) const {
+  std::vector<Status> status(candidates.size());
+  base::parallel_for(candidates.size(), options_.threads,
+                     [&](std::size_t i) { status[i] = examiner_->complete(choice_of(candidates[i]), candidates[i]); });
+  for (const auto& one : status)
+    if (!one) return one;
+  return {};
+}
+
+/// Candidates that fail a required check are set aside and counted; the others keep their record.
+void Search::keep_only_required() {
+  const auto fails = [this](const judge::Candidate& candidate) {
+    return std::any_of(candidate.checks.begin(), candidate.checks.end(), [this](const checks::Check& check) {
+      return !check.passes &&
+             std::find(plan_.rank.require.begin(), plan_.rank.require.end(), check.name) != plan_.rank.require.end();
+    });
+  };
+  shortlist_.space.set_aside_require = std::erase_if(candidates_, fails);
+}
+
+Status Search::rank_and_complete() {
+  const bool checks_first = !plan_.rank.require.empty();
+  if (checks_first) {
+    if (auto status = complete(candidates_); !status) return status;
+    keep_only_required();
+  }
+  shortlist_.criterion = criterion_of(plan_.rank.by);
+  shortlist_.near_tie = plan_.rank.near_tie;
+  shortlist_.remarks = judge::rank(candidates_, shortlist_.criterion, plan_.rank.near_tie);
+  shortlist_.candidates = judge::select(candidates_, plan_.rank.shortlist);
+  return checks_first ? Status() : complete(shortlist_.candidates);
+}
+
+void Search::describe() {
+  shortlist_.formsieve = version();
+  shortlist_.data = prepared_->summary;
+  shortlist_.folds = {prepared_->folds.count, prepared_->folds.repeats, prepared_->folds.seed,
+                      kind_words(prepared_->folds.kind)};
+  shortlist_.responses = prepared_->data.response_forms;
+  shortlist_.response_notes = prepared_->response_notes;
+  shortlist_.menus = prepared_->menus;
+  auto& space = shortlist_.space;
+  space.scored = std::to_string(walked_.n_scored);
+  space.inseparable = walked_.n_inseparable.str();
+  space.strategy = "every";
+  space.complete = walked_.complete && examined_all_;
+  space.proved = walked_.complete;
+  space.pool_formed = pool_words(*prepared_, plan_, pool_.size());
+  space.pool_margin = margin_words(*prepared_, walked_, pool_);
+  space.seconds = meter_.seconds();
+  shortlist_.remarks.insert(shortlist_.remarks.begin(), prepared_->notes.begin(), prepared_->notes.end());
+  if (!space.complete)
+    shortlist_.remarks.insert(shortlist_.remarks.begin(),
+                              "the search was stopped early: " + grouped(walked_.n_scored) + " of " +
+                                  grouped(search::BigCount(space.candidates)) +
+                                  " candidates were scored; better ones may be among the others");
+  shortlist_.cautions = judge::general_cautions(shortlist_);
+}
+
+Result<SearchOutcome> Search::write() {
+  if (auto status = outputs_->write_shortlist(shortlist_); !status) return status.error();
+  outputs_->log().info("{} in {:.2f} s", shortlist_.space.complete ? "finished" : "stopped early", meter_.seconds());
+  SearchOutcome outcome;
+  outcome.run_folder = outputs_->path();
+  outcome.stopped_early = !shortlist_.space.complete;
+  outcome.shortlist = std::move(shortlist_);
+  return outcome;
+}
+
+Result<SearchOutcome> Search::run() {
+  if (auto status = check_plan(); !status) return status.error();
+  if (auto status = run::RunFolder::check(folder_name(plan_, options_.out), options_.replace); !status)
+    return status.error();
+  if (auto status = read_and_prepare(); !status) return status.error();
+  if (auto status = open_outputs(); !status) return status.error();
+  if (auto status = count_and_announce(); !status) return status.error();
+  screen();
+  examine();
+  if (candidates_.empty())
+    return Error{ErrorKind::data,
+                 "no candidate is left: " + walked_.n_inseparable.str() +
+                     " could not be told apart from others in some fold, " +
+                     std::to_string(shortlist_.space.set_aside_direction) + " contradict a declared direction",
+                 prepared_->summary.file,
+                 "use fewer folds (search.folds), drop one of two predictors that are nearly the same (data.ignore), "
+                 "or relax forms.direction"};
+  if (auto status = rank_and_complete(); !status) return status.error();
+  describe();
+  return write();
+}
+
+}  // namespace
+
+Result<SearchOutcome> search(const run::Plan& plan, const SearchOptions& options, std::stop_token stop) {
+  try {
+    return Search(plan, options, std::move(stop)).run();
+  } catch (const std::bad_alloc&) {
+    return Error{ErrorKind::data, "there is not enough memory for this table and these menus", plan.data.file,
+                 "use fewer forms or predictors, or a machine with more memory"};
+  }
+}
+
+}  // namespace formsieve::pipeline

@@ -77,24 +77,29 @@ Status check_writable(const fs::path& folder) {
 
 }  // namespace
 
-Result<RunFolder> RunFolder::create(const std::string& path, bool replace) {
+Status RunFolder::check(const std::string& path, bool replace) {
   if (path.empty()) return Error{ErrorKind::usage, "the run folder has no name", "", "give one with --out FOLDER"};
   const fs::path folder(path);
   std::error_code code;
   const fs::file_status status = fs::status(folder, code);
-  if (fs::exists(status) && !fs::is_directory(status))
+  if (!fs::exists(status)) return {};
+  if (!fs::is_directory(status))
     return Error{ErrorKind::usage, "'" + path + "' is a file, not a folder", path,
                  "choose another place with --out FOLDER"};
-  if (!fs::exists(status)) {
-    fs::create_directories(folder, code);
-    if (code) return folder_error("cannot make the run folder", path, code);
-  }
   const bool is_empty = fs::is_empty(folder, code);
   if (code) return folder_error("cannot look into the folder", path, code);
-  if (!is_empty) {
-    if (Status allowed = may_replace(folder, replace); !allowed) return allowed.error();
+  return is_empty ? Status() : may_replace(folder, replace);
+}
+
+Result<RunFolder> RunFolder::create(const std::string& path, bool replace) {
+  if (Status allowed = check(path, replace); !allowed) return allowed.error();
+  const fs::path folder(path);
+  std::error_code code;
+  fs::create_directories(folder, code);
+  if (code) return folder_error("cannot make the run folder", path, code);
+  if (!fs::is_empty(folder, code))
     if (Status removed = remove_run(folder); !removed) return removed.error();
-  }
+  if (code) return folder_error("cannot look into the folder", path, code);
   if (Status writable = check_writable(folder); !writable) return writable.error();
   return RunFolder(path);
 }

@@ -30,6 +30,9 @@ inline constexpr std::string_view kResolvedPlanHeader = "# The plan of a formsie
 
 class RunFolder {
  public:
+  /// What `create` would refuse about an existing place, without touching anything: asked before the table is read.
+  static Status check(const std::string& path, bool replace);
+
   /// Makes the folder (and its parents) ready for a run and makes sure that files can be written there. An empty folder
   /// is taken as it is. A folder that holds a run is refused unless `replace`; then that run's files are removed, and
   /// nothing else. A folder that holds other things and no run is refused always. Errors: usage (it exists), io.

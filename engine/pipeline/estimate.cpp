@@ -1,0 +1,123 @@
+#include "pipeline/estimate.hpp"
+
+#include "base/parallel.hpp"
+
+#include <algorithm>
+#include <chrono>
+#include <cmath>
+#include <cstdio>
+
+namespace formsieve::pipeline {
+
+namespace {
+
+/// Long enough for a rate within some ten per cent, short enough not to be felt.
+constexpr double kCalibrationSeconds = 0.15;
+
+/// Spaces up to this size need no calibration: they take well under a second on any machine.
+constexpr std::uint64_t kSmallSpace = 100'000;
+
+/// Assumed rate for small spaces, only for the sentence that announces the run; slower than any machine of the last ten
+/// years.
+constexpr double kCautiousRate = 1e6;
+
+/// The largest space that can be numbered in 64 bits, the limit of strategy "every".
+const search::BigCount kMostCandidates = search::BigCount(1) << 62;
+
+/// A candidate of about half the predictors, each in its first form: what a pooled candidate costs.
+search::Choice probe(const search::Space& space) {
+  search::Choice choice;
+  choice.choice.assign(space.predictors.size(), 0);
+  const std::size_t most =
+      std::min(space.max_terms.value_or(space.predictors.size()), (space.predictors.size() + 1) / 2);
+  std::size_t present = 0;
+  for (std::size_t j = 0; j < space.predictors.size(); ++j)
+    if (space.predictors[j].always) choice.choice[j] = 1, ++present;
+  for (std::size_t j = 0; j < space.predictors.size() && present < most; ++j)
+    if (choice.choice[j] == 0) choice.choice[j] = 1, ++present;
+  return choice;
+}
+
+double seconds_of_one(const Prepared& prepared, const Examiner& examiner) {
+  const auto start = std::chrono::steady_clock::now();
+  (void)examiner.score(probe(prepared.space), 0);
+  return std::chrono::duration<double>(std::chrono::steady_clock::now() - start).count();
+}
+
+/// The largest max_terms whose space fits into `most` candidates, if any is smaller than the present one.
+std::optional<std::size_t> fitting_terms(const search::Space& space, const search::BigCount& most) {
+  search::BigCount total = 0;
+  std::optional<std::size_t> fitting;
+  const auto by_terms = search::count_by_terms(space);
+  for (std::size_t k = 0; k < by_terms.size(); ++k) {
+    total += by_terms[k];
+    if (total > most) break;
+    if (by_terms[k] > 0) fitting = k;
+  }
+  return fitting;
+}
+
+std::string what_to_change(const Estimate& estimate, const Prepared& prepared, double budget_seconds) {
+  const double affordable =
+      std::max(1.0, estimate.candidates_per_second * std::max(1.0, budget_seconds - estimate.examine_seconds));
+  const auto most = std::min(kMostCandidates, search::BigCount(affordable));
+  std::string hint;
+  if (const auto terms = fitting_terms(prepared.space, most); terms && *terms > 0)
+    hint = "search.max_terms = " + std::to_string(*terms) + " (--max-terms " + std::to_string(*terms) + ") fits; ";
+  return hint +
+         "so would fewer forms in the longest menus (forms.of), fewer predictors (data.ignore), or a larger "
+         "search.budget (--budget)";
+}
+
+}  // namespace
+
+std::string grouped(const search::BigCount& count) {
+  std::string digits = count.str();
+  for (std::ptrdiff_t at = static_cast<std::ptrdiff_t>(digits.size()) - 3; at > 0; at -= 3)
+    digits.insert(static_cast<std::size_t>(at), ",");
+  return digits;
+}
+
+std::string duration_words(double seconds) {
+  char text[64];
+  if (seconds < 1.0) return "less than a second";
+  if (seconds < 90.0)
+    std::snprintf(text, sizeof text, "%.0f s", seconds);
+  else if (seconds < 5400.0)
+    std::snprintf(text, sizeof text, "%.0f min", seconds / 60.0);
+  else if (seconds < 48.0 * 3600.0)
+    std::snprintf(text, sizeof text, "%.1f h", seconds / 3600.0);
+  else if (seconds < 3.15e7 * 3.0)
+    std::snprintf(text, sizeof text, "%.0f days", seconds / 86400.0);
+  else
+    std::snprintf(text, sizeof text, "%.2g years", seconds / 3.15e7);
+  return text;
+}
+
+Estimate estimate(const Prepared& prepared, const base::GramSet& grams, const search::WalkOptions& walk,
+                  const Examiner& examiner, std::size_t pool) {
+  Estimate result;
+  result.candidates = search::count(prepared.space);
+  const double threads = walk.threads == 0 ? base::available_threads() : walk.threads;
+  result.candidates_per_second = kCautiousRate;
+  if (result.candidates > kSmallSpace)
+    result.candidates_per_second = threads * search::calibrate(prepared.space, grams, walk, kCalibrationSeconds);
+  const double candidates = result.candidates.convert_to<double>();
+  result.screen_seconds = candidates / result.candidates_per_second;
+  result.examine_seconds =
+      seconds_of_one(prepared, examiner) * std::min(candidates, static_cast<double>(pool)) / threads;
+  return result;
+}
+
+Status check_budget(const Estimate& estimate, const Prepared& prepared, const run::Plan& plan) {
+  if (estimate.candidates <= kMostCandidates && estimate.total() <= plan.search.budget_seconds) return {};
+  char rate[32];
+  std::snprintf(rate, sizeof rate, "%.3g", estimate.candidates_per_second);
+  return Error{ErrorKind::plan,
+               "the space holds " + grouped(estimate.candidates) + " candidates, which would take about " +
+                   duration_words(estimate.total()) + " here (" + rate + " candidates a second); the budget is " +
+                   duration_words(plan.search.budget_seconds),
+               where_in_plan(plan, "search.budget"), what_to_change(estimate, prepared, plan.search.budget_seconds)};
+}
+
+}  // namespace formsieve::pipeline

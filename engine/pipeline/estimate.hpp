@@ -1,0 +1,34 @@
+// The count of the space, the time it will take, and whether the budget allows it.
+#pragma once
+
+#include <formsieve/pipeline.hpp>
+
+#include "base/gram.hpp"
+#include "pipeline/examine.hpp"
+#include "pipeline/prepare.hpp"
+#include "search/walk.hpp"
+
+namespace formsieve::pipeline {
+
+/// Seconds by calibration on this machine: a short walk over a sample of subtrees, and one candidate examined.
+struct Estimate {
+  search::BigCount candidates;
+  double candidates_per_second = 0.0;  ///< with all threads
+  double screen_seconds = 0.0;
+  double examine_seconds = 0.0;
+  double total() const { return screen_seconds + examine_seconds; }
+};
+
+Estimate estimate(const Prepared& prepared, const base::GramSet& grams, const search::WalkOptions& walk,
+                  const Examiner& examiner, std::size_t pool);
+
+/// Error (kind plan) when the estimate exceeds the budget or the space is beyond what strategy "every" can number; says
+/// what to change.
+Status check_budget(const Estimate& estimate, const Prepared& prepared, const run::Plan& plan);
+
+/// "5,859,375"
+std::string grouped(const search::BigCount& count);
+/// "4 s", "12 min", "3.5 h", "2 days"
+std::string duration_words(double seconds);
+
+}  // namespace formsieve::pipeline

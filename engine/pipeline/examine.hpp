@@ -1,0 +1,54 @@
+// The examination of pooled candidates: refit, own-units cross-validation, likelihood; checks and the full record for
+// those that are listed.
+#pragma once
+
+#include <formsieve/judge.hpp>
+
+#include "pipeline/prepare.hpp"
+#include "search/space.hpp"
+
+#include <optional>
+#include <string>
+#include <vector>
+
+namespace formsieve::pipeline {
+
+/// What ranking needs to know of one pooled candidate.
+struct Examined {
+  search::Choice choice;
+  std::optional<judge::Candidate>
+      candidate;  ///< unset when it could not be fitted on all rows or in every training part
+  bool contradicts_direction = false;
+  std::string failure;  ///< why candidate is unset
+};
+
+/// Scores and completes candidates of one prepared search. Immutable, shared by all workers.
+class Examiner {
+ public:
+  explicit Examiner(const Prepared& prepared);
+
+  /// Likelihood, criteria and cross-validated error of one candidate. Cost O(n k (k + folds)); exact refits by
+  /// orthogonal transformations (fit::FoldedFit).
+  Examined score(const search::Choice& choice, const search::BigCount& number) const;
+
+  /// Fills in the rest of a scored candidate: coefficients with standard errors, R², checks, back-transformation,
+  /// ranges, equation, cautions.
+  Status complete(const search::Choice& choice, judge::Candidate& candidate) const;
+
+ private:
+  struct Prediction;
+  Eigen::MatrixXd design_of(const search::Choice& choice) const;
+  Result<Prediction> held_out(const search::Choice& choice, const Eigen::MatrixXd& x, const Eigen::VectorXd& z) const;
+  bool contradicts(const search::Choice& choice, const Eigen::VectorXd& coefficients) const;
+  judge::Candidate named(const search::Choice& choice, const search::BigCount& number) const;
+  std::vector<judge::ValidRange> ranges(const search::Choice& choice) const;
+
+  const Prepared& prepared_;
+  std::vector<std::size_t> all_rows_;
+  Eigen::VectorXd weights_;  // size 0 for none
+  double half_log_weights_ = 0.0;
+  std::vector<Eigen::VectorXd> response_;  // [response forms] values on the form's scale
+  std::vector<double> log_jacobian_;       // [response forms]
+};
+
+}  // namespace formsieve::pipeline
