@@ -28,8 +28,14 @@ struct Subject {
   std::vector<std::size_t> order;  ///< rows in that order, when has_order
 };
 
-/// Significance level of a check and the sizes above which checks without a p-value fail; reasons in checks.cpp.
+/// Significance level of a check, on the p-value adjusted over the checks of its candidate. Common practice.
 inline constexpr double kLevel = 0.05;
+/// Largest variance inflation that passes: 10 is common practice, a standard error √10 ≈ 3 times that of a term
+/// unrelated to the others.
+inline constexpr double kMostInflation = 10.0;
+/// Largest Cook distance that passes: at 1, leaving the row out moves the coefficients to the edge of about a 50 %
+/// confidence region (Cook 1977; common practice).
+inline constexpr double kMostCookDistance = 1.0;
 
 /// All checks of issue order: normal-residuals, equal-spread, equal-spread-by-term, straightness, separable-terms,
 /// no-single-row, independence (only with an order), with Holm-adjusted p-values. A check that the rows cannot support

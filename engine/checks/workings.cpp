@@ -1,0 +1,86 @@
+#include "checks/workings.hpp"
+
+#include "base/sums.hpp"
+
+#include <Eigen/QR>
+
+#include <cmath>
+#include <limits>
+#include <span>
+
+namespace formsieve::checks {
+
+namespace {
+
+std::span<const double> as_span(const Eigen::Ref<const Eigen::VectorXd>& x) {
+  return {x.data(), static_cast<std::size_t>(x.size())};
+}
+
+/// Columns of x but the intercept, centred by their weighted means, times √w, to unit length (a constant stays zero).
+Eigen::MatrixXd standardised_columns(const Eigen::Ref<const Eigen::MatrixXd>& x,
+                                     const Eigen::Ref<const Eigen::VectorXd>& weights) {
+  const Eigen::Index k = x.cols() - 1;
+  Eigen::MatrixXd columns = x.rightCols(k);
+  for (Eigen::Index j = 0; j < k; ++j) {
+    auto column = columns.col(j);
+    column.array() -= base::weighted_mean(as_span(column), as_span(weights));
+    if (weights.size() > 0) column.array() *= weights.array().sqrt();
+    const double length = column.stableNorm();
+    if (length > 0.0) column /= length;
+  }
+  return columns;
+}
+
+std::string why_untestable(const Subject& subject) {
+  const Eigen::Index n = subject.residuals.size();
+  if (!subject.x.allFinite() || !subject.fitted.allFinite() || !subject.residuals.allFinite())
+    return "the fit is not finite";
+  if (n <= subject.x.cols()) return "as many coefficients as rows: no residuals are left to test";
+  const double largest = (subject.fitted + subject.residuals).lpNorm<Eigen::Infinity>();
+  const double spread = std::sqrt(subject.residuals.squaredNorm() / static_cast<double>(n));
+  if (!(spread > kRoundingShare * largest)) return "the fit is exact: what is left of the residuals is rounding";
+  return {};
+}
+
+}  // namespace
+
+Basis centred_basis(const Eigen::Ref<const Eigen::MatrixXd>& x, const Eigen::Ref<const Eigen::VectorXd>& weights) {
+  const Eigen::Index n = x.rows();
+  const Eigen::Index k = x.cols() - 1;
+  if (k == 0) return {Eigen::MatrixXd(n, 0), Eigen::MatrixXd(0, 0), true};
+  if (n <= k || !x.allFinite()) return {};
+  const Eigen::HouseholderQR<Eigen::MatrixXd> qr(standardised_columns(x, weights));
+  Basis basis;
+  basis.q = qr.householderQ() * Eigen::MatrixXd::Identity(n, k);
+  basis.r = qr.matrixQR().topRows(k).triangularView<Eigen::Upper>();
+  const Eigen::VectorXd pivots = basis.r.diagonal().cwiseAbs();
+  basis.full_rank =
+      pivots.minCoeff() > static_cast<double>(n) * std::numeric_limits<double>::epsilon() * pivots.maxCoeff();
+  return basis;
+}
+
+Workings prepare(const Subject& subject) {
+  const Eigen::VectorXd none(0);
+  Workings workings{subject, subject.x.rows(), subject.x.cols(), why_untestable(subject), {}, {}};
+  workings.plain = centred_basis(subject.x, none);
+  if (workings.weighted()) workings.whitened = centred_basis(subject.x, subject.weights);
+  return workings;
+}
+
+Check named(const char* name, const char* method, const char* hypothesis) {
+  Check check;
+  check.name = name;
+  check.method = method;
+  check.hypothesis = hypothesis;
+  return check;
+}
+
+void note_weights(const Workings& workings, Check& check) {
+  if (!workings.weighted()) return;
+  if (!check.note.empty()) check.note += "; ";
+  check.note += "on residuals as measured: unequal spread that the weights account for shows here too";
+}
+
+Eigen::VectorXd centred(const Eigen::Ref<const Eigen::VectorXd>& x) { return x.array() - base::mean(as_span(x)); }
+
+}  // namespace formsieve::checks
