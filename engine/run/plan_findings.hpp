@@ -19,7 +19,6 @@ class Findings {
   void place(const std::string& key, toml::source_position at);
   /// Where a key stands; the start of the file when it was not written.
   toml::source_position place_of(const std::string& key) const;
-  bool has(const std::string& key) const { return places_.contains(key); }
 
   void refuse(toml::source_position at, std::string message, std::string hint);
   /// Refuses a key at its own place.

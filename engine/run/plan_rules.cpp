@@ -16,11 +16,10 @@ bool lists(const std::vector<std::string>& names, const std::string& name) {
   return std::find(names.begin(), names.end(), name) != names.end();
 }
 
-/// Says that a required key is missing, at its table when there is one. A key that is there but was refused has been
-/// reported already.
+/// Says that a required key is missing, at its table when there is one.
 void require_text(const std::string& value, const std::string& table, const std::string& key, Findings& findings) {
+  if (!value.empty()) return;
   const std::string dotted = table + "." + key;
-  if (!value.empty() || findings.has(dotted)) return;
   findings.refuse_key(table, dotted + " is missing", write_hint(dotted) + " under [" + table + "]");
 }
 
@@ -112,14 +111,16 @@ void check_dialect(const Plan& plan, Findings& findings) {
 }  // namespace
 
 void check_rules(const Plan& plan, Findings& findings) {
-  require_text(plan.data.file, "data", "file", findings);
-  require_text(plan.data.response, "data", "response", findings);
   check_fold_kind(plan, findings);
   check_response(plan, findings);
   check_ignored(plan, findings);
   check_text(plan, findings);
   check_terms(plan, findings);
   check_dialect(plan, findings);
+  // What is absent stands nowhere: said only when all that is there is right, since a misspelt key explains it better.
+  if (!findings.clean()) return;
+  require_text(plan.data.file, "data", "file", findings);
+  require_text(plan.data.response, "data", "response", findings);
 }
 
 }  // namespace formsieve::run

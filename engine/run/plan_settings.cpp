@@ -54,7 +54,8 @@ std::string homes_of(std::string_view table, const std::string& key) {
 
 std::string holdings(std::string_view table) {
   if (table.empty()) return "a plan has the tables [data], [forms], [search] and [rank]";
-  return "[" + std::string(table) + "] holds " + comma_list(keys_of(table));
+  std::string text = "[";
+  return text.append(table).append("] holds ").append(comma_list(keys_of(table)));
 }
 
 }  // namespace

@@ -20,10 +20,11 @@ constexpr std::int64_t kLargestCount = 1'000'000'000;
 constexpr std::size_t kShownBytes = 40;
 
 std::string quoted(const std::string& text) {
-  if (text.size() <= kShownBytes) return "\"" + text + "\"";
+  std::string out = "\"";
+  if (text.size() <= kShownBytes) return out.append(text).append("\"");
   std::size_t end = kShownBytes;
   while (end > 0 && (static_cast<unsigned char>(text[end]) & 0xC0u) == 0x80u) --end;  // not inside a UTF-8 sequence
-  return "\"" + text.substr(0, end) + "…\"";
+  return out.append(text, 0, end).append("…\"");
 }
 
 }  // namespace

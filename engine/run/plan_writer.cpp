@@ -50,9 +50,15 @@ std::string joined(const Items& items, Text&& text) {
   return out;
 }
 
-std::string list_text(const std::vector<std::string>& items) { return "[" + joined(items, quoted) + "]"; }
+template <class Items, class Text>
+std::string bracketed(const Items& items, Text&& text) {
+  std::string out = "[";
+  return out.append(joined(items, text)).append("]");
+}
 
-std::string menu_text(const std::vector<FormEntry>& menu) { return "[" + joined(menu, entry_text) + "]"; }
+std::string list_text(const std::vector<std::string>& items) { return bracketed(items, quoted); }
+
+std::string menu_text(const std::vector<FormEntry>& menu) { return bracketed(menu, entry_text); }
 
 /// Collects the lines of the plan.
 class Lines {
