@@ -190,14 +190,27 @@ void read_tables(const toml::table& root, Plan& plan, Findings& findings) {
 std::string syntax_hint(std::string_view description) {
   const auto says = [&](std::string_view words) { return description.find(words) != std::string_view::npos; };
   if (says("redefine")) return "a key or table may stand once: delete one of the two";
-  if (says("utf-8") || says("UTF-8") || says("invalid u")) return "save the plan as UTF-8 text";
-  return R"(one key = value a line; text in double quotes, by = "aic"; lists in brackets, ["identity", "ln"])";
+  if (says("utf-8") || says("UTF-8")) return "save the plan as UTF-8 text";
+  if (says("parsing string")) return "close the text with the quote that opened it, on the same line";
+  if (says("parsing array")) return "close the list with ], entries parted by commas";
+  if (says("parsing value") || says("value type")) return R"(put text in double quotes, as in by = "aic")";
+  return R"(one key = value a line; text in double quotes, as in by = "aic"; lists in brackets)";
+}
+
+/// "Error while parsing array: encountered end-of-file" is said as "the plan is not valid TOML (array): …".
+std::string syntax_message(std::string_view description) {
+  constexpr std::string_view kLead = "Error while parsing ";
+  std::string message = "the plan is not valid TOML";
+  const std::size_t colon = description.find(": ");
+  if (!description.starts_with(kLead) || colon == std::string_view::npos)
+    return message.append(": ").append(description);
+  message.append(" (").append(description.substr(kLead.size(), colon - kLead.size())).append(")");
+  return message.append(description.substr(colon));
 }
 
 Error syntax_error(const toml::parse_error& error, const Findings& findings) {
   const std::string_view description = error.description();
-  return {ErrorKind::plan, "the plan is not valid TOML: " + std::string(description),
-          findings.where(error.source().begin), syntax_hint(description)};
+  return {ErrorKind::plan, syntax_message(description), findings.where(error.source().begin), syntax_hint(description)};
 }
 
 }  // namespace

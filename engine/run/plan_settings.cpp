@@ -80,11 +80,10 @@ std::string_view example_of(std::string_view dotted_key) {
 }
 
 std::string unknown_key_hint(std::string_view table, const std::string& key) {
-  const std::string homes = homes_of(table, key);
-  if (!homes.empty()) return "'" + key + "' belongs in " + homes;
   const auto near = nearest(key, table.empty() ? table_names() : keys_of(table));
-  const std::string guess = near ? "did you mean '" + *near + "'? " : std::string();
-  return guess + (guess.empty() ? "" : "(") + holdings(table) + (guess.empty() ? "" : ")");
+  const std::string homes = homes_of(table, key);
+  const std::string facts = homes.empty() ? holdings(table) : "'" + key + "' belongs in " + homes;
+  return near ? "did you mean '" + *near + "'? (" + facts + ")" : facts;
 }
 
 std::string comma_list(const std::vector<std::string>& words) {

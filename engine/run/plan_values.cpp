@@ -27,6 +27,14 @@ std::string quoted(const std::string& text) {
   return out.append(text, 0, end).append("…\"");
 }
 
+/// A separator or decimal mark given as itself instead of by its name.
+std::string spelt_out(const std::string& word) {
+  if (word == ",") return "comma";
+  if (word == ";") return "semicolon";
+  if (word == "\t") return "tab";
+  return word == "." ? "point" : word;
+}
+
 }  // namespace
 
 std::string kind_of(const toml::node& node) {
@@ -55,7 +63,11 @@ std::string kind_of(const toml::node& node) {
 std::string shown(const toml::node& node) {
   if (const auto text = node.value_exact<std::string>()) return quoted(*text);
   if (const auto whole = node.value_exact<std::int64_t>()) return std::to_string(*whole);
-  if (const auto number = node.value_exact<double>()) return number_text(*number);
+  if (const auto number = node.value_exact<double>()) {
+    const std::string digits = number_text(*number);
+    // "10.0" must not be shown as 10 when the decimal point is what is wrong.
+    return digits.find_first_not_of("-0123456789") == std::string::npos ? digits + ".0" : digits;
+  }
   if (const auto truth = node.value_exact<bool>()) return *truth ? "true" : "false";
   return kind_of(node);
 }
@@ -113,7 +125,7 @@ std::optional<std::string> TableReader::choice_in(const std::string& key, const 
   if (node == nullptr) return std::nullopt;
   const auto word = node->value_exact<std::string>();
   if (word && std::find(words.begin(), words.end(), *word) != words.end()) return word;
-  const auto near = word ? nearest(*word, words) : std::nullopt;
+  const auto near = word ? nearest(spelt_out(*word), words) : std::nullopt;
   findings_.refuse(node->source().begin,
                    dotted(key) + " is " + shown(*node) + ", and must be one of " + comma_list(words),
                    "write " + key + " = \"" + near.value_or(words.front()) + "\"");
