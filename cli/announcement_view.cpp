@@ -1,0 +1,24 @@
+#include "announcement_view.hpp"
+
+#include "numbers.hpp"
+#include "page.hpp"
+
+namespace formsieve::cli {
+
+std::string announcement_text(const pipeline::Announcement& announcement, const Terminal& terminal) {
+  Page page(terminal);
+  std::string rows = counted(announcement.rows_used, "row");
+  if (announcement.rows_used != announcement.rows_read) {
+    rows = grouped(announcement.rows_used) + " of " + counted(announcement.rows_read, "row");
+  }
+  std::string folds = counted(announcement.folds, "fold");
+  if (announcement.repeats > 1) folds += " dealt " + std::to_string(announcement.repeats) + " times";
+  page.prose(grouped(announcement.candidates) + " candidates: " + counted(announcement.n_responses, "response form") +
+             " × " + counted(announcement.n_predictors, "predictor") + " with " +
+             counted(announcement.n_forms, "form") + "; " + rows + "; " + folds + "; about " +
+             duration(announcement.seconds_estimate));
+  for (const std::string& note : announcement.notes) page.note(note);
+  return page.text();
+}
+
+}  // namespace formsieve::cli

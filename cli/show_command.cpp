@@ -1,0 +1,99 @@
+// formsieve show RUN [RANK]: the shortlist of a run folder, or one candidate in full.
+#include "commands.hpp"
+
+#include "arguments.hpp"
+#include "candidate_view.hpp"
+#include "failure.hpp"
+#include "help_page.hpp"
+#include "page.hpp"
+#include "shortlist_view.hpp"
+#include "terminal.hpp"
+#include "words.hpp"
+
+#include <formsieve/pipeline.hpp>
+#include <formsieve/report.hpp>
+
+#include <algorithm>
+#include <memory>
+
+namespace formsieve::cli {
+namespace {
+
+struct ShowArguments {
+  std::string run_folder;
+  std::optional<std::string> rank;
+  CommonArguments common;
+};
+
+// "1 to 25 and 31" of ranks in rising order.
+std::string ranks_listed(const judge::Shortlist& shortlist) {
+  std::vector<std::string> parts;
+  for (std::size_t i = 0; i < shortlist.candidates.size();) {
+    std::size_t last = i;
+    while (last + 1 < shortlist.candidates.size() &&
+           shortlist.candidates[last + 1].rank == shortlist.candidates[last].rank + 1) {
+      ++last;
+    }
+    const std::string from = std::to_string(shortlist.candidates[i].rank);
+    parts.push_back(last == i ? from : from + " to " + std::to_string(shortlist.candidates[last].rank));
+    i = last + 1;
+  }
+  return listed(parts);
+}
+
+std::vector<std::string> marks_given(const judge::Shortlist& shortlist) {
+  std::vector<std::string> marks;
+  for (const judge::Candidate& candidate : shortlist.candidates) {
+    marks.insert(marks.end(), candidate.marks.begin(), candidate.marks.end());
+  }
+  return marks;
+}
+
+// By rank, or by the name of a line: "7", "recommended".
+Result<const judge::Candidate*> find_candidate(const judge::Shortlist& shortlist, const std::string& wanted) {
+  for (const judge::Candidate& candidate : shortlist.candidates) {
+    if (std::to_string(candidate.rank) == wanted || has_mark(candidate, wanted)) return &candidate;
+  }
+  const std::vector<std::string> marks = marks_given(shortlist);
+  const std::string also = marks.empty() ? "" : ", or a named line: " + joined(marks, ", ");
+  return Error{ErrorKind::usage, "the shortlist has no rank '" + wanted + "'", "",
+               "give one of the ranks " + ranks_listed(shortlist) + also};
+}
+
+int show_candidate(judge::Shortlist shortlist, const ShowArguments& arguments) {
+  const Result<const judge::Candidate*> found = find_candidate(shortlist, *arguments.rank);
+  if (!found) return refused(found.error(), {});
+  if (!arguments.common.json) {
+    return write_result(candidate_page(shortlist, **found, arguments.run_folder, look_at(kStandardOutput)));
+  }
+  judge::Candidate only = **found;
+  shortlist.candidates.assign(1, std::move(only));
+  return write_result(report::shortlist_json(shortlist) + "\n");
+}
+
+int run_show(const ShowArguments& arguments) {
+  const Result<judge::Shortlist> shortlist = pipeline::open_run(arguments.run_folder);
+  if (!shortlist) return refused(shortlist.error(), {}, true);
+  if (arguments.rank) return show_candidate(*shortlist, arguments);
+  if (arguments.common.json) return write_result(report::shortlist_json(*shortlist) + "\n");
+  return write_result(shortlist_page(*shortlist, arguments.run_folder, look_at(kStandardOutput)));
+}
+
+}  // namespace
+
+void add_show_command(CLI::App& program, Action& chosen) {
+  const auto arguments = std::make_shared<ShowArguments>();
+  CLI::App* command = program.add_subcommand("show", "prints the shortlist of a run, or one candidate in full");
+  const auto help = std::make_shared<HelpPage>();
+  help->usage = "show RUN [RANK]";
+  help->example = {"formsieve show coldstores.run", "formsieve show coldstores.run recommended"};
+  command->formatter(help);
+  command->set_help_flag("--help,-h", "this page");
+  command->add_option("RUN", arguments->run_folder, "the run folder of a search")->required();
+  command->add_option("RANK", arguments->rank, "a rank, or a named line: best, recommended, simplest, 'lowest AIC'");
+  add_common_options(*command, arguments->common);
+  command->get_option("--threads")->group("");  // taken for uniformity; nothing here could use a second thread
+  command->callback([arguments, &chosen] { chosen = [arguments] { return run_show(*arguments); }; });
+}
+
+}  // namespace formsieve::cli

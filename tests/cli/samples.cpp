@@ -1,0 +1,195 @@
+#include "samples.hpp"
+
+#include <cmath>
+#include <limits>
+
+namespace formsieve::cli::samples {
+namespace {
+
+forms::Form form(forms::Kind kind, std::optional<double> reflect = std::nullopt) {
+  forms::Form made;
+  made.kind = kind;
+  made.reflect = reflect;
+  return made;
+}
+
+survey::FormTrial trial(const forms::Form& made, const std::string& column, double skewness, const std::string& why) {
+  survey::FormTrial one;
+  one.form = made;
+  one.label = forms::term_name(made, column);
+  one.possible = true;
+  one.skewness_after = skewness;
+  one.suggested = !why.empty();
+  one.why = why;
+  return one;
+}
+
+survey::FormTrial impossible(const forms::Form& made, const std::string& reason, const std::string& repair) {
+  survey::FormTrial one;
+  one.form = made;
+  one.reason = reason;
+  one.repair = repair;
+  return one;
+}
+
+survey::ColumnProfile area() {
+  survey::ColumnProfile profile;
+  profile.facts.name = "floor_area";
+  profile.facts.n = 1420;
+  profile.facts.min = 120.5;
+  profile.facts.max = 48210.0;
+  profile.facts.skewness = 2.417;
+  profile.q1 = 812.0;
+  profile.median = 1903.25;
+  profile.q3 = 4120.0;
+  profile.excess_kurtosis = 8.1;
+  profile.medcouple = 0.412;
+  profile.skew = forms::SkewClass::severe;
+  profile.direction = "right";
+  profile.n_outlying = 31;
+  profile.box_cox_lambda = -0.061;
+  const std::string why = "positive and right-skewed (common practice)";
+  profile.forms = {trial(form(forms::Kind::identity), "floor_area", 2.417, "always"),
+                   trial(form(forms::Kind::sqrt), "floor_area", 1.102, why),
+                   trial(form(forms::Kind::ln), "floor_area", -0.04, why),
+                   trial(form(forms::Kind::cube_root), "floor_area", 0.8, ""),
+                   impossible(form(forms::Kind::logit), "values leave the interval from 0 to 1", "")};
+  profile.notes = {"the largest value is 400 times the smallest: ln is likely to help (the log rule)"};
+  return profile;
+}
+
+survey::ColumnProfile fill() {
+  survey::ColumnProfile profile;
+  profile.facts.name = "fill_percent";
+  profile.facts.n = 1411;
+  profile.n_missing = 9;
+  profile.facts.min = 0.0;
+  profile.facts.max = 100.0;
+  profile.facts.n_zero = 3;
+  profile.facts.skewness = -1.31;
+  profile.q1 = 71.0;
+  profile.median = 84.5;
+  profile.q3 = 93.0;
+  profile.skew = forms::SkewClass::moderate;
+  profile.direction = "left";
+  profile.n_outlying = 12;
+  profile.forms = {
+      trial(form(forms::Kind::identity), "fill_percent", -1.31, "always"),
+      trial(form(forms::Kind::sqrt, 101.0), "fill_percent", 0.21, "left-skewed, hence reflected (common practice)"),
+      impossible(form(forms::Kind::ln), "3 zeros", "a shift, as in { form = \"ln\", shift = \"auto\" }")};
+  return profile;
+}
+
+survey::ColumnProfile constant() {
+  survey::ColumnProfile profile;
+  profile.facts.name = "site_code";
+  profile.facts.n = 1420;
+  profile.facts.min = profile.facts.max = profile.q1 = profile.median = profile.q3 = 7.0;
+  profile.direction = "none";
+  profile.set_aside = true;
+  profile.notes = {"the same value in every row"};
+  return profile;
+}
+
+survey::ColumnProfile text() {
+  survey::ColumnProfile profile;
+  profile.facts.name = "region";
+  profile.facts.text = true;
+  profile.facts.n = 1420;
+  profile.facts.levels = {"north coast", "hills", "river", "south", "islands", "border", "camp"};
+  profile.facts.level_counts = {600, 400, 200, 120, 60, 38, 2};
+  return profile;
+}
+
+checks::Check spread(bool passes) {
+  checks::Check check;
+  check.name = "equal-spread";
+  check.method = "Breusch–Pagan (Koenker), against the fitted value";
+  check.hypothesis = "the spread of the residuals does not change with the fitted value";
+  check.statistic = 14.2;
+  check.df = 1.0;
+  check.p = 0.00016;
+  check.p_adjusted = 0.00098;
+  check.size = 1.8;
+  check.size_words = "residual spread in the top third 1.8 times that in the bottom third";
+  check.passes = passes;
+  return check;
+}
+
+judge::Candidate candidate(std::size_t rank, double rmse, double aic) {
+  judge::Candidate one;
+  one.rank = rank;
+  one.number = std::to_string(834211 + rank);
+  one.response_column = "energy_kwh";
+  one.response = form(forms::Kind::ln);
+  one.terms = {{"floor_area", form(forms::Kind::ln)}, {"fill_percent", form(forms::Kind::sqrt, 101.0)}};
+  one.equation = "ln(energy_kwh) = 3.21 + 0.84·ln(floor_area) − 0.12·√(101 − fill_percent)";
+  one.coefficients = {{"intercept", 3.2104, 0.101, 0.112},
+                      {"ln(floor_area)", 0.8402, 0.0113, 0.0125},
+                      {"√(101 − fill_percent)", -0.1204, 0.0101, 0.0098}};
+  one.n = 1411;
+  one.rss = 61.2;
+  one.sigma = 0.2086;
+  one.likelihood = {-16023.4, aic, aic + 0.03, aic + 21.0, 4};
+  one.cv.rmse = rmse;
+  one.cv.rmse_se = 612.71;
+  one.cv.bias = -12.3;
+  one.cv.mae = 8034.0;
+  one.cv.mae_median = 5210.0;
+  one.cv.rmse_naive = rmse * 1.03;
+  one.cv.rmse_form_scale = 0.2101;
+  one.cv.fold_mse = {1.21e8, 1.69e8, 1.96e8};
+  one.r2_form_scale = 0.941;
+  one.r2_own_units = 0.9338;
+  one.checks = {spread(rank != 2)};
+  one.back.smearing_factor = 1.0221;
+  one.back.formula = "energy_kwh = 1.0221 · exp(3.21 + 0.84·ln(floor_area) − 0.12·√(101 − fill_percent))";
+  one.back.corrections = {{"none", 1.0, -812.0, rmse * 1.03}, {"smearing", 1.0221, -12.3, rmse}};
+  const double infinity = std::numeric_limits<double>::infinity();
+  one.ranges = {{"floor_area", 120.5, 48210.0, {0.0, infinity, false, false}, {}},
+                {"fill_percent", 0.0, 100.0, {-infinity, 101.0, false, true}, {}}};
+  one.cautions = {"the spread of the residuals grows with the fitted value: intervals are too narrow for large stores"};
+  return one;
+}
+
+}  // namespace
+
+survey::Survey survey() {
+  survey::Survey made;
+  made.file = "coldstores.csv";
+  made.n_rows = 1420;
+  made.rare_level_count = 5;
+  made.columns = {area(), fill(), constant(), text()};
+  return made;
+}
+
+judge::Shortlist shortlist() {
+  judge::Shortlist made;
+  made.formsieve = "0.1.0";
+  made.data.file = "coldstores.csv";
+  made.data.response = "energy_kwh";
+  made.data.rows_read = 1420;
+  made.data.rows_used = 1411;
+  made.space.candidates = made.space.scored = "5859375";
+  made.space.pooled = made.space.examined = 2000;
+  made.folds = {10, 1, 20261201, "shuffled"};
+  judge::Candidate first = candidate(1, 12343.2, 30512.4);
+  first.marks = {"best"};
+  judge::Candidate second = candidate(2, 12351.9, 30508.1);
+  second.marks = {"recommended", "lowest AIC"};
+  second.terms = {{"floor_area", form(forms::Kind::sqrt)}};
+  judge::Candidate third = candidate(3, 12377.7, 30540.9);
+  third.response = form(forms::Kind::sqrt);
+  judge::Candidate last = candidate(41, 12900.1, 30601.0);
+  last.marks = {"simplest"};
+  last.response = form(forms::Kind::identity);
+  last.terms.clear();
+  last.cv.rmse.reset();
+  last.cv.n_undefined = 3;
+  made.candidates = {first, second, third, last};
+  made.remarks = {"The best by CV RMSE and the lowest AIC differ in the form of floor_area."};
+  made.cautions = {"The winner's error is the smallest of 5,859,375 and therefore too small."};
+  return made;
+}
+
+}  // namespace formsieve::cli::samples
