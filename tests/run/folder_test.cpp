@@ -83,6 +83,8 @@ TEST_CASE("run: folder of an earlier run is refused unless replaced", "[run][uni
   REQUIRE_FALSE(again.ok());
   CHECK(again.error().kind == ErrorKind::usage);
   CHECK_THAT(again.error().hint, Catch::Contains("--replace"));
+  CHECK_FALSE(RunFolder::check(path, false).ok());
+  CHECK(RunFolder::check(path, true).ok());
   CHECK(fs::exists(path + "/shortlist.json"));
 
   put(path + "/notes.txt", "mine");
@@ -104,6 +106,7 @@ TEST_CASE("run: folder that holds no run is never touched, replace or not", "[ru
     REQUIRE_FALSE(folder.ok());
     CHECK(folder.error().kind == ErrorKind::usage);
     CHECK_THAT(folder.error().hint, Catch::Contains("--out"));
+    CHECK_FALSE(RunFolder::check(path, replace).ok());
     CHECK(*run::read_file(path + "/holiday.jpg") == "x");
   }
   CHECK(RunFolder::open(path).error().kind == ErrorKind::io);
@@ -135,7 +138,10 @@ TEST_CASE("run: folder replaced removes a linked state folder, not what it point
 TEST_CASE("run: folder that is empty is taken as it is", "[run][unit]") {
   const Scratch scratch;
   fs::create_directory(scratch.path("empty"));
+  CHECK(RunFolder::check(scratch.path("empty"), false).ok());
   CHECK(RunFolder::create(scratch.path("empty"), false).ok());
+  CHECK(RunFolder::check(scratch.path("new"), false).ok());
+  CHECK_FALSE(fs::exists(scratch.path("new")));
 }
 
 TEST_CASE("run: folder that cannot be is refused with what to do", "[run][unit]") {
