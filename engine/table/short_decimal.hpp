@@ -1,0 +1,67 @@
+// The common case of a number in a table, read eight digits at a time: the hot path of the CSV reader.
+#pragma once
+
+#include <array>
+#include <bit>
+#include <cstdint>
+#include <cstring>
+
+namespace formsieve::table {
+
+/// Digits at the start of eight bytes.
+struct DigitRun {
+  unsigned length;      ///< 0 to 8
+  std::uint64_t value;  ///< of these digits
+};
+
+/// Reads the digits at the start of the eight bytes at `p`, without a branch on how many there are.
+inline DigitRun read_digits(const char* p) noexcept {
+  static_assert(std::endian::native == std::endian::little, "the first byte is taken to be the lowest");
+  std::uint64_t bytes = 0;
+  std::memcpy(&bytes, p, 8);
+  bytes ^= 0x3030303030303030U;  // '0' … '9' become 0 … 9, all other bytes more
+  // The high bit of each byte above 9; a carry can spoil only bytes behind the first of these.
+  const std::uint64_t others = ((bytes + 0x7676767676767676U) | bytes) & 0x8080808080808080U;
+  const auto length = static_cast<unsigned>(others == 0 ? 8 : std::countr_zero(others) / 8);
+  if (length == 0) return {0, 0};
+  bytes <<= 8 * (8 - length);          // leading zeros
+  bytes = bytes * 10 + (bytes >> 8U);  // pairs of digits
+  constexpr std::uint64_t kPairs = 0x000000FF000000FFU;
+  const std::uint64_t high = (bytes & kPairs) * (100 + (1000000ULL << 32U));
+  const std::uint64_t low = ((bytes >> 16U) & kPairs) * (1 + (10000ULL << 32U));
+  return {length, (high + low) >> 32U};
+}
+
+/// Bytes that scan_short_decimal may look at.
+inline constexpr std::ptrdiff_t kShortDecimalBytes = 1 + 8 + 1 + 8 + 1;
+
+/// Reads an optional '-', one to eight digits and, behind a decimal mark, one to eight more. Returns the position after
+/// them, or null for anything else, which the general reader then takes. The value is correctly rounded: the digits as
+/// a whole number (at most 2^53) and the power of ten are doubles without error, so that their quotient is rounded once
+/// (Clinger 1990, "How to read floating point numbers accurately"). At least kShortDecimalBytes must be readable at
+/// `p`.
+inline const char* scan_short_decimal(const char* p, char decimal, double& value) noexcept {
+  constexpr std::array<std::uint32_t, 9> kPowers = {1, 10, 100, 1000, 10000, 100000, 1000000, 10000000, 100000000};
+  constexpr std::uint64_t kExactIntegers = std::uint64_t{1} << 53U;
+  const bool is_negative = *p == '-';
+  p += is_negative ? 1 : 0;
+  const DigitRun whole = read_digits(p);
+  p += whole.length;
+  std::uint64_t digits = whole.value;
+  std::uint32_t scale = 1;
+  if (*p == decimal) {
+    const DigitRun fraction = read_digits(p + 1);
+    if (fraction.length == 0) return nullptr;
+    p += 1 + fraction.length;
+    scale = kPowers[fraction.length];
+    digits = digits * scale + fraction.value;
+  }
+  const bool goes_on = static_cast<unsigned char>(*p - '0') < 10 || (*p | 0x20) == 'e' || *p == decimal;
+  if (whole.length == 0 || goes_on || digits > kExactIntegers) return nullptr;
+  // The sign bit is set without a branch, since the signs of a column may follow no pattern.
+  const auto sign = static_cast<std::uint64_t>(is_negative) << 63U;
+  value = std::bit_cast<double>(std::bit_cast<std::uint64_t>(static_cast<double>(digits) / scale) | sign);
+  return p;
+}
+
+}  // namespace formsieve::table
