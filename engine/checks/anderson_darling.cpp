@@ -20,17 +20,16 @@ double log_upper_tail(double z) {
          std::log1p(-u * (1.0 - u * (3.0 - 15.0 * u)));
 }
 
-/// D'Agostino & Stephens 1986, Table 4.9, case 3.
-double p_value(double a) {
+}  // namespace
+
+double anderson_darling_p(double a2_adjusted) {
   constexpr double kTableEnd = 13.0;  // the last polynomial turns upward at 153; nobody vouches for it beyond 13
-  a = std::min(a, kTableEnd);
+  const double a = std::min(a2_adjusted, kTableEnd);
   if (a < 0.2) return -std::expm1(-13.436 + a * (101.14 - 223.73 * a));
   if (a < 0.34) return -std::expm1(-8.318 + a * (42.796 - 59.938 * a));
   if (a < 0.6) return std::exp(0.9177 - a * (4.279 + 1.38 * a));
   return std::exp(1.2937 - a * (5.709 - 0.0186 * a));
 }
-
-}  // namespace
 
 std::optional<AndersonDarling> anderson_darling(const Eigen::Ref<const Eigen::VectorXd>& x) {
   const Eigen::Index n = x.size();
@@ -50,7 +49,7 @@ std::optional<AndersonDarling> anderson_darling(const Eigen::Ref<const Eigen::Ve
   AndersonDarling result;
   result.a2 = -count - total / count;
   result.a2_adjusted = result.a2 * (1.0 + 0.75 / count + 2.25 / (count * count));
-  result.p = std::clamp(p_value(result.a2_adjusted), 0.0, 1.0);
+  result.p = std::clamp(anderson_darling_p(result.a2_adjusted), 0.0, 1.0);
   return result;
 }
 

@@ -13,6 +13,9 @@ struct AndersonDarling {
   double p = 1.0;
 };
 
+/// p-value of A* with both parameters estimated, D'Agostino & Stephens 1986, Table 4.9.
+double anderson_darling_p(double a2_adjusted);
+
 /// Stephens in D'Agostino & Stephens 1986, case 3 (both parameters estimated), p-value by their Table 4.9. Beyond
 /// A* = 13 the p-value is that at 13, 5e-31, an upper bound; below 1e-10 it is a number, not a probability. Unset for
 /// fewer than 3 values or none of spread. Cost O(n log n).

@@ -34,7 +34,23 @@ double p_of_three(double w) {
   return std::max(0.0, 6.0 / std::numbers::pi * (std::asin(std::sqrt(w)) - std::numbers::pi / 3.0));
 }
 
-double p_value(double one_minus_w, double n) {
+/// Blom's approximate expected values of normal order statistics.
+Eigen::VectorXd blom_scores(Eigen::Index n) {
+  const boost::math::normal standard;
+  Eigen::VectorXd scores(n);
+  for (Eigen::Index i = 0; i < n / 2; ++i) {
+    const double share = (static_cast<double>(i) + 1.0 - 0.375) / (static_cast<double>(n) + 0.25);
+    scores[i] = boost::math::quantile(standard, share);
+    scores[n - 1 - i] = -scores[i];
+  }
+  if (n % 2 == 1) scores[n / 2] = 0.0;
+  return scores;
+}
+
+}  // namespace
+
+double shapiro_wilk_p(double one_minus_w, Eigen::Index n_rows) {
+  const double n = static_cast<double>(n_rows);
   if (n == 3.0) return p_of_three(1.0 - one_minus_w);
   constexpr double kSmallSamples = 11.0;  // where Royston changes from one normalising transformation to the other
   double y = std::log(one_minus_w);
@@ -52,21 +68,6 @@ double p_value(double one_minus_w, double n) {
   }
   return boost::math::cdf(boost::math::complement(boost::math::normal(mean, sd), y));
 }
-
-/// Blom's approximate expected values of normal order statistics.
-Eigen::VectorXd blom_scores(Eigen::Index n) {
-  const boost::math::normal standard;
-  Eigen::VectorXd scores(n);
-  for (Eigen::Index i = 0; i < n / 2; ++i) {
-    const double share = (static_cast<double>(i) + 1.0 - 0.375) / (static_cast<double>(n) + 0.25);
-    scores[i] = boost::math::quantile(standard, share);
-    scores[n - 1 - i] = -scores[i];
-  }
-  if (n % 2 == 1) scores[n / 2] = 0.0;
-  return scores;
-}
-
-}  // namespace
 
 Eigen::VectorXd shapiro_wilk_weights(Eigen::Index n) {
   if (n == 3) return Eigen::Vector3d(-std::numbers::sqrt2 / 2.0, 0.0, std::numbers::sqrt2 / 2.0);
@@ -106,7 +107,7 @@ std::optional<ShapiroWilk> shapiro_wilk(const Eigen::Ref<const Eigen::VectorXd>&
   const double length = sorted.norm();
   const double one_minus_w = std::max((length - explained) * (length + explained) / (length * length), 0.0);
   if (one_minus_w == 0.0) return ShapiroWilk{1.0, 1.0};
-  return ShapiroWilk{1.0 - one_minus_w, std::clamp(p_value(one_minus_w, static_cast<double>(n)), 0.0, 1.0)};
+  return ShapiroWilk{1.0 - one_minus_w, std::clamp(shapiro_wilk_p(one_minus_w, n), 0.0, 1.0)};
 }
 
 }  // namespace formsieve::checks

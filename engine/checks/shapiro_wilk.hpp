@@ -20,6 +20,10 @@ struct ShapiroWilk {
 /// 3 ≤ n ≤ 5,000 and when the values have no spread. Cost O(n log n).
 std::optional<ShapiroWilk> shapiro_wilk(const Eigen::Ref<const Eigen::VectorXd>& x);
 
+/// p-value of W for n values by the same approximation; `one_minus_w` rather than W, which would lose its digits
+/// near 1.
+double shapiro_wilk_p(double one_minus_w, Eigen::Index n);
+
 /// Royston's approximation to the Shapiro–Wilk weights, antisymmetric, unit length: entry i belongs to the i-th
 /// smallest value and is negative in the lower half. n ≥ 3.
 Eigen::VectorXd shapiro_wilk_weights(Eigen::Index n);
