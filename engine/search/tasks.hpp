@@ -1,0 +1,20 @@
+// The fixed split of a walk into independent parts.
+#pragma once
+
+#include "search/subtree_walker.hpp"
+#include "search/tree.hpp"
+
+#include <cstdint>
+#include <vector>
+
+namespace formsieve::search {
+
+/// The subtree size beyond which a node is a part of its own: a small share of the space, so that the parts are many
+/// enough for any machine, and never so small that reaching a node costs more than what is below it.
+std::uint64_t largest_subtree(const Tree& tree);
+
+/// Every node with more than `largest_subtree` candidates below it, and the root: together, each walked without what
+/// belongs to another, they are the whole space. Depends on the space alone.
+std::vector<Path> split(const Tree& tree, std::uint64_t largest_subtree);
+
+}  // namespace formsieve::search
