@@ -18,15 +18,17 @@ Shape shape_of(const Form& form) {
   return {support, support, kWholeLine, 0};
 }
 
-/// The raw value at the edge `u_edge` of a set of u, `inward` +1 for a lower edge of x, −1 for an upper one. Rounding
-/// of u can put the exact edge on the wrong side: a closed edge must itself belong to the set, an open one must not
-/// while its inner neighbour does. Where that fails the edge is sought between two points that are beyond doubt.
+/// The raw value at the edge `u_edge` of a set of u, `inward` +1 for a lower edge of x, −1 for an upper one. Rounding of
+/// u can put the exact edge on the wrong side: a closed edge must be the last double that belongs to the set, an open
+/// one the first that does not. Where that fails the edge is sought between two points that are beyond doubt.
 template <class Argument>
 double raw_edge(const Argument& argument, const Interval& set, double u_edge, bool closed, int inward) {
   const double x = argument.back(u_edge);
   if (!std::isfinite(x)) return x;
   const auto belongs = [&](double at) { return set.contains(argument(at)); };
-  if (closed ? belongs(x) : !belongs(x) && belongs(std::nextafter(x, inward * kInfinity))) return x;
+  const double inner = closed ? x : std::nextafter(x, inward * kInfinity);
+  const double outer = closed ? std::nextafter(x, -inward * kInfinity) : x;
+  if (belongs(inner) && !belongs(outer)) return x;
   const double beyond_doubt = 4.0 * std::numeric_limits<double>::epsilon() * std::fmax(std::fabs(x), std::fabs(u_edge));
   double inside = x + inward * beyond_doubt;
   double outside = x - inward * beyond_doubt;

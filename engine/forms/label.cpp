@@ -118,6 +118,18 @@ std::string fractional_polynomial_text(const Form& form, std::size_t index, cons
   return (p < 0.0 ? parenthesised(power) : power) + "·ln(" + u + ")";
 }
 
+/// The p-th root; a root sign for odd whole p, since an odd root of a negative number is meant.
+std::string root_text(double p, const std::string& atom) {
+  constexpr const char* kDigits[] = {"⁰", "¹", "²", "³", "⁴", "⁵", "⁶", "⁷", "⁸", "⁹"};
+  if (p == 3.0) return "∛" + atom;
+  const bool odd = p > 1.0 && std::fmod(p, 2.0) == 1.0;
+  if (!odd) return atom + "^(1/" + exponent_text(p) + ")";
+  std::string degree;
+  for (const char digit : number_text(p))
+    if (digit >= '0' && digit <= '9') degree += kDigits[digit - '0'];
+  return degree + "√" + atom;
+}
+
 /// The argument of the inverse before shift and reflection are undone: f⁻¹ written around `eta`.
 std::string inverse_function_text(const Form& form, const std::string& eta) {
   const std::string atom = parenthesised(eta);
@@ -152,7 +164,7 @@ std::string inverse_function_text(const Form& form, const std::string& eta) {
     case Kind::arcsine_sqrt:
       return "(sin" + atom + ")²";
     case Kind::power:
-      return atom + "^(1/" + exponent_text(p) + ")";
+      return root_text(p, atom);
     case Kind::box_cox:
       if (p == 0.0) return "exp" + atom;
       return "(1 " + std::string(p > 0.0 ? "+ " : "− ") + number_text(std::fabs(p)) + "·" + atom + ")^(" +
