@@ -1,0 +1,302 @@
+#include "made_shortlist.hpp"
+
+#include <bit>
+#include <cmath>
+#include <limits>
+#include <random>
+#include <sstream>
+#include <vector>
+
+namespace formsieve::test {
+
+namespace {
+
+using judge::Candidate;
+using judge::Shortlist;
+
+class Maker {
+ public:
+  explicit Maker(std::uint64_t seed) : random_(seed) {}
+
+  std::size_t below(std::size_t n) { return std::uniform_int_distribution<std::size_t>(0, n - 1)(random_); }
+  bool coin() { return below(2) == 0; }
+  std::size_t count() { return coin() ? below(1000) : random_() >> 1; }
+  std::string digits() { return std::to_string(random_()) + std::to_string(random_()); }
+  std::string text();
+  std::vector<std::string> texts();
+  double number();
+  double number_or_nan() { return below(5) == 0 ? std::numeric_limits<double>::quiet_NaN() : number(); }
+  std::optional<double> maybe() { return coin() ? std::optional<double>(number()) : std::nullopt; }
+  template <class Make>
+  auto several(Make make) {
+    std::vector<decltype(make())> out;
+    for (std::size_t k = below(4); k > 0; --k) out.push_back(make());
+    return out;
+  }
+
+  forms::Form form();
+  checks::Check check();
+  judge::CrossValidation cv();
+  judge::ValidRange range();
+  judge::PredictorMenu menu();
+  Candidate candidate();
+
+ private:
+  std::mt19937_64 random_;
+};
+
+std::string Maker::text() {
+  static const std::vector<std::string> parts{"a", "Ω", "√", "\"", "\\",   "\n",   "\r", "\t",
+                                              ",", ";", " ", "−",  "🌧", "\x01", "/"};
+  std::string out;
+  for (std::size_t k = below(6); k > 0; --k) out += parts[below(parts.size())];
+  return out;
+}
+
+std::vector<std::string> Maker::texts() {
+  return several([&] { return text(); });
+}
+
+double Maker::number() {
+  static const std::vector<double> special{0.0,
+                                           -0.0,
+                                           1.0,
+                                           0.1,
+                                           1e308,
+                                           5e-324,
+                                           -1.7976931348623157e308,
+                                           1.0 / 3.0,
+                                           1e22,
+                                           9007199254740993.0,
+                                           123456789012345680000.0,
+                                           -2.5};
+  if (coin()) return special[below(special.size())];
+  double value = 0.0;
+  do value = std::bit_cast<double>(random_());
+  while (!std::isfinite(value));
+  return value;
+}
+
+forms::Form Maker::form() {
+  forms::Form form;
+  form.kind = static_cast<forms::Kind>(below(static_cast<std::size_t>(forms::Kind::levels) + 1));
+  if (form.kind >= forms::Kind::power && form.kind <= forms::Kind::yeo_johnson) form.parameters = {number()};
+  if (form.kind == forms::Kind::fractional_polynomial) form.parameters = {number(), number()};
+  if (form.kind == forms::Kind::spline) form.parameters = {number(), number(), number(), number()};
+  form.reflect = maybe();
+  form.shift = number();
+  if (form.kind == forms::Kind::levels) {
+    form.levels = {text(), text(), text()};
+    form.pooled = texts();
+  }
+  return form;
+}
+
+checks::Check Maker::check() {
+  return {text(),  text(),          text(),  maybe(), maybe(), maybe(), maybe(),
+          maybe(), number_or_nan(), maybe(), text(),  coin(),  text()};
+}
+
+judge::CrossValidation Maker::cv() {
+  judge::CrossValidation cv;
+  cv.rmse = maybe();
+  cv.rmse_se = maybe();
+  cv.bias = maybe();
+  cv.mae = maybe();
+  cv.mae_median = maybe();
+  cv.rmse_naive = maybe();
+  cv.rmse_form_scale = number_or_nan();
+  cv.bias_form_scale = number_or_nan();
+  cv.fold_mse = several([&] { return number_or_nan(); });
+  cv.n_undefined = count();
+  return cv;
+}
+
+judge::ValidRange Maker::range() {
+  const double infinity = std::numeric_limits<double>::infinity();
+  return {text(),
+          number(),
+          number(),
+          {coin() ? -infinity : number(), coin() ? infinity : number(), coin(), coin()},
+          texts()};
+}
+
+judge::PredictorMenu Maker::menu() {
+  return {text(), coin(), several([&] { return form(); }), texts(), texts()};
+}
+
+Candidate Maker::candidate() {
+  Candidate c;
+  c.rank = count();
+  c.number = digits();
+  c.marks = texts();
+  c.response_column = text();
+  c.response = form();
+  c.terms = several([&] { return judge::Term{text(), form()}; });
+  c.equation = text();
+  c.coefficients = several([&] { return fit::Coefficient{text(), number(), number_or_nan(), number_or_nan()}; });
+  c.n = count();
+  c.rss = number();
+  c.sigma = number_or_nan();
+  c.likelihood = {number(), number(), coin() ? std::numeric_limits<double>::infinity() : number(), number(), count()};
+  c.cv = cv();
+  c.r2_form_scale = number_or_nan();
+  c.r2_own_units = maybe();
+  c.checks = several([&] { return check(); });
+  c.back = {number(), text(), text(), several([&] {
+              return backtransform::Correction{text(), number_or_nan(), maybe(), maybe()};
+            })};
+  c.ranges = several([&] { return range(); });
+  c.cautions = texts();
+  return c;
+}
+
+/// Prints fields one after another, each with its length, so that no two shortlists print alike.
+class Printer {
+ public:
+  Printer& operator<<(const std::string& text) { return put(std::to_string(text.size()) + ":" + text); }
+  Printer& operator<<(bool value) { return put(value ? "yes" : "no"); }
+  Printer& operator<<(std::uint64_t value) { return put(std::to_string(value)); }
+  Printer& operator<<(double value) {
+    // Non-finite values share one face: JSON has only null for them.
+    if (!std::isfinite(value)) return put("none");
+    std::ostringstream out;
+    out << std::hexfloat << value << std::signbit(value);
+    return put(out.str());
+  }
+  Printer& operator<<(const std::optional<double>& value) { return value ? *this << *value : put("none"); }
+  template <class Item>
+  Printer& operator<<(const std::vector<Item>& items) {
+    *this << static_cast<std::uint64_t>(items.size());
+    for (const auto& item : items) *this << item;
+    return *this;
+  }
+  template <class A, class B>
+  Printer& operator<<(const std::pair<A, B>& both) {
+    return *this << both.first << both.second;
+  }
+  Printer& operator<<(const forms::Form& f) {
+    return *this << static_cast<std::uint64_t>(f.kind) << f.parameters << f.reflect << f.shift << f.levels << f.pooled;
+  }
+  Printer& operator<<(const judge::Term& t) { return *this << t.column << t.form; }
+  Printer& operator<<(const fit::Coefficient& c) { return *this << c.term << c.value << c.se << c.se_robust; }
+  Printer& operator<<(const judge::CrossValidation& v) {
+    return *this << v.rmse << v.rmse_se << v.bias << v.mae << v.mae_median << v.rmse_naive << v.rmse_form_scale
+                 << v.bias_form_scale << v.fold_mse << v.n_undefined;
+  }
+  Printer& operator<<(const checks::Check& c) {
+    return *this << c.name << c.method << c.hypothesis << c.statistic << c.df << c.df2 << c.p << c.p_adjusted << c.size
+                 << c.size2 << c.size_words << c.passes << c.note;
+  }
+  Printer& operator<<(const backtransform::Correction& c) {
+    return *this << c.method << c.factor << c.cv_bias << c.cv_rmse;
+  }
+  Printer& operator<<(const judge::ValidRange& r) {
+    const auto infinite = [](double x) { return std::isinf(x); };
+    return *this << r.column << r.seen_min << r.seen_max << r.defined.lower << infinite(r.defined.lower)
+                 << r.defined.upper << infinite(r.defined.upper) << r.defined.lower_closed << r.defined.upper_closed
+                 << r.levels;
+  }
+  Printer& operator<<(const judge::PredictorMenu& m) {
+    return *this << m.column << m.always << m.forms << m.labels << m.notes;
+  }
+  Printer& operator<<(const Candidate& c);
+  std::string text() const { return text_; }
+
+ private:
+  Printer& put(const std::string& text) {
+    text_ += text + "|";
+    return *this;
+  }
+  std::string text_;
+};
+
+Printer& Printer::operator<<(const Candidate& c) {
+  *this << c.rank << c.number << c.marks << c.response_column << c.response << c.terms << c.equation << c.coefficients
+        << c.n << c.rss << c.sigma << c.likelihood.log_likelihood << c.likelihood.aic << c.likelihood.aicc
+        << std::isinf(c.likelihood.aicc) << c.likelihood.bic << c.likelihood.n_parameters << c.cv << c.r2_form_scale
+        << c.r2_own_units << c.checks;
+  return *this << c.back.smearing_factor << c.back.used << c.back.formula << c.back.corrections << c.ranges
+               << c.cautions;
+}
+
+}  // namespace
+
+Shortlist made_shortlist(std::uint64_t seed) {
+  Maker make(seed);
+  Shortlist s;
+  s.formsieve = make.text();
+  s.data = {make.text(),  make.text(),
+            make.text(),  make.text(),
+            make.text(),  make.text(),
+            make.text(),  make.count(),
+            make.count(), make.several([&] { return std::pair{make.text(), make.count()}; })};
+  s.space = {make.digits(), make.digits(), make.digits(), make.text(),  make.coin(), make.coin(), make.number(),
+             make.count(),  make.count(),  make.count(),  make.count(), make.text(), make.text(), 1.5};
+  s.folds = {make.count(), make.count(), make.coin() ? ~std::uint64_t{0} : make.below(100), make.text()};
+  s.criterion = static_cast<judge::Criterion>(make.below(4));
+  s.near_tie = make.number();
+  s.responses = make.several([&] { return make.form(); });
+  s.response_notes = make.texts();
+  s.menus = make.several([&] { return make.menu(); });
+  s.candidates = make.several([&] { return make.candidate(); });
+  s.remarks = make.texts();
+  s.cautions = make.texts();
+  return s;
+}
+
+Shortlist plain_shortlist() {
+  Shortlist s;
+  s.formsieve = "0.1.0";
+  s.data = {"coldstores.csv", "ab12", "energy_kwh", "", "", "", "", 420, 411, {{"throughput_t", 9}}};
+  s.space.candidates = s.space.scored = "1234567890";
+  s.folds = {10, 1, 20261201, "shuffled"};
+  forms::Form ln;
+  ln.kind = forms::Kind::ln;
+  forms::Form reflected;
+  reflected.kind = forms::Kind::sqrt;
+  reflected.reflect = 101.0;
+  s.responses = {forms::Form{}, ln};
+  s.menus = {{"floor_area", false, {forms::Form{}, ln}, {"floor_area", "ln(floor_area)"}, {}},
+             {"fill, percent", false, {forms::Form{}, reflected}, {"fill, percent", "√(101 − fill, percent)"}, {}}};
+  Candidate c;
+  c.rank = 1;
+  c.number = "834211";
+  c.marks = {"best", "recommended"};
+  c.response_column = "energy_kwh";
+  c.response = ln;
+  c.terms = {{"floor_area", ln}, {"fill, percent", reflected}};
+  c.equation = "ln(energy_kwh) = 3.21 + 0.84·ln(floor_area) − 0.12·√(101 − fill, percent)";
+  c.coefficients = {{"intercept", 3.21, 0.1, 0.11}, {"ln(floor_area)", 0.84, 0.02, 0.03}};
+  c.n = 411;
+  c.cv.rmse = 1234.5;
+  c.cv.fold_mse = {1.0, 2.0};
+  c.checks = {
+      {"equal-spread", "Breusch–Pagan", "same spread", 3.5, 1.0, {}, 0.06, 0.12, 1.4, {}, "ratio 1.4", false, ""},
+      {"straightness", "RESET", "straight", 0.5, 2.0, 400.0, 0.6, 0.6, 0.001, {}, "gain 0.001", true, ""}};
+  c.back.corrections = {{"smearing", 1.03, 0.5, 1234.5}};
+  c.ranges = {{"floor_area", 12.0, 9000.0, {0.0, std::numeric_limits<double>::infinity(), false, false}, {}}};
+  c.cautions = {"the spread is unequal"};
+  s.candidates = {c, c};
+  s.candidates[1].rank = 2;
+  s.candidates[1].marks = {"simplest"};
+  s.candidates[1].terms.pop_back();
+  s.candidates[1].cv.rmse = std::nullopt;
+  s.cautions = {"the p-values do not know of the search"};
+  return s;
+}
+
+std::string print_out(const Shortlist& s) {
+  Printer out;
+  out << s.formsieve << s.data.file << s.data.sha256 << s.data.response << s.data.weight << s.data.group << s.data.order
+      << s.data.fold << s.data.rows_read << s.data.rows_used << s.data.dropped;
+  out << s.space.candidates << s.space.scored << s.space.inseparable << s.space.strategy << s.space.complete
+      << s.space.proved << s.space.gap << s.space.pooled << s.space.examined << s.space.set_aside_direction
+      << s.space.set_aside_require << s.space.pool_formed << s.space.pool_margin;
+  out << s.folds.count << s.folds.repeats << s.folds.seed << s.folds.kind;
+  out << static_cast<std::uint64_t>(s.criterion) << s.near_tie << s.responses << s.response_notes << s.menus
+      << s.candidates << s.remarks << s.cautions;
+  return out.text();
+}
+
+}  // namespace formsieve::test
