@@ -22,6 +22,12 @@ std::string optional_figure(const std::optional<double>& value) {
   return value ? significant(*value) : std::string("undefined");
 }
 
+// A mean error, to the decimals that the RMSE beside it has: the rest is noise.
+std::string mean_error(const std::optional<double>& value, const std::optional<double>& rmse) {
+  if (!value || !rmse) return optional_figure(value);
+  return with_decimals(*value, decimals_for(*rmse, kErrorDigits));
+}
+
 void title(Page& page, const Shortlist& shortlist, const Candidate& candidate) {
   std::string head = "Rank " + std::to_string(candidate.rank);
   if (!candidate.marks.empty()) head += ": " + joined(candidate.marks, ", ");
@@ -75,14 +81,16 @@ void prediction(Page& page, const Shortlist& shortlist, const Candidate& candida
   if (!is_identity(candidate.response)) {
     page.labelled("RMSE uncorrected", kLabelWidth, optional_figure(cv.rmse_naive) + ", without the bias correction");
   }
-  page.labelled("mean error", kLabelWidth, optional_figure(cv.bias) + ", predicted minus measured");
+  page.labelled("mean error", kLabelWidth, mean_error(cv.bias, cv.rmse) + ", predicted minus measured");
   page.labelled("absolute error", kLabelWidth,
                 "mean " + optional_figure(cv.mae) + ", median " + optional_figure(cv.mae_median));
   const std::string folds = fold_range(cv);
   if (!folds.empty()) page.labelled("fold by fold", kLabelWidth, folds);
   if (!is_identity(candidate.response)) {
-    page.labelled("on the scale of " + forms::term_name(candidate.response, response), kLabelWidth,
-                  "RMSE " + significant(cv.rmse_form_scale) + ", mean error " + significant(cv.bias_form_scale));
+    page.labelled("on the form's scale", kLabelWidth,
+                  "RMSE " + significant(cv.rmse_form_scale) + ", mean error " +
+                      mean_error(cv.bias_form_scale, cv.rmse_form_scale) + ", of " +
+                      forms::term_name(candidate.response, response));
   }
 }
 
@@ -137,12 +145,12 @@ void assumption_checks(Page& page, const Candidate& candidate) {
   if (candidate.checks.empty()) return;
   page.heading("What is wrong with it?");
   for (const checks::Check& check : candidate.checks) {
-    const std::string verdict = check.passes ? "holds  " : "fails  ";
+    const std::string verdict = check.passes ? "passes  " : "fails   ";
     std::string text = check.size_words;
     if (!check.hypothesis.empty()) text = check.hypothesis + ": " + text;
-    page.labelled(verdict + check.name, kLabelWidth + 2, text, check.passes ? Tone::plain : Tone::alarm);
-    page.labelled("", kLabelWidth + 2, check_statistic(check));
-    if (!check.note.empty()) page.labelled("", kLabelWidth + 2, check.note);
+    page.labelled(verdict + check.name, kLabelWidth + 4, text, check.passes ? Tone::plain : Tone::alarm);
+    page.labelled("", kLabelWidth + 4, check_statistic(check));
+    if (!check.note.empty()) page.labelled("", kLabelWidth + 4, check.note);
   }
 }
 
@@ -158,7 +166,7 @@ void back_transformation(Page& page, const Candidate& candidate) {
     const bool used = one.method == candidate.back.used;
     table.add_row({{one.method + (used ? " (used)" : ""), used ? Tone::strong : Tone::plain},
                    {significant(one.factor)},
-                   {optional_figure(one.cv_bias)},
+                   {mean_error(one.cv_bias, one.cv_rmse)},
                    {optional_figure(one.cv_rmse)}});
   }
   page.table(table);
@@ -193,10 +201,19 @@ void ranges(Page& page, const Candidate& candidate) {
   page.prose("Outside the range that was seen a prediction is extrapolation.");
 }
 
+// What the checks' own section has said already is not said again.
+bool repeats_a_check(const std::string& caution, const Candidate& candidate) {
+  return std::any_of(candidate.checks.begin(), candidate.checks.end(), [&](const checks::Check& check) {
+    return !check.passes && !check.size_words.empty() && caution.find(check.size_words) != std::string::npos;
+  });
+}
+
 void cautions(Page& page, const Shortlist& shortlist, const Candidate& candidate) {
   if (candidate.cautions.empty() && shortlist.cautions.empty()) return;
   page.heading("What must be kept in mind?");
-  for (const std::string& caution : candidate.cautions) page.note(caution);
+  for (const std::string& caution : candidate.cautions) {
+    if (!repeats_a_check(caution, candidate)) page.note(caution);
+  }
   for (const std::string& caution : shortlist.cautions) page.note(caution);
 }
 

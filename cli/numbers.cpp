@@ -120,7 +120,7 @@ std::string rough_count(double count) {
   if (count < 10.0 * kThousand) return dressed(raw_fixed(std::round(count), 0));
   const auto three_digits = [](double value) { return dressed(raw_fixed(value, decimals_for(value, 3))); };
   if (count < 0.9995 * kMillion) return dressed(raw_fixed(std::round(count / kThousand) * kThousand, 0));
-  if (count < kTrillion) return three_digits(count / kMillion) + " million";
+  if (count < kTrillion) return three_digits(std::max(1.0, count / kMillion)) + " million";
   return exponential(count, 3);
 }
 

@@ -38,6 +38,9 @@ std::string suggested_menu(const Profile& profile) {
   return profile.set_aside ? "set aside" : "–";
 }
 
+// Groups of figures that stay together.
+constexpr std::size_t kCounts = 1, kQuantiles = 2, kShape = 3, kSuggested = 4;
+
 // A column of the table: heading, group, figure of one profile. Counts that are zero throughout are not shown.
 struct Figure {
   const char* heading;
@@ -48,23 +51,23 @@ struct Figure {
 
 const std::vector<Figure>& figures() {
   static const std::vector<Figure> kFigures = {
-      {"n", 1, [](const Profile& p) { return grouped(p.facts.n); }, nullptr},
-      {"missing", 1, [](const Profile& p) { return grouped(p.n_missing); },
+      {"n", kCounts, [](const Profile& p) { return grouped(p.facts.n); }, nullptr},
+      {"missing", kCounts, [](const Profile& p) { return grouped(p.n_missing); },
        [](const Profile& p) { return p.n_missing; }},
-      {"zeros", 1, [](const Profile& p) { return grouped(p.facts.n_zero); },
+      {"zeros", kCounts, [](const Profile& p) { return grouped(p.facts.n_zero); },
        [](const Profile& p) { return p.facts.n_zero; }},
-      {"negative", 1, [](const Profile& p) { return grouped(p.facts.n_negative); },
+      {"negative", kCounts, [](const Profile& p) { return grouped(p.facts.n_negative); },
        [](const Profile& p) { return p.facts.n_negative; }},
-      {"smallest", 2, [](const Profile& p) { return significant(p.facts.min); }, nullptr},
-      {"quartile", 2, [](const Profile& p) { return significant(p.q1); }, nullptr},
-      {"median", 2, [](const Profile& p) { return significant(p.median); }, nullptr},
-      {"quartile", 2, [](const Profile& p) { return significant(p.q3); }, nullptr},
-      {"largest", 2, [](const Profile& p) { return significant(p.facts.max); }, nullptr},
-      {"G1", 3, [](const Profile& p) { return with_decimals(p.facts.skewness, 2); }, nullptr},
-      {"skewness", 3, skew_words, nullptr},
-      {"outlying", 3, [](const Profile& p) { return grouped(p.n_outlying); },
+      {"smallest", kQuantiles, [](const Profile& p) { return significant(p.facts.min); }, nullptr},
+      {"Q1", kQuantiles, [](const Profile& p) { return significant(p.q1); }, nullptr},
+      {"median", kQuantiles, [](const Profile& p) { return significant(p.median); }, nullptr},
+      {"Q3", kQuantiles, [](const Profile& p) { return significant(p.q3); }, nullptr},
+      {"largest", kQuantiles, [](const Profile& p) { return significant(p.facts.max); }, nullptr},
+      {"G1", kShape, [](const Profile& p) { return with_decimals(p.facts.skewness, 2); }, nullptr},
+      {"skewness", kShape, skew_words, nullptr},
+      {"outlying", kShape, [](const Profile& p) { return grouped(p.n_outlying); },
        [](const Profile& p) { return p.n_outlying; }},
-      {"suggested forms", 4, suggested_menu, nullptr}};
+      {"suggested forms", kSuggested, suggested_menu, nullptr}};
   return kFigures;
 }
 
@@ -73,15 +76,19 @@ bool shown(const Figure& figure, const std::vector<const Profile*>& profiles) {
                                                 [&](const Profile* profile) { return figure.count(*profile) > 0; });
 }
 
-bool is_words(const Figure& figure) { return figure.group == 4 || std::string_view(figure.heading) == "skewness"; }
+bool is_words(const Figure& figure) {
+  return figure.group == kSuggested || std::string_view(figure.heading) == "skewness";
+}
 
-TextTable numbers_table(const std::vector<const Profile*>& profiles) {
+TextTable numbers_table(const std::vector<const Profile*>& profiles, const std::vector<std::size_t>& group_order) {
   std::vector<TableColumn> columns = {{"column"}};
   std::vector<const Figure*> used;
-  for (const Figure& figure : figures()) {
-    if (!shown(figure, profiles)) continue;
-    used.push_back(&figure);
-    columns.push_back({figure.heading, !is_words(figure), figure.group == 4, figure.group});
+  for (const std::size_t group : group_order) {
+    for (const Figure& figure : figures()) {
+      if (figure.group != group || !shown(figure, profiles)) continue;
+      used.push_back(&figure);
+      columns.push_back({figure.heading, !is_words(figure), figure.group == kSuggested, figure.group});
+    }
   }
   TextTable table(columns);
   for (const Profile* profile : profiles) {
@@ -90,6 +97,13 @@ TextTable numbers_table(const std::vector<const Profile*>& profiles) {
     table.add_row(std::move(cells));
   }
   return table;
+}
+
+// In reading order where one band holds all; otherwise counts and shape share the first band, which fills both.
+TextTable numbers_table(const std::vector<const Profile*>& profiles, std::size_t width) {
+  TextTable table = numbers_table(profiles, {kCounts, kQuantiles, kShape, kSuggested});
+  if (table.natural_width() <= width) return table;
+  return numbers_table(profiles, {kCounts, kShape, kQuantiles, kSuggested});
 }
 
 std::string absent_counts(const std::vector<const Profile*>& profiles) {
@@ -226,7 +240,7 @@ void overview(Page& page, const survey::Survey& survey) {
   const std::vector<const Profile*> numbers = columns_of(survey, false), texts = columns_of(survey, true);
   if (!numbers.empty()) {
     page.blank();
-    page.table(numbers_table(numbers));
+    page.table(numbers_table(numbers, page.width()));
     const std::string absent = absent_counts(numbers);
     if (!absent.empty()) page.prose(absent);
   }

@@ -38,7 +38,8 @@ std::size_t TextTable::natural(std::size_t column) const {
 
 std::size_t TextTable::smallest(std::size_t column) const {
   const std::size_t full = natural(column);
-  return columns_[column].flexible ? std::min(full, kNarrowestFlexible) : full;
+  const std::size_t wrapped_width = std::max(kNarrowestFlexible, display_width(columns_[column].heading));
+  return columns_[column].flexible ? std::min(full, wrapped_width) : full;
 }
 
 std::size_t TextTable::key_width(std::size_t width) const {
