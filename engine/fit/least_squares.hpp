@@ -27,15 +27,27 @@ struct Fit {
   std::size_t rank = 0;
 };
 
+/// A row whose leverage comes within this of 1 determines its own fitted value: without it the design has lower rank,
+/// and its deleted residual, 0/0, cannot be computed (1 − h carries a rounding of about 1e-15, so that five digits are
+/// left here). HC3 of every coefficient that such a row bears on is NaN; the others keep theirs.
+inline constexpr double kOwnFit = 1e-10;
+/// Share of a coefficient's whole influence (the norm over rows) at which a row is held to bear on it: well above the
+/// rounding of the influence, 1e-16 by condition number.
+inline constexpr double kNoInfluence = 1e-9;
+
 /// Full fit by Householder QR with column pivoting on centred, scaled, √w-whitened columns; rank decided at
-/// n·ε·max|R_ii|; coefficients refined once with residuals accumulated in long double (Björck 1967). Column 0 of `x`
-/// must be the intercept. Errors (kind data): fewer rows than columns, rank deficiency (naming the column index), a
-/// value that is not finite. Cost O(n p²).
+/// n·ε·max|R_ii|; the solution refined with residuals in long double while that improves it (Björck 1967). Where the
+/// smallest pivot is below 1e-4 of the largest, the QR itself is done in long double, so that standard errors and
+/// leverages keep their digits too. Column 0 of `x` must be the intercept. Errors (kind data): fewer rows than columns,
+/// rank deficiency (naming the column index), a value that is not finite, a weight that is not positive. n = p is
+/// allowed: residuals and rss are 0, sigma, se and se_robust NaN. A fit whose residuals are the rounding of the
+/// response (root mean square within 4 ε of the response's) is exact: residuals, rss, sigma and standard errors are 0,
+/// fitted is the response. Cost O(n p²).
 Result<Fit> least_squares(const Eigen::Ref<const Eigen::MatrixXd>& x, const Eigen::Ref<const Eigen::VectorXd>& y,
                           const Eigen::Ref<const Eigen::VectorXd>& weights);  // weights: size 0 for none
 
 /// Coefficients and residuals only, for cross-validation folds: the same QR without refinement, covariance and
-/// leverage.
+/// leverage. Same errors. About 16 digits less the condition number of the centred columns.
 struct QuickFit {
   Eigen::VectorXd coefficients;
   Eigen::VectorXd residuals;
@@ -44,6 +56,9 @@ Result<QuickFit> quick_fit(const Eigen::Ref<const Eigen::MatrixXd>& x, const Eig
                            const Eigen::Ref<const Eigen::VectorXd>& weights);
 
 /// Own-scale likelihood and criteria (design.md). `log_jacobian` = Σ ln|g′(y_i)|, `half_log_weights` = ½ Σ ln w_i.
+/// An exact fit (rss 0) has log-likelihood +∞ and AIC, BIC −∞ (AICc too, unless n ≤ q + 1). A Jacobian that is not
+/// finite (√y at y = 0) leaves no density to compare: log-likelihood −∞, criteria +∞, so that such a candidate ranks
+/// last by them.
 Likelihood own_scale_likelihood(double rss, std::size_t n, std::size_t n_coefficients, double log_jacobian,
                                 double half_log_weights);
 
