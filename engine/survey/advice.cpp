@@ -1,7 +1,5 @@
 #include "survey/advice.hpp"
 
-#include <array>
-#include <charconv>
 #include <cmath>
 
 #include "survey/box_cox.hpp"
@@ -25,19 +23,29 @@ constexpr double kLargestTold = 1e6;
 std::string ratio_text(double smallest, double largest) {
   const double orders = std::log10(largest) - std::log10(smallest);
   if (orders >= std::log10(kLargestTold)) return "10^" + std::to_string(std::lround(orders));
-  std::array<char, 40> digits{};
-  const auto end = std::to_chars(digits.data(), digits.data() + digits.size(), largest / smallest,
-                                 std::chars_format::fixed, largest / smallest < kWideRange ? 2 : 0)
-                       .ptr;
-  return {digits.data(), end};
+  return rounded(largest / smallest, largest / smallest < kWideRange ? 2 : 0);
 }
 
-void add_range_rules(const forms::ColumnFacts& facts, std::vector<std::string>& notes) {
+/// Where the log rule and the skewness disagree.
+std::string against_log(const ColumnProfile& profile) {
+  for (const FormTrial& trial : profile.forms) {
+    const bool plain_ln = trial.form.kind == forms::Kind::ln && !trial.form.reflect && trial.form.shift == 0.0;
+    if (!plain_ln || !trial.skewness_after) continue;
+    if (std::abs(*trial.skewness_after) <= std::abs(profile.facts.skewness)) return "";
+    return "; here, though, ln would make it more skewed (skewness " + rounded(*trial.skewness_after, 2) + ", from " +
+           rounded(profile.facts.skewness, 2) + ")";
+  }
+  return "";
+}
+
+void add_range_rules(const ColumnProfile& profile, std::vector<std::string>& notes) {
+  const forms::ColumnFacts& facts = profile.facts;
   if (facts.min <= 0.0) return;
   const double orders = std::log10(facts.max) - std::log10(facts.min);
   const std::string ratio = "its largest value is " + ratio_text(facts.min, facts.max) + " times its smallest";
   if (orders > std::log10(kWideRange)) {
-    notes.push_back(ratio + ", beyond 10: ln is likely to help (log rule, Weisberg; advice, not a filter)");
+    notes.push_back(ratio + ", beyond 10: ln is likely to help (log rule, Weisberg; advice, not a filter)" +
+                    against_log(profile));
   } else if (orders < std::log10(kNarrowRange)) {
     notes.push_back(ratio +
                     ", well under one order of magnitude: no transformation is likely to matter much (range rule, "
@@ -50,8 +58,7 @@ void add_fragile_skewness(const ColumnProfile& profile, std::vector<std::string>
   const double along = std::copysign(1.0, profile.facts.skewness) * profile.medcouple;
   if (!skewed || along >= kSymmetricMedcouple) return;
   notes.push_back("the skewness rests on few rows: the medcouple, which they cannot move, is " +
-                  readable(std::round(profile.medcouple * 1000.0) / 1000.0) +
-                  " (look at the outlying values before choosing a form; a judgement)");
+                  rounded(profile.medcouple, 3) + " (look at the outlying values before choosing a form; a judgement)");
 }
 
 void add_missing(const ColumnProfile& profile, std::vector<std::string>& notes) {
@@ -71,7 +78,7 @@ std::vector<std::string> advice(const ColumnProfile& profile, bool outlying_by_m
     notes.push_back("it has too few values for a skewness, which needs three (shown as 0)");
   else if (facts.n < 4)
     notes.push_back("it has too few values for an excess kurtosis, which needs four (shown as 0)");
-  add_range_rules(facts, notes);
+  add_range_rules(profile, notes);
   add_fragile_skewness(profile, notes);
   if (outlying_by_mean_deviation)
     notes.push_back(

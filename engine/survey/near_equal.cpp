@@ -1,8 +1,6 @@
 #include <formsieve/survey.hpp>
 
 #include <algorithm>
-#include <array>
-#include <charconv>
 #include <cmath>
 #include <functional>
 #include <iterator>
@@ -12,6 +10,7 @@
 
 #include "base/sums.hpp"
 #include "survey/moments.hpp"
+#include "survey/words.hpp"
 
 namespace formsieve::survey {
 
@@ -51,11 +50,7 @@ double correlation(const UnitColumn& a, const UnitColumn& b) {
 }
 
 std::string near_equal_text(double r) {
-  std::array<char, 40> digits{};
-  const auto end = std::to_chars(digits.data(), digits.data() + digits.size(), std::min(std::abs(r), 1.0),
-                                 std::chars_format::fixed, kCorrelationDigits)
-                       .ptr;
-  return std::string("their columns correlate ") + (r < 0.0 ? "−" : "") + std::string(digits.data(), end) +
+  return "their columns correlate " + rounded(std::clamp(r, -1.0, 1.0), kCorrelationDigits) +
          " on these rows, beyond 0.9999 in size: one form, the simpler kept";
 }
 

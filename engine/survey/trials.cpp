@@ -10,11 +10,12 @@ namespace formsieve::survey {
 
 namespace {
 
-constexpr std::array kPlain = {forms::Kind::identity,    forms::Kind::square,          forms::Kind::cube,
-                               forms::Kind::sqrt,        forms::Kind::cube_root,       forms::Kind::ln,
-                               forms::Kind::reciprocal,  forms::Kind::reciprocal_sqrt, forms::Kind::reciprocal_square,
-                               forms::Kind::exp,         forms::Kind::asinh,           forms::Kind::logit,
-                               forms::Kind::arcsine_sqrt};
+constexpr std::array kPlain = {
+    forms::Kind::identity,          forms::Kind::square, forms::Kind::cube,       forms::Kind::sqrt,
+    forms::Kind::cube_root,         forms::Kind::ln,     forms::Kind::reciprocal, forms::Kind::reciprocal_sqrt,
+    forms::Kind::reciprocal_square, forms::Kind::exp,    forms::Kind::asinh};
+/// Tried on shares only: elsewhere that they are impossible is no news.
+constexpr std::array kOfShares = {forms::Kind::logit, forms::Kind::arcsine_sqrt};
 /// The forms that a shift or a reflection can admit and that default menus draw from.
 constexpr std::array kRepaired = {forms::Kind::sqrt, forms::Kind::ln, forms::Kind::reciprocal};
 
@@ -24,16 +25,27 @@ forms::Request request(forms::Kind kind) {
   return out;
 }
 
-/// Everything worth looking at for such a column.
+bool holds(const std::vector<forms::MenuEntry>& entries, const forms::Form& form) {
+  return std::any_of(entries.begin(), entries.end(), [&](const auto& entry) { return entry.form == form; });
+}
+
+/// Everything worth looking at for such a column, each form once.
 std::vector<forms::MenuEntry> catalogue(const forms::ColumnFacts& facts) {
   std::vector<forms::MenuEntry> out;
   const auto add = [&](const forms::Request& wanted) {
-    if (const Result<forms::Form> form = forms::settle(wanted, facts)) out.push_back({*form, ""});
+    const Result<forms::Form> form = forms::settle(wanted, facts);
+    if (form && !holds(out, *form)) out.push_back({*form, ""});
   };
+  if (facts.n_distinct <= 2) {
+    add(request(forms::Kind::identity));  // any form is the same split of the rows
+    return out;
+  }
   for (const forms::Kind kind : kPlain) add(request(kind));
   forms::Request signed_log = request(forms::Kind::yeo_johnson);
   signed_log.parameters = {0.0};
   add(signed_log);
+  for (const forms::Kind kind : kOfShares)
+    if (facts.min >= 0.0 && facts.max <= 1.0) add(request(kind));
   for (const forms::Kind kind : kRepaired) {
     forms::Request shifted = request(kind);
     shifted.shift_auto = true;
@@ -45,10 +57,6 @@ std::vector<forms::MenuEntry> catalogue(const forms::ColumnFacts& facts) {
     if (facts.skewness < 0.0 && forms::skew_class(facts.skewness) != forms::SkewClass::none) add(reflected);
   }
   return out;
-}
-
-bool holds(const std::vector<forms::MenuEntry>& entries, const forms::Form& form) {
-  return std::any_of(entries.begin(), entries.end(), [&](const auto& entry) { return entry.form == form; });
 }
 
 forms::Menu suggestions(const forms::ColumnFacts& facts, std::span<const double> present, Role role) {

@@ -95,10 +95,10 @@ std::optional<std::string> unusable_reason(const table::Column& column, std::siz
     return "it has nearly as many levels as rows (" + std::to_string(n_levels) + " levels on " + std::to_string(n) +
            " rows, more than one for every two), so it names rows rather than kinds of rows (a rule of common "
            "practice)";
-  const std::size_t n_after_pooling = n_frequent + (n_frequent < n_levels ? 1 : 0);
-  if (n_after_pooling < 2)
-    return "all " + std::to_string(n_levels) + " levels are rare (seen on fewer than " +
-           std::to_string(rare_level_count) + " rows), so that pooling leaves one level only";
+  if (n_frequent == 0 && n_levels > 2)
+    return "every one of its " + std::to_string(n_levels) + " levels is rare (on fewer than " +
+           std::to_string(rare_level_count) +
+           " rows), so that pooling would leave no kinds of rows to compare (data.rare_levels sets the limit)";
   return std::nullopt;
 }
 

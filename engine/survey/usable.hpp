@@ -21,7 +21,8 @@ std::vector<std::size_t> count_levels(const table::Column& column);
 /// Why numbers cannot serve: there are none, or they are all equal. `present` without NaN.
 std::optional<std::string> unusable_reason(std::span<const double> present);
 
-/// Why text cannot serve: no value, one level, levels that nearly number the rows, or one level left after pooling.
+/// Why text cannot serve: no value, one level, levels that nearly number the rows, or rare levels
+/// alone.
 std::optional<std::string> unusable_reason(const table::Column& column, std::size_t rare_level_count);
 
 /// Columns of `included` (indices into the table) that repeat an earlier one, or the response wherever it stands, in

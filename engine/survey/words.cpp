@@ -27,6 +27,14 @@ std::size_t edits(const std::string& a, const std::string& b) {
   return row.back();
 }
 
+std::string written(double x, std::chars_format format, int precision) {
+  std::array<char, 400> text{};  // the longest fixed number has 309 digits before its point
+  const auto end = std::to_chars(text.data(), text.data() + text.size(), x, format, precision).ptr;
+  return {text.data(), end};
+}
+
+std::string with_minus_sign(const std::string& text) { return text.starts_with('-') ? "−" + text.substr(1) : text; }
+
 }  // namespace
 
 std::string literal(double x) {
@@ -36,19 +44,14 @@ std::string literal(double x) {
 }
 
 std::string readable(double x) {
-  std::string text = literal(x);
-  if (text.size() > kMostDigits) {
-    std::array<char, 40> rounded{};
-    const auto end =
-        std::to_chars(rounded.data(), rounded.data() + rounded.size(), x, std::chars_format::general, kRoundedDigits)
-            .ptr;
-    text.assign(rounded.data(), end);
-  }
-  return text.starts_with('-') ? "−" + text.substr(1) : text;
+  const std::string exact = literal(x);
+  return with_minus_sign(exact.size() <= kMostDigits ? exact : written(x, std::chars_format::general, kRoundedDigits));
 }
 
-std::string counted(std::size_t n, const std::string& singular, const std::string& plural) {
-  return std::to_string(n) + " " + (n == 1 ? singular : plural);
+std::string rounded(double x, int decimals) {
+  const std::string text = written(x, std::chars_format::fixed, decimals);
+  const bool zero = text.find_first_of("123456789") == std::string::npos;
+  return zero && text.starts_with('-') ? text.substr(1) : with_minus_sign(text);
 }
 
 std::string listed(const std::vector<std::string>& names, std::size_t most) {

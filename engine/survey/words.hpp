@@ -10,11 +10,11 @@ namespace formsieve::survey {
 /// A number for reading: all its digits when they are few, else six significant ones; "−" before negatives.
 std::string readable(double x);
 
+/// A number of moderate size for reading, with so many decimals.
+std::string rounded(double x, int decimals);
+
 /// A number to be typed into a setting: the fewest digits that read back the same double.
 std::string literal(double x);
-
-/// "1 row", "3 rows".
-std::string counted(std::size_t n, const std::string& singular, const std::string& plural);
 
 /// Names in single quotes, at most `most` of them: "'a', 'b' and 3 more".
 std::string listed(const std::vector<std::string>& names, std::size_t most);
