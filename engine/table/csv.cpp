@@ -52,6 +52,8 @@ class CsvParse {
       : bytes_(bytes),
         options_(options),
         block_bytes_(block_bytes),
+        // One block is not worth waking other threads for.
+        threads_(bytes.size() <= block_bytes ? 1 : options.threads),
         source_{.name = std::move(name),
                 .bytes = bytes,
                 .syntax = Syntax(',', '.'),
@@ -65,7 +67,7 @@ class CsvParse {
     Result<RowStart> body = read_header(source_, begin_);
     if (!body) return body.error();
     if (Status status = check_text_columns(source_, options_); !status) return status.error();
-    layout_ = lay_out(source_, *body, source_.bytes.size(), block_bytes_, options_.threads);
+    layout_ = lay_out(source_, *body, source_.bytes.size(), block_bytes_, threads_);
     if (Status status = check_row_count(); !status) return status.error();
     read_all_columns(*body);
     if (Status status = check_faults(); !status) return status.error();
@@ -77,7 +79,7 @@ class CsvParse {
   /// A file must hold text; takes note of a byte order mark.
   Status check_content() {
     if (const auto foreign = recognise_foreign_format(bytes_))
-      return data_error("this is " + foreign->what + ", not a table in plain text", foreign->hint);
+      return data_error("this is " + foreign->what + ", not a table in UTF-8 text", foreign->hint);
     table_.dialect.byte_order_mark = bytes_.starts_with(kUtf8Mark);
     begin_ = table_.dialect.byte_order_mark ? kUtf8Mark.size() : 0;
     if (bytes_.find_first_not_of(" \t\r\n", begin_) == bytes_.npos)
@@ -111,7 +113,7 @@ class CsvParse {
 
   void read_all_columns(RowStart body) {
     const std::vector<ReadAs> guess = guess_reading(source_, body, missing(), options_.text);
-    raw_ = read_columns(source_, layout_, missing(), guess, true, options_.threads,
+    raw_ = read_columns(source_, layout_, missing(), guess, true, threads_,
                         [this] { table_.sha256 = sha256_hex(bytes_); });
     for (const RawColumn& column : raw_.columns) judgements_.push_back(judge_column(column, table_.dialect.decimal));
     for (std::size_t column = 0; column < judgements_.size(); ++column)
@@ -206,7 +208,7 @@ class CsvParse {
       if (raw_.columns[column].read_as != wanted) read_as[column] = wanted;
     }
     if (std::all_of(read_as.begin(), read_as.end(), [](ReadAs as) { return as == ReadAs::nothing; })) return;
-    again_ = read_columns(source_, layout_, missing(), read_as, false, options_.threads, {});
+    again_ = read_columns(source_, layout_, missing(), read_as, false, threads_, {});
     for (std::size_t column = 0; column < read_as.size(); ++column)
       if (read_as[column] != ReadAs::nothing) raw_.columns[column] = std::move(again_.columns[column]);
   }
@@ -236,6 +238,7 @@ class CsvParse {
   std::string_view bytes_;
   const CsvOptions& options_;
   std::size_t block_bytes_;
+  unsigned threads_;
   Source source_;
   std::size_t begin_ = 0;  ///< of the header, behind the byte order mark
   bool decimal_is_open_ = false;

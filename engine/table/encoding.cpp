@@ -43,7 +43,7 @@ std::optional<ForeignFormat> recognise_foreign_format(std::string_view bytes) {
     return ForeignFormat{"a Parquet file", "Export it as CSV and read that"};
   if (bytes.starts_with("%PDF-"sv)) return ForeignFormat{"a PDF document", "Export the table as CSV and read that"};
   if (bytes.starts_with("\xFF\xFE"sv) || bytes.starts_with("\xFE\xFF"sv) || bytes.starts_with("\0\0\xFE\xFF"sv))
-    return ForeignFormat{"text in UTF-16 or UTF-32, not UTF-8", save_as_utf8};
+    return ForeignFormat{"text in UTF-16 or UTF-32", save_as_utf8};
   return std::nullopt;
 }
 

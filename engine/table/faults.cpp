@@ -80,12 +80,21 @@ Error describe_unclosed_quote(const Source& source, const Fault& fault) {
                     std::string("Add the closing double quote; ") + kDoubleQuotesHint);
 }
 
+bool ends_with_separator(const Source& source, const Fault& fault) {
+  const char* const begin = source.bytes.data() + fault.row_begin;
+  const char* const end = row_end(begin, source.bytes.data() + source.bytes.size());
+  const std::string_view row(begin, static_cast<std::size_t>(end - begin));
+  const std::size_t last = row.find_last_not_of(source.syntax.separator() == '\t' ? " \r\n" : " \t\r\n");
+  return last != row.npos && row[last] == source.syntax.separator();
+}
+
 std::string ragged_hint(const Source& source, const Fault& fault) {
   const std::string separator(1, source.syntax.separator());
   const std::size_t n_columns = source.header.size();
   std::string hint;
   if (fault.n_cells > n_columns) {
     hint = "A cell that contains the separator " + show(separator) + " must be in double quotes";
+    if (ends_with_separator(source, fault)) return "The row ends with a separator; remove it";
     if (source.syntax.separator() == ',') hint += ", as must a number with a decimal comma";
   } else {
     hint = "Add the missing cells; a cell without a value is left empty between its separators";

@@ -2,7 +2,9 @@
 
 #include "table/encoding.hpp"
 
+#include <array>
 #include <cstddef>
+#include <utility>
 
 namespace formsieve::table {
 
@@ -19,6 +21,14 @@ std::string hex_byte(char byte) {
 
 bool is_control(char c) { return static_cast<unsigned char>(c) < 0x20 || c == 0x7F; }
 
+/// Characters that look like a blank or like nothing, with the name by which they are shown.
+constexpr std::array<std::pair<std::string_view, const char*>, 6> kUnseen = {{{"\u00A0", "\\u00A0"},
+                                                                              {"\u2007", "\\u2007"},
+                                                                              {"\u2009", "\\u2009"},
+                                                                              {"\u200B", "\\u200B"},
+                                                                              {"\u202F", "\\u202F"},
+                                                                              {"\uFEFF", "\\uFEFF"}}};
+
 /// One character of `text` at `at`, made visible; advances `at`.
 std::string shown_character(std::string_view text, std::size_t& at) {
   const char c = text[at];
@@ -28,7 +38,10 @@ std::string shown_character(std::string_view text, std::size_t& at) {
   if (c == '\r') return "\\r";
   if (c == '\t') return "\\t";
   if (length == 0 || is_control(c)) return "\\x" + hex_byte(c);
-  return std::string(text.substr(at - length, length));
+  const std::string_view character = text.substr(at - length, length);
+  for (const auto& [unseen, name] : kUnseen)
+    if (character == unseen) return name;
+  return std::string(character);
 }
 
 }  // namespace

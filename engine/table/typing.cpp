@@ -141,8 +141,8 @@ Error describe_odd_cell(const Judgement& judgement, const std::string& where, co
   const NumberKind kind = classify(cell, decimal);
   std::string message = (cell.empty() ? "an empty cell" : show(cell)) + " " + describe_kind(kind, decimal);
   if (judgement.n_numbers > 0)
-    message += ", while " + std::to_string(judgement.n_numbers) + " of the " + std::to_string(judgement.n_values) +
-               " values in this column are numbers";
+    message += "; " + std::to_string(judgement.n_numbers) + " of the " + std::to_string(judgement.n_values) +
+               " values in this column " + (judgement.n_numbers == 1 ? "is a number" : "are numbers");
 
   std::string hint = mend_at_source(kind, decimal);
   const std::string as_text = "data.text = " + toml_list(std::vector{name});
