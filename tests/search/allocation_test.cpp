@@ -1,0 +1,48 @@
+// Counts every allocation of this program, to show that the walk makes none per candidate.
+#include "problem.hpp"
+#include "search/subtree_walker.hpp"
+
+#include <catch2/catch.hpp>
+
+#include <atomic>
+#include <cstdlib>
+#include <limits>
+#include <new>
+
+namespace {
+std::atomic<std::size_t> n_allocations = 0;
+}  // namespace
+
+void* operator new(std::size_t size) {
+  ++n_allocations;
+  if (void* const memory = std::malloc(size == 0 ? 1 : size)) return memory;
+  throw std::bad_alloc();
+}
+void operator delete(void* memory) noexcept { std::free(memory); }
+void operator delete(void* memory, std::size_t) noexcept { std::free(memory); }
+
+using namespace formsieve;
+
+TEST_CASE("search: the counter of allocations counts", "[search][unit]") {
+  const std::size_t before = n_allocations;
+  const std::vector<int> some(3);
+  CHECK(n_allocations == before + 1);
+  CHECK(some.size() == 3);
+}
+
+TEST_CASE("search: a walker allocates nothing while it walks", "[search][unit]") {
+  const auto problem =
+      test::make_problem(41, 40, {{{1, 1, 1}}, {{1, 3}}, {{1, 1}}, {{1, 1}}, {{2}, true}, {{1, 1}}}, 2, 4);
+  const auto grams = test::grams_of(problem);
+  search::WalkOptions options = test::keep_all(problem.space, 2.0);
+  options.rules[0].keep = 20;
+  const search::Tree tree(problem.space);
+  const search::Root root(tree, grams, options.smallest_pivot_rel);
+  search::SubtreeWalker walker(tree, root, options, std::numeric_limits<std::uint64_t>::max());
+  const std::size_t before = n_allocations;
+  walker.enter({});
+  walker.walk();
+  const std::size_t after = n_allocations;
+  CHECK(after == before);
+  CHECK(walker.n_scored() == search::count(problem.space));
+}
