@@ -1,47 +1,26 @@
 #include "fit/folded_fit.hpp"
 
-#include <Eigen/QR>
+#include "fit/input_check.hpp"
+#include "fit/row_block_kernel.hpp"
 
-#include <cmath>
-#include <limits>
+#include <utility>
 
 namespace formsieve::fit {
 
 namespace {
 
-/// Relative size of a diagonal entry of R below which two columns are the same for all purposes; the screen's pivot
-/// guard of 1e-8 (a squared quantity) corresponds to 1e-4 here, so that only candidates that never passed the screen
-/// come near it.
-constexpr double kSmallestDiagonalRel = 1e-11;
+using Eigen::Index;
 
-/// Rows of [x y] that lie in each fold, standardised and whitened.
-std::vector<Eigen::MatrixXd> split(const Eigen::Ref<const Eigen::MatrixXd>& x,
-                                   const Eigen::Ref<const Eigen::VectorXd>& y,
-                                   const Eigen::Ref<const Eigen::VectorXd>& weights,
-                                   std::span<const std::uint32_t> fold_of, const std::vector<Eigen::Index>& rows,
-                                   const Eigen::RowVectorXd& centre, const Eigen::RowVectorXd& scale) {
-  const Eigen::Index p = x.cols();
-  std::vector<Eigen::MatrixXd> parts;
-  parts.reserve(rows.size());
-  for (const Eigen::Index count : rows) parts.emplace_back(count, p + 1);
-  std::vector<Eigen::Index> next(rows.size(), 0);
-  std::vector<double> root(static_cast<std::size_t>(weights.size()));
-  for (std::size_t i = 0; i < root.size(); ++i) root[i] = std::sqrt(weights[static_cast<Eigen::Index>(i)]);
-  for (Eigen::Index j = 0; j <= p; ++j) {
-    std::fill(next.begin(), next.end(), 0);
-    for (Eigen::Index i = 0; i < x.rows(); ++i) {
-      const std::size_t fold = fold_of[static_cast<std::size_t>(i)];
-      const double value = j < p ? (x(i, j) - centre[j]) / scale[j] : y[i];
-      parts[fold](next[fold]++, j) = root.empty() ? value : value * root[static_cast<std::size_t>(i)];
-    }
-  }
-  return parts;
+/// Rows of each fold, rising.
+std::vector<std::vector<Index>> rows_by_fold(std::span<const std::uint32_t> fold_of, std::size_t n_folds) {
+  std::vector<std::vector<Index>> rows(n_folds);
+  for (std::size_t i = 0; i < fold_of.size(); ++i) rows[fold_of[i]].push_back(static_cast<Index>(i));
+  return rows;
 }
 
-Eigen::MatrixXd triangle_of(const Eigen::MatrixXd& part) {
-  if (part.rows() <= part.cols()) return part;
-  const Eigen::HouseholderQR<Eigen::MatrixXd> qr(part);
-  return qr.matrixQR().topRows(part.cols()).triangularView<Eigen::Upper>();
+Eigen::MatrixXd joined(Eigen::MatrixXd triangle, Eigen::MatrixXd other) {
+  fold_in_triangle(triangle.data(), other.data(), static_cast<std::size_t>(triangle.rows()));
+  return triangle;
 }
 
 }  // namespace
@@ -49,48 +28,39 @@ Eigen::MatrixXd triangle_of(const Eigen::MatrixXd& part) {
 FoldedFit::FoldedFit(const Eigen::Ref<const Eigen::MatrixXd>& x, const Eigen::Ref<const Eigen::VectorXd>& y,
                      const Eigen::Ref<const Eigen::VectorXd>& weights, std::span<const std::uint32_t> fold_of,
                      std::size_t n_folds)
-    : centre_(x.colwise().mean()), scale_(Eigen::RowVectorXd::Ones(x.cols())), rows_(n_folds, 0) {
-  centre_[0] = 0.0;
-  for (Eigen::Index j = 1; j < x.cols(); ++j) {
-    const double spread = std::sqrt((x.col(j).array() - centre_[j]).square().mean());
-    if (spread > 0.0 && std::isfinite(spread)) scale_[j] = spread;
+    : n_rows_(x.rows()) {
+  if (const Status input = check_input(x, y, weights); !input.ok()) {
+    refused_ = input.error();
+    return;
   }
-  for (const std::uint32_t fold : fold_of) ++rows_[fold];
-  for (const auto& part : split(x, y, weights, fold_of, rows_, centre_, scale_)) triangle_.push_back(triangle_of(part));
+  const Columns columns{x, y, weights};
+  standards_ = standards_of(columns);
+  std::vector<Eigen::MatrixXd> of_fold;
+  for (const auto& rows : rows_by_fold(fold_of, n_folds)) {
+    rows_.push_back(static_cast<Index>(rows.size()));
+    of_fold.push_back(triangle_of(columns, standards_, rows));
+  }
+  const Eigen::MatrixXd none = Eigen::MatrixXd::Zero(x.cols() + 1, x.cols() + 1);
+  before_.assign(n_folds + 1, none);
+  after_.assign(n_folds + 1, none);
+  for (std::size_t g = 0; g < n_folds; ++g) before_[g + 1] = joined(before_[g], of_fold[g]);
+  for (std::size_t g = n_folds; g-- > 0;) after_[g] = joined(after_[g + 1], of_fold[g]);
 }
 
-Result<Solution> FoldedFit::without(std::size_t fold) const { return solve(fold); }
+Result<Solution> FoldedFit::without(std::size_t fold) const {
+  if (refused_) return *refused_;
+  return solve(joined(before_[fold], after_[fold + 1]), n_rows_ - rows_[fold]);
+}
 
-Result<Solution> FoldedFit::all() const { return solve(std::numeric_limits<std::size_t>::max()); }
+Result<Solution> FoldedFit::all() const {
+  if (refused_) return *refused_;
+  return solve(before_.back(), n_rows_);
+}
 
-Result<Solution> FoldedFit::solve(std::size_t left_out) const {
-  const Eigen::Index p = centre_.size();
-  Eigen::Index n_rows = 0;
-  Eigen::Index n_stacked = 0;
-  for (std::size_t g = 0; g < triangle_.size(); ++g) {
-    if (g == left_out) continue;
-    n_rows += rows_[g];
-    n_stacked += triangle_[g].rows();
-  }
-  if (n_rows < p)
-    return Error{ErrorKind::data, "a training part has fewer rows than the candidate has coefficients", "", ""};
-  Eigen::MatrixXd stacked(n_stacked, p + 1);
-  Eigen::Index at = 0;
-  for (std::size_t g = 0; g < triangle_.size(); ++g) {
-    if (g == left_out) continue;
-    stacked.middleRows(at, triangle_[g].rows()) = triangle_[g];
-    at += triangle_[g].rows();
-  }
-  Eigen::ColPivHouseholderQR<Eigen::MatrixXd> qr(stacked.leftCols(p));
-  const auto diagonal = qr.matrixR().diagonal().cwiseAbs();
-  if (!(diagonal[p - 1] > kSmallestDiagonalRel * diagonal[0]))
-    return Error{ErrorKind::data, "columns of the candidate cannot be told apart on a training part", "", ""};
-  Solution solution;
-  const Eigen::VectorXd standardised = qr.solve(stacked.col(p));
-  solution.rss = (stacked.col(p) - stacked.leftCols(p) * standardised).squaredNorm();
-  solution.coefficients = standardised.array() / scale_.transpose().array();
-  solution.coefficients[0] -= (solution.coefficients.tail(p - 1).transpose() * centre_.tail(p - 1).transpose()).value();
-  return solution;
+Result<Solution> FoldedFit::solve(const Eigen::MatrixXd& triangle, Index n_rows) const {
+  auto solution = solve_triangle(triangle, standards_, n_rows);
+  if (!solution.ok()) return std::move(solution).error();
+  return Solution{std::move(solution->coefficients), solution->rss};
 }
 
 }  // namespace formsieve::fit

@@ -21,10 +21,7 @@ std::string at_row(Eigen::Index row) { return "row " + std::to_string(row + 1) +
 Status check_input(const Eigen::Ref<const Eigen::MatrixXd>& x, const Eigen::Ref<const Eigen::VectorXd>& y,
                    const Eigen::Ref<const Eigen::VectorXd>& weights) {
   assert(x.cols() >= 1 && y.size() == x.rows() && (weights.size() == 0 || weights.size() == x.rows()));
-  if (x.rows() < x.cols()) {
-    return data_error(std::to_string(x.rows()) + " rows cannot determine " + std::to_string(x.cols()) + " coefficients",
-                      "", "use fewer terms, or more rows");
-  }
+  if (x.rows() < x.cols()) return too_few_rows_error(x.rows(), x.cols());
   for (Eigen::Index j = 0; j < x.cols(); ++j) {
     if ((x.col(j).array() * 0.0).sum() == 0.0) continue;  // ∞·0 and NaN·0 are NaN; the sum is one fast pass
     Eigen::Index i = 0;
@@ -51,6 +48,12 @@ Status check_input(const Eigen::Ref<const Eigen::MatrixXd>& x, const Eigen::Ref<
 bool does_vary(double deviation_rms, double largest) {
   constexpr double kRounding = 4.0 * std::numeric_limits<double>::epsilon();
   return deviation_rms > kRounding * largest;  // false for NaN
+}
+
+Error too_few_rows_error(Eigen::Index n_rows, Eigen::Index n_coefficients) {
+  return data_error(
+      std::to_string(n_rows) + " rows cannot determine " + std::to_string(n_coefficients) + " coefficients", "",
+      "use fewer terms, or more rows");
 }
 
 Error dependent_column_error(Eigen::Index column, bool constant) {

@@ -16,6 +16,7 @@ Status check_input(const Eigen::Ref<const Eigen::MatrixXd>& x, const Eigen::Ref<
 /// values leaves of a constant, a few ε of its largest value.
 bool does_vary(double deviation_rms, double largest);
 
+Error too_few_rows_error(Eigen::Index n_rows, Eigen::Index n_coefficients);
 /// The error for a design column that the others determine on these rows (`constant`: the intercept alone does).
 Error dependent_column_error(Eigen::Index column, bool constant);
 

@@ -48,8 +48,8 @@ bool is_exact(long double rss, const ConstVector& y, const ConstVector& weights)
 }
 
 /// Coefficients, fitted values, residuals and sums of squares.
-void set_solution(const Solution& solution, const ConstMatrix& x, const ConstVector& y, const ConstVector& weights,
-                  Fit& fit) {
+void set_solution(const RefinedSolution& solution, const ConstMatrix& x, const ConstVector& y,
+                  const ConstVector& weights, Fit& fit) {
   const long double rss = weighted_square_sum(solution.residuals_form, weights);
   const bool saturated = x.rows() == x.cols();
   const bool exact = saturated || is_exact(rss, y, weights);

@@ -97,9 +97,9 @@ class AugmentedSystem {
 }  // namespace
 
 template <class Scalar>
-Solution refined_solution(const CentredFactor<Scalar>& factor, const Eigen::Ref<const Eigen::MatrixXd>& x,
-                          const Eigen::Ref<const Eigen::VectorXd>& y,
-                          const Eigen::Ref<const Eigen::VectorXd>& weights) {
+RefinedSolution refined_solution(const CentredFactor<Scalar>& factor, const Eigen::Ref<const Eigen::MatrixXd>& x,
+                                 const Eigen::Ref<const Eigen::VectorXd>& y,
+                                 const Eigen::Ref<const Eigen::VectorXd>& weights) {
   AugmentedSystem system(x, y, weights, factor.centre(), factor.scale());
   Vector<long double> f, g;
   Vector<Scalar> s, gamma;
@@ -118,9 +118,11 @@ Solution refined_solution(const CentredFactor<Scalar>& factor, const Eigen::Ref<
   return {system.coefficients(), system.raw_residuals()};
 }
 
-template Solution refined_solution(const CentredFactor<double>&, const Eigen::Ref<const Eigen::MatrixXd>&,
-                                   const Eigen::Ref<const Eigen::VectorXd>&, const Eigen::Ref<const Eigen::VectorXd>&);
-template Solution refined_solution(const CentredFactor<long double>&, const Eigen::Ref<const Eigen::MatrixXd>&,
-                                   const Eigen::Ref<const Eigen::VectorXd>&, const Eigen::Ref<const Eigen::VectorXd>&);
+template RefinedSolution refined_solution(const CentredFactor<double>&, const Eigen::Ref<const Eigen::MatrixXd>&,
+                                          const Eigen::Ref<const Eigen::VectorXd>&,
+                                          const Eigen::Ref<const Eigen::VectorXd>&);
+template RefinedSolution refined_solution(const CentredFactor<long double>&, const Eigen::Ref<const Eigen::MatrixXd>&,
+                                          const Eigen::Ref<const Eigen::VectorXd>&,
+                                          const Eigen::Ref<const Eigen::VectorXd>&);
 
 }  // namespace formsieve::fit

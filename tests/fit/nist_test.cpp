@@ -58,7 +58,8 @@ NistSet read_set(const std::string& name) {
   const auto number = [](const nlohmann::json& v) { return std::strtod(v.get<std::string>().c_str(), nullptr); };
   const auto& values = about.at("certified");
   for (Eigen::Index j = 0; j < p; ++j) {
-    const std::string key = "B" + std::to_string(j);
+    std::string key = "B";
+    key += std::to_string(j);
     set.coefficients.push_back(number(values.at("coefficients").at(key)));
     set.standard_errors.push_back(number(values.at("standard_errors").at(key)));
   }

@@ -8,6 +8,17 @@
 
 using namespace formsieve;
 
+namespace {
+
+void fold_in_block(Eigen::MatrixXd& triangle, const Eigen::Ref<const Eigen::MatrixXd>& rows) {
+  Eigen::MatrixXd block(static_cast<Eigen::Index>(fit::kRowBlockStride), rows.cols());
+  block.topRows(rows.rows()) = rows;
+  fit::fold_in_rows(triangle.data(), block.data(), static_cast<std::size_t>(rows.rows()),
+                    static_cast<std::size_t>(rows.cols()));
+}
+
+}  // namespace
+
 TEST_CASE("fit: folding in rows keeps the inner products of a plain loop", "[fit][property]") {
   std::mt19937 generator(4);
   std::normal_distribution<double> normal;
@@ -18,11 +29,9 @@ TEST_CASE("fit: folding in rows keeps the inner products of a plain loop", "[fit
       for (Eigen::Index i = 0; i < n; ++i) a(i, j) = normal(generator);
     }
     Eigen::MatrixXd triangle = Eigen::MatrixXd::Zero(m, m);
-    Eigen::MatrixXd block(static_cast<Eigen::Index>(fit::kRowBlockStride), m);
     for (Eigen::Index start = 0; start < n; start += static_cast<Eigen::Index>(fit::kRowBlock)) {
       const Eigen::Index rows = std::min(static_cast<Eigen::Index>(fit::kRowBlock), n - start);
-      block.topRows(rows) = a.middleRows(start, rows);
-      fit::fold_in_rows(triangle.data(), block.data(), static_cast<std::size_t>(rows), static_cast<std::size_t>(m));
+      fold_in_block(triangle, a.middleRows(start, rows));
     }
     for (Eigen::Index i = 0; i < m; ++i) {
       for (Eigen::Index j = i; j < m; ++j) {
@@ -34,4 +43,20 @@ TEST_CASE("fit: folding in rows keeps the inner products of a plain loop", "[fit
       for (Eigen::Index row = i + 1; row < m; ++row) CHECK(triangle(row, i) == 0.0);
     }
   }
+}
+
+TEST_CASE("fit: folding in a triangle equals folding in its rows", "[fit][property]") {
+  std::mt19937 generator(6);
+  std::normal_distribution<double> normal;
+  Eigen::MatrixXd one = Eigen::MatrixXd::Zero(5, 5), other = one;
+  for (Eigen::Index j = 0; j < 5; ++j) {
+    for (Eigen::Index i = 0; i <= j; ++i) {
+      one(i, j) = normal(generator);
+      other(i, j) = normal(generator);
+    }
+  }
+  Eigen::MatrixXd by_rows = one;
+  fold_in_block(by_rows, other);
+  fit::fold_in_triangle(one.data(), other.data(), 5);
+  CHECK((one - by_rows).cwiseAbs().maxCoeff() < 1e-14);
 }
