@@ -29,26 +29,25 @@ double lag_one_autocorrelation(const Eigen::Ref<const Eigen::VectorXd>& residual
   return total > 0.0 ? deviation.tail(n - 1).dot(deviation.head(n - 1)) / total : 0.0;
 }
 
-/// S, tridiagonal symmetric, and the first two cumulants of z'Cz.
-struct DurbinWatsonDistribution::Form {
-  Eigen::VectorXd diagonal;  ///< [n]
-  Eigen::VectorXd beside;    ///< [n − 1]
-  double mean = 0.0;         ///< tr C
-  double sd = 1.0;           ///< √(2 tr C²)
+/// The first two cumulants of z'Cz for one d.
+struct DurbinWatsonDistribution::Spread {
+  double mean = 0.0;  ///< tr C
+  double sd = 0.0;    ///< √(2 tr C²)
 };
 
 namespace {
+
+/// S_tt; beside the diagonal S is −1.
+double diagonal_entry(Eigen::Index t, Eigen::Index n, double d) { return (t == 0 || t == n - 1 ? 1.0 : 2.0) - d; }
 
 /// det(I − 2iuC)^{-1/2} through the LDL' factors of T = I − 2iuS and of Q'T⁻¹Q, u in units of 1/sd. Both have a
 /// positive definite real part, so every pivot has a positive real part: no pivoting is needed, and the sum of the
 /// pivots' angles is the continuous angle of the determinant.
 class CharacteristicFunction {
  public:
-  CharacteristicFunction(const Eigen::MatrixXd& basis, const Eigen::VectorXd& diagonal, const Eigen::VectorXd& beside,
-                         double sd)
+  CharacteristicFunction(const Eigen::MatrixXd& basis, double d, double sd)
       : basis_rows_(basis.transpose()),
-        diagonal_(diagonal),
-        beside_(beside),
+        d_(d),
         sd_(sd),
         p_(static_cast<std::size_t>(basis.cols())),
         y_re_(p_),
@@ -72,17 +71,17 @@ class CharacteristicFunction {
  private:
   /// Forward substitution L y = Q row by row, G += y y'/pivot.
   void sweep_band(double v) {
+    const Eigen::Index n = basis_rows_.cols();
     double inverse_re = 0.0, inverse_im = 0.0;  // 1/pivot of the row before
-    for (Eigen::Index t = 0; t < diagonal_.size(); ++t) {
+    for (Eigen::Index t = 0; t < n; ++t) {
       double pivot_re = 1.0;
-      double pivot_im = -v * diagonal_[t];
+      double pivot_im = -v * diagonal_entry(t, n, d_);
       double l_re = 0.0, l_im = 0.0;
       if (t > 0) {
-        const double off = -v * beside_[t - 1];  // imaginary
-        l_re = -off * inverse_im;
-        l_im = off * inverse_re;
-        pivot_re += off * l_im;  // minus l·(i·off)
-        pivot_im -= off * l_re;
+        l_re = -v * inverse_im;  // the entry beside the diagonal is −iv·(−1) = iv
+        l_im = v * inverse_re;
+        pivot_re += v * l_im;
+        pivot_im -= v * l_re;
       }
       const double size2 = pivot_re * pivot_re + pivot_im * pivot_im;
       inverse_re = pivot_re / size2;
@@ -142,22 +141,11 @@ class CharacteristicFunction {
   }
 
   Eigen::MatrixXd basis_rows_;  ///< [p × n]
-  const Eigen::VectorXd& diagonal_;
-  const Eigen::VectorXd& beside_;
-  double sd_;
+  double d_, sd_;
   std::size_t p_;
   std::vector<double> y_re_, y_im_, g_re_, g_im_;
   double log_size_ = 0.0, angle_ = 0.0;
 };
-
-/// Gershgorin's bound on |eigenvalues| of S, hence of C.
-double largest_eigenvalue_bound(const Eigen::VectorXd& diagonal, const Eigen::VectorXd& beside) {
-  const Eigen::Index n = diagonal.size();
-  Eigen::VectorXd radius = diagonal.cwiseAbs();
-  radius.head(n - 1) += beside.cwiseAbs();
-  radius.tail(n - 1) += beside.cwiseAbs();
-  return radius.maxCoeff();
-}
 
 /// P(Q < 0) by the midpoint rule (Davies 1973): Q has mean `mean` and standard deviation 1. The rule's error is at most
 /// P(|Q| > 2π/step); Laurent & Massart 2000 bound that tail by e^{-x} at a distance √(2x) + 2·largest·x from the mean,
@@ -193,46 +181,35 @@ std::optional<double> by_double_exponential(CharacteristicFunction& characterist
 
 }  // namespace
 
-DurbinWatsonDistribution::DurbinWatsonDistribution(Eigen::MatrixXd basis,
-                                                   const Eigen::Ref<const Eigen::VectorXd>& weights)
-    : basis_(std::move(basis)), inverse_sqrt_weights_(Eigen::VectorXd::Ones(basis_.rows())) {
-  if (weights.size() == 0) return;
-  inverse_sqrt_weights_ = weights.array().rsqrt();
-  inverse_sqrt_weights_ /= std::sqrt(inverse_sqrt_weights_.squaredNorm() / static_cast<double>(basis_.rows()));
-}
+DurbinWatsonDistribution::DurbinWatsonDistribution(Eigen::MatrixXd basis) : basis_(std::move(basis)) {}
 
-DurbinWatsonDistribution::Form DurbinWatsonDistribution::form_at(double d) const {
+DurbinWatsonDistribution::Spread DurbinWatsonDistribution::spread_at(double d) const {
   const Eigen::Index n = basis_.rows();
-  Form form;
-  form.diagonal = Eigen::VectorXd::Constant(n, 2.0 - d);
-  form.diagonal[0] = form.diagonal[n - 1] = 1.0 - d;
-  form.diagonal.array() *= inverse_sqrt_weights_.array().square();
-  form.beside = -inverse_sqrt_weights_.head(n - 1).cwiseProduct(inverse_sqrt_weights_.tail(n - 1));
-  Eigen::MatrixXd s_basis = form.diagonal.asDiagonal() * basis_;  // S·Q
-  s_basis.topRows(n - 1) += form.beside.asDiagonal() * basis_.bottomRows(n - 1);
-  s_basis.bottomRows(n - 1) += form.beside.asDiagonal() * basis_.topRows(n - 1);
+  Eigen::VectorXd diagonal(n);
+  for (Eigen::Index t = 0; t < n; ++t) diagonal[t] = diagonal_entry(t, n, d);
+  Eigen::MatrixXd s_basis = diagonal.asDiagonal() * basis_;  // S·Q
+  s_basis.topRows(n - 1) -= basis_.bottomRows(n - 1);
+  s_basis.bottomRows(n - 1) -= basis_.topRows(n - 1);
   const Eigen::MatrixXd inner = basis_.transpose() * s_basis;
-  form.mean = form.diagonal.sum() - inner.trace();
-  const double trace_of_square =
-      form.diagonal.squaredNorm() + 2.0 * form.beside.squaredNorm() - 2.0 * s_basis.squaredNorm() + inner.squaredNorm();
-  form.sd = std::sqrt(std::max(2.0 * trace_of_square, 0.0));
-  return form;
+  const double trace_of_s2 = diagonal.squaredNorm() + 2.0 * static_cast<double>(n - 1);
+  const double trace_of_c2 = trace_of_s2 - 2.0 * s_basis.squaredNorm() + inner.squaredNorm();
+  return {diagonal.sum() - inner.trace(), std::sqrt(std::max(2.0 * trace_of_c2, 0.0))};
 }
 
 double DurbinWatsonDistribution::lower_tail(double d) const {
-  const Form form = form_at(d);
-  if (!(form.sd > 0.0)) return form.mean < 0.0 ? 1.0 : 0.0;
-  CharacteristicFunction characteristic(basis_, form.diagonal, form.beside, form.sd);
-  auto p = by_midpoints(characteristic, std::abs(form.mean) / form.sd,
-                        largest_eigenvalue_bound(form.diagonal, form.beside) / form.sd);
+  const Spread spread = spread_at(d);
+  if (!(spread.sd > 0.0)) return spread.mean < 0.0 ? 1.0 : 0.0;
+  const double largest_eigenvalue = std::max(d, 4.0 - d);  // those of A lie in [0, 4)
+  CharacteristicFunction characteristic(basis_, d, spread.sd);
+  auto p = by_midpoints(characteristic, std::abs(spread.mean) / spread.sd, largest_eigenvalue / spread.sd);
   if (!p) p = by_double_exponential(characteristic);
   return p ? std::clamp(*p, 0.0, 1.0) : lower_tail_by_moments(d);
 }
 
 double DurbinWatsonDistribution::lower_tail_by_moments(double d) const {
-  const Form form = form_at(d);
-  if (!(form.sd > 0.0)) return form.mean < 0.0 ? 1.0 : 0.0;
-  return boost::math::cdf(boost::math::normal(), -form.mean / form.sd);
+  const Spread spread = spread_at(d);
+  if (!(spread.sd > 0.0)) return spread.mean < 0.0 ? 1.0 : 0.0;
+  return boost::math::cdf(boost::math::normal(), -spread.mean / spread.sd);
 }
 
 }  // namespace formsieve::checks

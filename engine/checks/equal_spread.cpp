@@ -32,8 +32,8 @@ std::vector<Eigen::Index> rows_by_fitted(const Subject& subject) {
   return rows;
 }
 
-/// Standard deviation of the residuals in the top third of fitted values over that in the bottom third (⌊n/3⌋ rows
-/// each, ties in row order).
+/// Standard deviation of the (whitened) residuals in the top third of fitted values over that in the bottom third
+/// (⌊n/3⌋ rows each, ties in row order).
 std::optional<double> spread_ratio(const Workings& workings) {
   const Eigen::Index third = workings.n / 3;
   if (third < kFewestRowsInThird || workings.p < 2) return std::nullopt;
@@ -41,8 +41,8 @@ std::optional<double> spread_ratio(const Workings& workings) {
   Eigen::VectorXd bottom(third);
   Eigen::VectorXd top(third);
   for (Eigen::Index i = 0; i < third; ++i) {
-    bottom[i] = workings.subject.residuals[rows[static_cast<std::size_t>(i)]];
-    top[i] = workings.subject.residuals[rows[static_cast<std::size_t>(workings.n - 1 - i)]];
+    bottom[i] = workings.residuals[rows[static_cast<std::size_t>(i)]];
+    top[i] = workings.residuals[rows[static_cast<std::size_t>(workings.n - 1 - i)]];
   }
   const double low = standard_deviation(bottom);
   const double high = standard_deviation(top);
@@ -62,8 +62,7 @@ void set_size(const Workings& workings, Check& check) {
 
 /// Squared residuals over their mean, centred; empty when they are all equal.
 Eigen::VectorXd centred_squares(const Workings& workings) {
-  Eigen::VectorXd squares =
-      (workings.subject.residuals / workings.subject.residuals.lpNorm<Eigen::Infinity>()).array().square();
+  Eigen::VectorXd squares = (workings.residuals / workings.residuals.lpNorm<Eigen::Infinity>()).array().square();
   squares /= squares.mean();
   squares = centred(squares);
   constexpr double kAllEqual = 1e-12;  // relative; two rows, or one two-valued column, make them equal by algebra
@@ -125,7 +124,7 @@ Check equal_spread_by_term(const Workings& workings) {
   } else if (!workings.plain.full_rank) {
     check.note = "the design columns are not separable without the weights";
   } else {
-    const Eigen::VectorXd along = workings.plain.q.transpose() * squares;
+    const Eigen::VectorXd along = workings.plain.q.rightCols(workings.p - 1).transpose() * squares;
     set_test(workings, along.squaredNorm() / squares.squaredNorm(), static_cast<double>(along.size()), check);
   }
   note_weights(workings, check);

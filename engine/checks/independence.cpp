@@ -3,7 +3,7 @@
 #include "checks/workings.hpp"
 
 #include <algorithm>
-#include <cmath>
+#include <utility>
 
 namespace formsieve::checks {
 
@@ -16,31 +16,21 @@ constexpr double kSmallestP = 1e-9;
 /// With one residual degree of freedom d can take one value only.
 constexpr Eigen::Index kFewestDegreesOfFreedom = 2;
 
-Eigen::VectorXd in_order(const Eigen::Ref<const Eigen::VectorXd>& x, const std::vector<std::size_t>& order) {
+Eigen::VectorXd in_order(const Eigen::VectorXd& x, const std::vector<std::size_t>& order) {
   Eigen::VectorXd result(static_cast<Eigen::Index>(order.size()));
   for (std::size_t i = 0; i < order.size(); ++i)
     result[static_cast<Eigen::Index>(i)] = x[static_cast<Eigen::Index>(order[i])];
   return result;
 }
 
-/// Orthonormal basis of the whitened design with its constant, rows in order.
-Eigen::MatrixXd basis_in_order(const Workings& workings, const Eigen::VectorXd& weights_in_order) {
-  const auto& order = workings.subject.order;
-  const Basis& basis = workings.of_the_fit();
-  Eigen::MatrixXd result(workings.n, basis.q.cols() + 1);
-  result.col(0).setOnes();
-  if (workings.weighted()) result.col(0) = weights_in_order.cwiseSqrt();
-  result.col(0).normalize();
-  for (std::size_t i = 0; i < order.size(); ++i)
-    result.row(static_cast<Eigen::Index>(i)).tail(basis.q.cols()) = basis.q.row(static_cast<Eigen::Index>(order[i]));
-  return result;
-}
-
 /// Two-sided: neighbours may be alike (d below 2) or alternate (d above 2).
 double two_sided_p(const Workings& workings, double d) {
-  const Eigen::VectorXd weights =
-      workings.weighted() ? in_order(workings.subject.weights, workings.subject.order) : Eigen::VectorXd(0);
-  const DurbinWatsonDistribution distribution(basis_in_order(workings, weights), weights);
+  const auto& order = workings.subject.order;
+  const Eigen::MatrixXd& q = workings.of_the_fit().q;
+  Eigen::MatrixXd basis(workings.n, workings.p);
+  for (std::size_t i = 0; i < order.size(); ++i)
+    basis.row(static_cast<Eigen::Index>(i)) = q.row(static_cast<Eigen::Index>(order[i]));
+  const DurbinWatsonDistribution distribution(std::move(basis));
   const double below =
       workings.n <= kMostExactRows ? distribution.lower_tail(d) : distribution.lower_tail_by_moments(d);
   return std::clamp(2.0 * std::min(below, 1.0 - below), kSmallestP, 1.0);
@@ -62,7 +52,7 @@ Check independence(const Workings& workings) {
     check.note = workings.untestable.empty() ? "the order does not cover every row" : workings.untestable;
     return check;
   }
-  const Eigen::VectorXd residuals = in_order(workings.subject.residuals, workings.subject.order);
+  const Eigen::VectorXd residuals = in_order(workings.residuals, workings.subject.order);
   check.statistic = durbin_watson(residuals);
   check.size = lag_one_autocorrelation(residuals);
   check.size_words = "correlation of neighbouring residuals " + number_words(check.size);
@@ -72,6 +62,7 @@ Check independence(const Workings& workings) {
     check.note = "no p-value: the design columns are not separable";
   else
     check.p = two_sided_p(workings, *check.statistic);
+  note_weights(workings, check);
   return check;
 }
 

@@ -9,25 +9,15 @@ namespace formsieve::checks {
 
 namespace {
 
-/// Residuals divided by their standard deviations but for leverage: √w·e/s.
-Eigen::VectorXd scaled_residuals(const Subject& subject) {
-  Eigen::VectorXd scaled = subject.residuals / subject.sigma;
-  if (subject.weights.size() > 0) scaled.array() *= subject.weights.array().sqrt();
-  return scaled;
-}
-
 /// Largest change, over all rows j, of the fitted value of row j when `row` is left out, in the standard deviation
 /// σ/√w_j of a measurement at row j: |q_j·q_row|·√w|e|/((1 − h)·σ) with q the rows of an orthonormal basis of the
 /// whitened design. DFFITS (Belsley, Kuh & Welsch 1980) is the same at j = row, but for its own scale.
 double largest_prediction_change(const Workings& workings, Eigen::Index row) {
   const Subject& subject = workings.subject;
   if (subject.leverage[row] >= kFullLeverage) return 0.0;
-  const Basis& basis = workings.of_the_fit();
-  Eigen::VectorXd constant = Eigen::VectorXd::Ones(workings.n);
-  if (workings.weighted()) constant = subject.weights.array().sqrt();
-  constant.normalize();
-  const Eigen::VectorXd hat = basis.q * basis.q.row(row).transpose() + constant * constant[row];
-  const double pull = std::abs(scaled_residuals(subject)[row]) / (1.0 - subject.leverage[row]);
+  const Eigen::MatrixXd& q = workings.of_the_fit().q;
+  const Eigen::VectorXd hat = q * q.row(row).transpose();
+  const double pull = std::abs(workings.residuals[row]) / subject.sigma / (1.0 - subject.leverage[row]);
   return hat.lpNorm<Eigen::Infinity>() * pull;
 }
 
@@ -42,7 +32,8 @@ void note_full_leverage(const Workings& workings, Check& check) {
 
 Eigen::VectorXd cook_distances(const Subject& subject) {
   const Eigen::ArrayXd h = subject.leverage.array();
-  const Eigen::ArrayXd scaled = scaled_residuals(subject).array();
+  Eigen::ArrayXd scaled = subject.residuals.array() / subject.sigma;
+  if (subject.weights.size() > 0) scaled *= subject.weights.array().sqrt();
   const double p = static_cast<double>(subject.x.cols());
   return (h < kFullLeverage).select(scaled.square() * h / (p * (1.0 - h).square()), 0.0);
 }

@@ -9,7 +9,7 @@ namespace formsieve::checks {
 namespace {
 
 void test_by_shapiro_wilk(const Workings& workings, Check& check) {
-  const auto test = shapiro_wilk(workings.subject.residuals);
+  const auto test = shapiro_wilk(workings.residuals);
   if (!test) {
     check.note = "needs at least three rows and residuals of some spread";
     return;
@@ -19,7 +19,7 @@ void test_by_shapiro_wilk(const Workings& workings, Check& check) {
 }
 
 void test_by_anderson_darling(const Workings& workings, Check& check) {
-  const auto test = anderson_darling(workings.subject.residuals);
+  const auto test = anderson_darling(workings.residuals);
   if (!test) return;
   check.statistic = test->a2_adjusted;
   check.p = test->p;
@@ -39,7 +39,7 @@ Check normal_residuals(const Workings& workings) {
     check.size_words = "no residuals to judge";
     return check;
   }
-  const Moments shape = moments(workings.subject.residuals);
+  const Moments shape = moments(workings.residuals);
   check.size = shape.skewness;
   check.size2 = shape.excess_kurtosis;
   check.size_words = "residual skewness " + number_words(shape.skewness) + ", excess kurtosis " +

@@ -47,11 +47,16 @@ std::string why_untestable(const Subject& subject) {
 Basis centred_basis(const Eigen::Ref<const Eigen::MatrixXd>& x, const Eigen::Ref<const Eigen::VectorXd>& weights) {
   const Eigen::Index n = x.rows();
   const Eigen::Index k = x.cols() - 1;
-  if (k == 0) return {Eigen::MatrixXd(n, 0), Eigen::MatrixXd(0, 0), true};
   if (n <= k || !x.allFinite()) return {};
-  const Eigen::HouseholderQR<Eigen::MatrixXd> qr(standardised_columns(x, weights));
   Basis basis;
-  basis.q = qr.householderQ() * Eigen::MatrixXd::Identity(n, k);
+  basis.q.resize(n, k + 1);
+  basis.q.col(0).setOnes();
+  if (weights.size() > 0) basis.q.col(0) = weights.cwiseSqrt();
+  basis.q.col(0).normalize();
+  basis.full_rank = true;
+  if (k == 0) return basis;
+  const Eigen::HouseholderQR<Eigen::MatrixXd> qr(standardised_columns(x, weights));
+  basis.q.rightCols(k) = qr.householderQ() * Eigen::MatrixXd::Identity(n, k);
   basis.r = qr.matrixQR().topRows(k).triangularView<Eigen::Upper>();
   const Eigen::VectorXd pivots = basis.r.diagonal().cwiseAbs();
   basis.full_rank =
@@ -61,7 +66,10 @@ Basis centred_basis(const Eigen::Ref<const Eigen::MatrixXd>& x, const Eigen::Ref
 
 Workings prepare(const Subject& subject) {
   const Eigen::VectorXd none(0);
-  Workings workings{subject, subject.x.rows(), subject.x.cols(), why_untestable(subject), {}, {}};
+  Workings workings{subject, subject.x.rows(), subject.x.cols(), why_untestable(subject), {}, {}, {}, {}};
+  workings.root_weights = Eigen::VectorXd::Ones(workings.n);
+  if (workings.weighted()) workings.root_weights = subject.weights.cwiseSqrt();
+  workings.residuals = workings.root_weights.cwiseProduct(subject.residuals);
   workings.plain = centred_basis(subject.x, none);
   if (workings.weighted()) workings.whitened = centred_basis(subject.x, subject.weights);
   return workings;
@@ -78,7 +86,7 @@ Check named(const char* name, const char* method, const char* hypothesis) {
 void note_weights(const Workings& workings, Check& check) {
   if (!workings.weighted()) return;
   if (!check.note.empty()) check.note += "; ";
-  check.note += "on residuals as measured: unequal spread that the weights account for shows here too";
+  check.note += "residuals are multiplied by √weight";
 }
 
 Eigen::VectorXd centred(const Eigen::Ref<const Eigen::VectorXd>& x) { return x.array() - base::mean(as_span(x)); }

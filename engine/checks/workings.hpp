@@ -14,11 +14,11 @@ namespace formsieve::checks {
 /// response costs ε/2 = 1e-16 of it, and a backward-stable fit adds some tens of that.
 inline constexpr double kRoundingShare = 1e-13;
 
-/// QR of the design without its intercept, every column centred by its (weighted) mean, multiplied by √w and brought to
-/// unit length. Together with √w/√Σw, `q` spans the whitened design.
+/// Orthonormal basis of a design, whitened or not. The columns but the intercept are centred by their (weighted) means,
+/// multiplied by √w and brought to unit length before the QR, which keeps the digits of columns far from zero.
 struct Basis {
-  Eigen::MatrixXd q;       ///< [n × k] orthonormal
-  Eigen::MatrixXd r;       ///< [k × k] upper triangular; r'r is the (weighted) correlation matrix of the columns
+  Eigen::MatrixXd q;  ///< [n × p] orthonormal; column 0 is the intercept's direction, √w/‖√w‖
+  Eigen::MatrixXd r;  ///< [p−1 × p−1] upper triangular; r'r is the (weighted) correlation matrix of the columns
   bool full_rank = false;  ///< no column is a combination of others, by n·ε·max|r_jj|
 };
 
@@ -27,11 +27,13 @@ Basis centred_basis(const Eigen::Ref<const Eigen::MatrixXd>& x, const Eigen::Ref
 
 struct Workings {
   const Subject& subject;
-  Eigen::Index n;          ///< rows
-  Eigen::Index p;          ///< design columns with the intercept
-  std::string untestable;  ///< why the residuals cannot be tested; empty when they can
-  Basis plain;             ///< unweighted: auxiliary regressions are unweighted
-  Basis whitened;          ///< with the weights; empty when there are none (use `plain`)
+  Eigen::Index n;                ///< rows
+  Eigen::Index p;                ///< design columns with the intercept
+  std::string untestable;        ///< why the residuals cannot be tested; empty when they can
+  Eigen::VectorXd root_weights;  ///< [n] √w; ones without weights
+  Eigen::VectorXd residuals;  ///< [n] residual times √w: of equal variance if the weights are right. What is tested
+  Basis plain;                ///< without the weights: spread is regressed on the design as it is
+  Basis whitened;             ///< with the weights; empty when there are none (use of_the_fit)
 
   bool weighted() const { return subject.weights.size() > 0; }
   const Basis& of_the_fit() const { return weighted() ? whitened : plain; }
@@ -42,7 +44,7 @@ Workings prepare(const Subject& subject);
 /// A check with its names filled in that passes until shown otherwise.
 Check named(const char* name, const char* method, const char* hypothesis);
 
-/// Adds to the note of a residual check that weights were not applied. Residuals are tested as measured.
+/// Adds to the note of a residual check of a weighted fit what was tested.
 void note_weights(const Workings& workings, Check& check);
 
 /// x − mean(x).

@@ -171,13 +171,34 @@ TEST_CASE("checks: a fit that is not finite is listed with a note and passes", "
   CHECK(failed(checks).empty());
 }
 
-TEST_CASE("checks: weighted fits say that residuals are tested as measured", "[checks][unit]") {
+TEST_CASE("checks: spread that the weights account for is no unequal spread", "[checks][property]") {
   Normals normals(48);
+  const Eigen::Index n = 200;
+  const Eigen::MatrixXd x = normals.design(n, 2);
+  const Eigen::VectorXd weights = (-2.0 * x.col(1)).array().exp();  // spread grows as e^{x1}, so does the fitted value
+  const Eigen::VectorXd y = 3.0 * x.col(1) + normals.vector(n).cwiseQuotient(weights.cwiseSqrt());
+  const Check weighted = check_named(run_all(fit_by_long_double(x, y, weights).subject()), "equal-spread");
+  const Check plain = check_named(run_all(fit_by_long_double(x, y).subject()), "equal-spread");
+  CHECK(weighted.passes);
+  CHECK(weighted.size == Approx(1.0).margin(0.3));
+  CHECK_FALSE(plain.passes);
+  CHECK(plain.size > 4.0);
+  CHECK_THAT(weighted.note, Catch::Contains("√weight"));
+}
+
+TEST_CASE("checks: multiplying all weights by a constant changes nothing", "[checks][property]") {
+  Normals normals(49);
   const Eigen::VectorXd weights = normals.vector(40).array().exp();
-  const auto checks = run_all(fit_by_long_double(normals.design(40, 3), normals.vector(40), weights).subject());
-  CHECK_THAT(check_named(checks, "equal-spread").note, Catch::Contains("weights"));
-  CHECK_THAT(check_named(checks, "normal-residuals").note, Catch::Contains("weights"));
-  CHECK_THAT(check_named(checks, "separable-terms").method, Catch::Contains("weighted"));
+  const Eigen::MatrixXd x = normals.design(40, 3);
+  const Eigen::VectorXd y = normals.vector(40);
+  const auto a = run_all(fit_by_long_double(x, y, weights).ordered(row_order(40)));
+  const auto b = run_all(fit_by_long_double(x, y, 1e6 * weights).ordered(row_order(40)));
+  for (std::size_t i = 0; i < a.size(); ++i) {
+    INFO(a[i].name);
+    CHECK(a[i].statistic.value() == Approx(b[i].statistic.value()).epsilon(1e-10));
+    CHECK(a[i].p.value_or(0.0) == Approx(b[i].p.value_or(0.0)).epsilon(1e-8));
+    CHECK(a[i].size == Approx(b[i].size).epsilon(1e-10));
+  }
 }
 
 TEST_CASE("checks: numbers are written for reading", "[checks][unit]") {

@@ -94,17 +94,21 @@ TEST_CASE("checks: straightness equals two plain fits", "[checks][property]") {
   y.array() += 0.3 * (x.col(1).array() - 1000.0).square();
   const Eigen::VectorXd weights = normals.vector(n).array().exp();
   for (const bool weighted : {false, true}) {
+    const Eigen::VectorXd w = weighted ? weights : Eigen::VectorXd::Ones(n);
     const Fitted fit = fit_by_long_double(x, y, weighted ? weights : Eigen::VectorXd(0));
     const Check check = check_named(run_all(fit.subject()), "straightness");
     Eigen::MatrixXd longer(n, 5);
     const Eigen::ArrayXd f = fit.fitted.array() - fit.fitted.mean();
     longer << x, Eigen::VectorXd(f.square()), Eigen::VectorXd(f.cube());
-    const double rss0 = fit_by_long_double(x, y).residuals.squaredNorm();
-    const double rss1 = fit_by_long_double(longer, y).residuals.squaredNorm();
+    const auto rss = [&](const Eigen::MatrixXd& design) {
+      return w.dot(fit_by_long_double(design, y, w).residuals.cwiseAbs2());
+    };
+    const double rss0 = rss(x);
+    const double rss1 = rss(longer);
     CHECK(check.statistic.value() == Approx((rss0 - rss1) / 2.0 / (rss1 / 45.0)).epsilon(1e-9));
     CHECK(check.df.value() == 2.0);
     CHECK(check.df2.value() == 45.0);
-    CHECK(check.size == Approx((rss0 - rss1) / (y.array() - y.mean()).square().sum()).epsilon(1e-9));
+    CHECK(check.size == Approx((rss0 - rss1) / rss(x.leftCols(1))).epsilon(1e-9));
   }
 }
 
