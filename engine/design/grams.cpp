@@ -1,0 +1,152 @@
+#include "base/gram.hpp"
+#include "base/parallel.hpp"
+#include "base/sums.hpp"
+#include "design/design.hpp"
+#include "design/moments.hpp"
+#include "design/standardise.hpp"
+
+#include <algorithm>
+#include <cassert>
+#include <utility>
+
+namespace formsieve::design {
+
+namespace {
+
+/// A column is constant on the training rows when its sum of squares about their mean is below this share of that about
+/// the mean of all rows: its spread there is then 1e-7 of its distance from the rows held out, and the roundings of the
+/// standardised values are more than 1e-9 of it.
+constexpr double kConstantInFold_rel = 1e-14;
+/// Parts of the sum over rows of one repeat, at most about this many: bounds the memory that their sums take.
+constexpr std::size_t kMostParts = 256;
+/// Chunks of rows in one part, at least: so that joining sums costs little beside making them.
+constexpr std::size_t kFewestChunks = 4;
+
+/// Sums over the rows of one fold.
+struct FoldMoments {
+  Moments weighted;
+  Moments plain;  ///< without weights; empty when there are none, since then it would be the same
+};
+
+/// A run of rows of one fold, summed in one piece.
+struct Part {
+  std::size_t fold;
+  std::vector<std::uint32_t> rows;
+};
+
+/// The rows of each fold cut into parts, by the rows and folds alone.
+std::vector<Part> cut(const std::vector<std::uint32_t>& fold_of, std::size_t n_folds) {
+  std::vector<std::vector<std::uint32_t>> rows(n_folds);
+  for (std::size_t i = 0; i < fold_of.size(); ++i) rows[fold_of[i]].push_back(static_cast<std::uint32_t>(i));
+  const std::size_t n_chunks = fold_of.size() / base::kRowChunk;
+  const std::size_t part_size = base::kRowChunk * std::max(kFewestChunks, n_chunks / kMostParts);
+  std::vector<Part> parts;
+  for (std::size_t fold = 0; fold < n_folds; ++fold) {
+    const auto& all = rows[fold];
+    for (std::size_t first = 0; first < all.size(); first += part_size) {
+      const std::size_t last = std::min(first + part_size, all.size());
+      parts.push_back(
+          {fold, {all.begin() + static_cast<std::ptrdiff_t>(first), all.begin() + static_cast<std::ptrdiff_t>(last)}});
+    }
+  }
+  return parts;
+}
+
+FoldMoments sum_rows(const Data& data, const StandardColumns& columns, const std::vector<std::uint32_t>& rows) {
+  FoldMoments sums;
+  BlockWorkspace workspace;
+  std::vector<double> values(columns.order() * base::kRowChunk);
+  std::vector<double> weights;
+  for (std::size_t first = 0; first < rows.size(); first += base::kRowChunk) {
+    const auto chunk = std::span(rows).subspan(first, std::min(base::kRowChunk, rows.size() - first));
+    columns.evaluate(data, chunk, values);
+    const RowBlock block{chunk.size(), columns.order(), values.data()};
+    if (!data.weights.empty()) {
+      weights.clear();
+      for (const std::uint32_t row : chunk) weights.push_back(data.weights[row]);
+      join(sums.plain, moments_of(block, {}, workspace));
+    }
+    join(sums.weighted, moments_of(block, weights, workspace));
+  }
+  return sums;
+}
+
+std::vector<FoldMoments> sum_folds(const Data& data, const StandardColumns& columns,
+                                   const std::vector<std::uint32_t>& fold_of, std::size_t n_folds, unsigned threads) {
+  const std::vector<Part> parts = cut(fold_of, n_folds);
+  std::vector<FoldMoments> sums(parts.size());
+  base::parallel_for(parts.size(), threads, [&](std::size_t p) { sums[p] = sum_rows(data, columns, parts[p].rows); });
+  std::vector<FoldMoments> folds(n_folds);
+  std::size_t p = 0;
+  for (std::size_t fold = 0; fold < n_folds; ++fold) {
+    std::vector<Moments> weighted;
+    std::vector<Moments> plain;
+    for (; p < parts.size() && parts[p].fold == fold; ++p) {
+      weighted.push_back(std::move(sums[p].weighted));
+      plain.push_back(std::move(sums[p].plain));
+    }
+    folds[fold] = {join_all(std::move(weighted)), join_all(std::move(plain))};
+  }
+  return folds;
+}
+
+/// Sets to zero the rows and columns of what is constant on the training rows, where only roundings stand.
+void clear_constant_columns(Moments& training) {
+  const std::size_t order = training.order();
+  for (std::size_t c = 0; c < order; ++c) {
+    const double about_mean = training.cross[c * (order + 1)];
+    const double about_zero = about_mean + training.weight * training.mean[c] * training.mean[c];
+    if (about_mean > kConstantInFold_rel * about_zero) continue;
+    for (std::size_t i = 0; i < order; ++i) training.cross[i + c * order] = training.cross[c + i * order] = 0.0;
+  }
+}
+
+/// Cross-products of the held-out rows, unweighted, about the training means.
+std::vector<double> validation_gram(const Moments& held_out, const Moments& training) {
+  std::vector<double> d(held_out.order());
+  for (std::size_t c = 0; c < d.size(); ++c) d[c] = held_out.mean[c] - training.mean[c];
+  std::vector<double> gram = held_out.cross;
+  add_outer_product(gram, held_out.weight, d);
+  return gram;
+}
+
+/// Training and validation matrices of one repeat. The training rows of a fold are those of the folds before it and
+/// those of the folds after it, joined: nothing is ever subtracted from a total.
+void add_repeat(std::vector<FoldMoments> folds, base::GramSet& set) {
+  std::vector<Moments> after(folds.size() + 1);
+  for (std::size_t f = folds.size(); f-- > 0;) {
+    after[f] = after[f + 1];
+    join(after[f], folds[f].weighted);
+  }
+  if (set.all.empty()) set.all = after.front().cross;
+  Moments before;
+  for (std::size_t f = 0; f < folds.size(); ++f) {
+    Moments training = before;
+    join(training, after[f + 1]);
+    const Moments& held_out = folds[f].plain.order() > 0 ? folds[f].plain : folds[f].weighted;
+    set.validation.push_back(validation_gram(held_out, training));
+    clear_constant_columns(training);
+    set.training.push_back(std::move(training.cross));
+    join(before, folds[f].weighted);
+  }
+}
+
+}  // namespace
+
+Result<base::GramSet> build_grams(const Data& data, const Folds& folds, unsigned threads) {
+  const auto columns = StandardColumns::fit(data, threads);
+  if (!columns) return columns.error();
+  base::GramSet set;
+  set.n_rows = data.n_rows;
+  set.n_responses = data.response_forms.size();
+  set.n_columns = columns->order() - set.n_responses;
+  set.response_scale = columns->response_scale();
+  for (const auto& fold_of : folds.fold_of) {
+    assert(fold_of.size() == data.n_rows);
+    add_repeat(sum_folds(data, *columns, fold_of, folds.count, threads), set);
+  }
+  set.n_folds = set.training.size();
+  return set;
+}
+
+}  // namespace formsieve::design
