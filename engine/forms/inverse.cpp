@@ -3,6 +3,8 @@
 #include "forms/argument.hpp"
 #include "forms/dispatch.hpp"
 
+#include <algorithm>
+#include <cassert>
 #include <cmath>
 #include <limits>
 #include <utility>
@@ -18,9 +20,9 @@ Shape shape_of(const Form& form) {
   return {support, support, kWholeLine, 0};
 }
 
-/// The raw value at the edge `u_edge` of a set of u, `inward` +1 for a lower edge of x, −1 for an upper one. Rounding of
-/// u can put the exact edge on the wrong side: a closed edge must be the last double that belongs to the set, an open
-/// one the first that does not. Where that fails the edge is sought between two points that are beyond doubt.
+/// The raw value at the edge `u_edge` of a set of u, `inward` +1 for a lower edge of x, −1 for an upper one. Rounding
+/// of u can put the exact edge on the wrong side: a closed edge must be the last double that belongs to the set, an
+/// open one the first that does not. Where that fails the edge is sought between two points that are beyond doubt.
 template <class Argument>
 double raw_edge(const Argument& argument, const Interval& set, double u_edge, bool closed, int inward) {
   const double x = argument.back(u_edge);
@@ -50,6 +52,17 @@ Interval raw_interval(const Form& form, const Interval& set) {
   });
 }
 
+/// u for z, an argument beyond a closed edge of the image moved to it; NaN otherwise and for a constant function.
+template <class Function>
+double inverse_argument(const Function& function, double z) {
+  const Interval& image = function.image;
+  if (function.sign == 0) return kNaN;
+  if (z > image.lower && z < image.upper) return function.inverse(z);
+  if (z <= image.lower && image.lower_closed) return function.inverse(image.lower);
+  if (z >= image.upper && image.upper_closed) return function.inverse(image.upper);
+  return kNaN;
+}
+
 }  // namespace
 
 Interval domain(const Form& form) { return raw_interval(form, shape_of(form).support); }
@@ -63,14 +76,18 @@ int monotone_sign(const Form& form) { return form.reflect ? -shape_of(form).sign
 Interval inverse_domain(const Form& form) { return shape_of(form).image; }
 
 double inverse(const Form& form, double z) {
-  if (!invertible(form) || std::isnan(z)) return kNaN;
-  return with_argument(form, [&](auto argument) {
-    return visit_function(form, [&](const auto& function) {
-      const Interval& image = function.image;
-      if (image.contains(z)) return argument.back(function.inverse(z));
-      if (z <= image.lower && image.lower_closed) return argument.back(function.inverse(image.lower));
-      if (z >= image.upper && image.upper_closed) return argument.back(function.inverse(image.upper));
-      return kNaN;
+  double x = kNaN;
+  inverse_column(form, {&z, 1}, {&x, 1});
+  return x;
+}
+
+void inverse_column(const Form& form, std::span<const double> z, std::span<double> out) {
+  assert(z.size() == out.size());
+  if (!is_function(form.kind)) return static_cast<void>(std::fill(out.begin(), out.end(), kNaN));
+  with_argument(form, [&](auto argument) {
+    visit_function(form, [&](const auto& function) {
+      const auto local = function;  // a copy that the stores to `out` cannot alias
+      for (std::size_t i = 0; i < z.size(); ++i) out[i] = argument.back(inverse_argument(local, z[i]));
     });
   });
 }

@@ -31,10 +31,12 @@ constexpr std::array<KindText, 21> kTexts{{
     {"logit", "ln(x/(1 − x)): stretches both ends of a share; needs 0 < x < 1"},
     {"arcsine-sqrt", "arcsin √x: evens out the spread of a share and admits 0 and 1; needs 0 ≤ x ≤ 1"},
     {"power", "x^p with the p that is given; a p that is not whole needs x ≥ 0, a negative p x > 0"},
-    {"box-cox", "(x^λ − 1)/λ, ln x at λ = 0: the power family made continuous (Box and Cox 1964); needs x > 0"},
+    {"box-cox",
+     "(x^λ − 1)/λ, ln x at λ = 0: the power family made continuous (Box and Cox 1964); needs x > 0, or x ≥ 0 when λ > "
+     "0"},
     {"yeo-johnson",
-     "the Box-Cox family of 1 + |x|, bent to take any sign; at λ = 0 it is ln(1 + x) for x ≥ 0 "
-     "(Yeo and Johnson 2000)"},
+     "the Box-Cox family of 1 + |x|, bent to take any sign; at λ = 0 it is ln(1 + x) for x ≥ 0; "
+     "printed YJ(x; λ) (Yeo and Johnson 2000)"},
     {"quadratic", "x and x² together: one bend"},
     {"fractional-polynomial",
      "two powers of x together, where x^0 stands for ln x and a repeated power brings x^p·ln x "

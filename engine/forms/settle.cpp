@@ -4,7 +4,9 @@
 #include "forms/text.hpp"
 
 #include <algorithm>
+#include <array>
 #include <cmath>
+#include <functional>
 #include <limits>
 
 namespace formsieve::forms {
@@ -99,10 +101,23 @@ std::string parameter_example(Kind kind) {
   }
 }
 
+/// The form that another name in common use means; otherwise the nearest name, or nothing.
+std::string_view meant_by(std::string_view name) {
+  constexpr std::array<std::pair<std::string_view, std::string_view>, 6> kOtherNames{{{"log", "ln"},
+                                                                                      {"cbrt", "cube-root"},
+                                                                                      {"inverse", "reciprocal"},
+                                                                                      {"linear", "identity"},
+                                                                                      {"none", "identity"},
+                                                                                      {"raw", "identity"}}};
+  for (const auto& [other, kind] : kOtherNames)
+    if (other == name) return kind;
+  return nearest(name, kind_names());
+}
+
 Result<Kind> settle_kind(const Request& request, const ColumnFacts& facts) {
   const std::optional<Kind> kind = kind_from_name(request.form);
   if (!kind) {
-    const std::string_view near = nearest(request.form, kind_names());
+    const std::string_view near = meant_by(request.form);
     return plan_error(
         facts, "there is no form '" + request.form + "'",
         near.empty() ? "formsieve help forms lists them all" : "did you mean '" + std::string(near) + "'?");
@@ -187,6 +202,27 @@ Form settle_levels(const ColumnFacts& facts, std::size_t rare_level_count) {
   while (std::find(facts.levels.begin(), facts.levels.end(), pool) != facts.levels.end()) pool.insert(0, "the ");
   form.levels.push_back(pool);
   return form;
+}
+
+Status check(const Form& form) {
+  const auto broken = [&](const std::string& what) -> Error {
+    return {.kind = ErrorKind::data,
+            .message = "the form '" + std::string(kind_name(form.kind)) + "' " + what,
+            .where = {},
+            .hint = {}};
+  };
+  const std::vector<double>& numbers = form.parameters;
+  const bool spline = form.kind == Kind::spline;
+  const bool enough = spline ? numbers.size() >= 3 && numbers.size() <= 5 : numbers.size() == n_parameters(form.kind);
+  if (!enough) return broken("has " + std::to_string(numbers.size()) + " parameters");
+  const auto finite = [](double value) { return std::isfinite(value); };
+  const bool all_finite =
+      std::all_of(numbers.begin(), numbers.end(), finite) && finite(form.shift) && finite(form.reflect.value_or(0.0));
+  if (!all_finite) return broken("holds a number that is not finite");
+  if (spline && std::adjacent_find(numbers.begin(), numbers.end(), std::greater_equal<>()) != numbers.end())
+    return broken("has knots that do not rise");
+  if (form.kind == Kind::levels && form.levels.empty()) return broken("has no level");
+  return {};
 }
 
 Result<Form> settle(const Request& request, const ColumnFacts& facts) {

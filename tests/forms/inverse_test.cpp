@@ -157,3 +157,20 @@ TEST_CASE("forms: what has several columns or no slope cannot be inverted", "[fo
   }
   CHECK_FALSE(invertible({.kind = Kind::power, .parameters = {0.0}}));
 }
+
+TEST_CASE("forms: inverses by column are those one by one to the bit", "[forms][property]") {
+  std::vector<double> z = points();
+  z.push_back(std::nan(""));
+  z.push_back(kInf);
+  std::vector<double> by_column(z.size());
+  std::vector<Form> all = functions();
+  all.push_back({.kind = Kind::quadratic});
+  for (const Form& form : all) {
+    inverse_column(form, z, by_column);
+    for (std::size_t i = 0; i < z.size(); ++i) {
+      const double one = inverse(form, z[i]);
+      INFO(name(form) << " at " << z[i]);
+      CHECK((std::isnan(one) ? std::isnan(by_column[i]) : one == by_column[i]));
+    }
+  }
+}

@@ -81,6 +81,8 @@ TEST_CASE("forms: what cannot be settled is refused with what to write", "[forms
   const ColumnFacts facts = facts_of(1, 10, 1);
   CHECK(refused({.form = "recipricol"}, facts).hint == "did you mean 'reciprocal'?");
   CHECK(refused({.form = "sqroot"}, facts).hint == "did you mean 'sqrt'?");
+  CHECK(refused({.form = "log"}, facts).hint == "did you mean 'ln'?");
+  CHECK(refused({.form = "cbrt"}, facts).hint == "did you mean 'cube-root'?");
   CHECK(refused({.form = "zzzzzzzzzz"}, facts).hint == "formsieve help forms lists them all");
   CHECK(refused({.form = "power"}, facts).message == "'power' takes one parameter, the power; 0 given");
   CHECK(refused({.form = "ln", .parameters = {2.0}}, facts).message == "'ln' takes no parameter; 1 given");
@@ -116,4 +118,24 @@ TEST_CASE("forms: rare levels are pooled and keep their own names in the record"
   CHECK(settled({.form = "levels"}, facts).levels == facts.levels);
   // A single rare level keeps its name, since a pool of one would only hide it.
   CHECK(settled({.form = "levels", .rare_level_count = 3}, facts).levels == facts.levels);
+}
+
+TEST_CASE("forms: a form from a file is checked before it is used", "[forms][unit]") {
+  CHECK(check({.kind = Kind::ln}).ok());
+  CHECK(check({.kind = Kind::power, .parameters = {0.5}}).ok());
+  CHECK(check({.kind = Kind::spline, .parameters = {1, 2, 4}}).ok());
+  CHECK(check({.kind = Kind::levels, .levels = {"a", "b"}}).ok());
+  const std::vector<Form> broken{{.kind = Kind::power},
+                                 {.kind = Kind::ln, .parameters = {1}},
+                                 {.kind = Kind::box_cox, .parameters = {std::nan("")}},
+                                 {.kind = Kind::ln, .shift = HUGE_VAL},
+                                 {.kind = Kind::fractional_polynomial, .parameters = {1}},
+                                 {.kind = Kind::spline, .parameters = {1, 2}},
+                                 {.kind = Kind::spline, .parameters = {1, 3, 3}},
+                                 {.kind = Kind::levels}};
+  for (const Form& form : broken) {
+    const formsieve::Status status = check(form);
+    REQUIRE_FALSE(status.ok());
+    CHECK(status.error().kind == formsieve::ErrorKind::data);
+  }
 }

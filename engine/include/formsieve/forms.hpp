@@ -165,6 +165,8 @@ Interval inverse_domain(const Form& form);
 /// x in response_domain(form) with evaluate(form, x) = z. Beyond a closed edge of inverse_domain the edge's value;
 /// otherwise NaN. Infinite where the value is too large for a double.
 double inverse(const Form& form, double z);
+/// The same for many z at once: x to out[n]. Same bits as the scalar call.
+void inverse_column(const Form& form, std::span<const double> z, std::span<double> out);
 
 // ---- menus ----
 struct MenuEntry {
@@ -193,6 +195,10 @@ struct Menu {
 /// wrong number of parameters, a parameter that is not finite, levels on a number, a number's form on text, power 0,
 /// knots that are not distinct.
 Result<Form> settle(const Request& request, const ColumnFacts& facts);
+
+/// Whether a form read from a file has the parameters, levels and finite numbers that its kind needs, so that every
+/// function here may be called with it. Errors (kind data).
+Status check(const Form& form);
 
 /// The small default menu of design.md for one predictor, and what was thought of but is impossible.
 Menu default_menu(const ColumnFacts& facts, std::size_t rare_level_count);
