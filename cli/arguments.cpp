@@ -138,6 +138,9 @@ bool names_a_plan(const std::string& path) {
 }
 
 Result<run::Plan> plan_for(const std::string& plan_or_table) {
+  if (plan_or_table.empty()) {
+    return Error{ErrorKind::usage, "the name of the table is empty", "", "name a file, as in formsieve survey DATA"};
+  }
   if (names_a_plan(plan_or_table)) return run::read_plan(plan_or_table);
   run::Plan plan;
   plan.data.file = plan_or_table;

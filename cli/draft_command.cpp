@@ -39,8 +39,14 @@ void settle_names(const std::optional<std::string>& out, run::Plan& plan) {
 }
 
 int run_draft(const DraftArguments& arguments) {
-  run::Plan plan;
-  plan.data.file = arguments.data;
+  if (names_a_plan(arguments.data)) {
+    return refused({ErrorKind::usage, "draft starts from a table, and " + arguments.data + " is a plan already", "",
+                    "write formsieve search " + shell_word(arguments.data) + ", or draft from its table"},
+                   {});
+  }
+  Result<run::Plan> settled = plan_for(arguments.data);
+  if (!settled) return refused(settled.error(), {});
+  run::Plan& plan = *settled;
   plan.data.response = *arguments.response;
   plan.where["data.response"] = "--response";
   apply(arguments.table, plan);

@@ -45,6 +45,17 @@ std::vector<const CLI::Option*> in_reading_order(const CLI::App& command) {
   return options;
 }
 
+// In one line where it fits: a help page that scrolls away is read by nobody.
+void show_example(Page& page, const std::vector<std::string>& commands) {
+  const std::string lead = "For example: ";
+  if (commands.size() == 1 && display_width(lead + commands.front()) <= page.width()) {
+    page.prose(lead + commands.front());
+    return;
+  }
+  page.prose(lead);
+  for (const std::string& line : commands) page.command(line);
+}
+
 }  // namespace
 
 std::string HelpPage::make_help(const CLI::App* command, std::string /*name*/, CLI::AppFormatMode /*mode*/) const {
@@ -67,8 +78,7 @@ std::string HelpPage::make_help(const CLI::App* command, std::string /*name*/, C
   }
   if (!brief.empty()) page.prose(brief_note + ": " + joined(brief, ", "));
   for (const std::string& note : notes) page.prose(note);
-  page.prose("For example:");
-  for (const std::string& line : example) page.command(line);
+  show_example(page, example);
   return page.text();
 }
 

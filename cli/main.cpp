@@ -3,6 +3,7 @@
 #include "failure.hpp"
 #include "help_page.hpp"
 #include "output.hpp"
+#include "terminal.hpp"
 #include "usage_error.hpp"
 
 #include <formsieve/base.hpp>
@@ -38,6 +39,10 @@ int run(int argc, char** argv) {
   add_show_command(program, chosen);
 
   const std::vector<std::string> arguments(argv + 1, argv + argc);
+  if (arguments.empty()) {
+    (void)write_all(kStandardError, program.help());
+    return kBadUsage;
+  }
   if (const auto error = unknown_command(program, arguments)) return refuse(*error);
   try {
     program.parse(argc, argv);

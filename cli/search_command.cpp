@@ -74,9 +74,9 @@ void add_search_command(CLI::App& program, Action& chosen) {
   const auto help = std::make_shared<HelpPage>();
   help->usage = "search PLAN | DATA --response COLUMN";
   help->brief_group = kTableGroup;
-  help->brief_note = "How the table is written (see formsieve survey --help)";
+  help->brief_note = "As in formsieve survey";
   help->notes = {"With a PLAN, options given here take the place of its keys."};
-  help->example = {"formsieve search coldstores.csv --response energy_kwh --ignore store"};
+  help->example = {"formsieve search coldstores.csv --response energy_kwh"};
   command->formatter(help);
   command->set_help_flag("--help,-h", "this page");
   command->add_option("PLAN|DATA", arguments->source, "a plan (.toml), or a table to search with the default plan")

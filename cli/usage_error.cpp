@@ -4,6 +4,8 @@
 
 #include <formsieve/run.hpp>
 
+#include <string_view>
+
 namespace formsieve::cli {
 namespace {
 
@@ -24,14 +26,16 @@ std::vector<std::string> option_names(const CLI::App& command) {
 }
 
 Error unexpected_argument(const CLI::App& command) {
-  const std::vector<std::string> extras = command.remaining(true);
+  const CLI::App& program = command.get_parent() == nullptr ? command : *command.get_parent();
+  const std::vector<std::string> misplaced = program.remaining(false);
+  if (!misplaced.empty()) {
+    return usage_error(misplaced.front() + " stands before the command, where only --help and --version may stand",
+                       "put options after the command, as in formsieve survey DATA --json");
+  }
+  const std::vector<std::string> extras = command.remaining(false);
   const std::string extra = extras.empty() ? "" : extras.front();
   if (extra.starts_with("-") && extra.size() > 1) {
     const std::string name = extra.substr(0, extra.find('='));
-    if (command.get_parent() == nullptr) {
-      return usage_error("the option " + name + " stands before the command, where only --help and --version may stand",
-                         "put options after the command, as in formsieve survey DATA --json");
-    }
     const std::optional<std::string> near = run::nearest(name, option_names(command));
     return usage_error("formsieve " + command.get_name() + " has no option " + name,
                        near ? "did you mean " + *near + "?" : help_command(command) + " lists the options");
@@ -53,6 +57,10 @@ Error missing_argument(const CLI::App& command) {
 
 // "--threads: 'x' is not a whole number …\nfor example --threads 2", as the checks in arguments.cpp word it.
 Error refused_value(const std::string& what, const CLI::App& command) {
+  constexpr std::string_view kNotConverted = "Could not convert: ";
+  if (what.starts_with(kNotConverted)) {
+    return usage_error("no such value: " + what.substr(kNotConverted.size()), help_command(command));
+  }
   const std::size_t end = what.find('\n');
   if (end == std::string::npos) return usage_error(what, help_command(command));
   return usage_error(what.substr(0, end), what.substr(end + 1));
