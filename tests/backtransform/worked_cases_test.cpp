@@ -1,0 +1,183 @@
+// Own-units figures of the worked cases, in the sample and over the given folds. Values: tests/reference/cases, NumPy
+// 1.24.2 and, where the case has 25 digits, mpmath.
+#include "backtransform/backtransform.hpp"
+#include "fit/least_squares.hpp"
+#include "reference/worked_case.hpp"
+
+#include <catch2/catch.hpp>
+
+#include <map>
+#include <set>
+
+namespace {
+
+using namespace formsieve;
+using reference::relative_difference;
+using reference::WorkedCase;
+
+/// Relative difference that is tolerated; the last test prints what is reached.
+constexpr double kTolerated = 1e-11;
+
+std::map<std::string, std::pair<double, std::string>>& worst() {
+  static std::map<std::string, std::pair<double, std::string>> held;
+  return held;
+}
+
+/// `unit`: differences are taken relative to the larger of the value and this (a bias may be 0 up to rounding).
+void compare(const WorkedCase& worked, const std::string& name, double ours, double theirs, double unit = 0.0) {
+  const double scale = std::max({std::abs(ours), std::abs(theirs), unit});
+  const double difference = ours == theirs ? 0.0 : std::abs(ours - theirs) / scale;
+  INFO(worked.id() << " (" << worked.title() << "): " << name << " " << ours << ", expected " << theirs);
+  CHECK(difference <= kTolerated);
+  auto& [largest, where] = worst()[name];
+  if (where.empty() || difference > largest) {
+    largest = difference;
+    where = worked.id();
+  }
+}
+
+forms::Form response_form(const WorkedCase& worked) {
+  const reference::FormSpec spec = worked.response_form();
+  static const std::map<std::string, forms::Kind> kinds{
+      {"identity", forms::Kind::identity}, {"sqrt", forms::Kind::sqrt}, {"square", forms::Kind::square},
+      {"cbrt", forms::Kind::cube_root},    {"ln", forms::Kind::ln},     {"reciprocal", forms::Kind::reciprocal},
+      {"boxcox", forms::Kind::box_cox},
+  };
+  forms::Form form{kinds.at(spec.form)};
+  if (spec.lambda) form.parameters = {*spec.lambda};
+  form.reflect = spec.anchor;
+  form.shift = spec.shift;
+  return form;
+}
+
+double weight_of(const Eigen::VectorXd& weights, Eigen::Index i) { return weights.size() == 0 ? 1.0 : weights(i); }
+
+/// The figures of one set of own-units predictions; all NaN when one of them is.
+struct Figures {
+  double rmse, mae, bias, r2;
+};
+Figures figures_of(const Eigen::VectorXd& predicted, const Eigen::VectorXd& measured) {
+  const Eigen::ArrayXd error = predicted - measured;
+  const double tss = (measured.array() - measured.mean()).square().sum();
+  return {std::sqrt(error.square().mean()), error.abs().mean(), error.mean(), 1.0 - error.square().sum() / tss};
+}
+
+void compare_figures(const WorkedCase& worked, const std::string& block, const Eigen::VectorXd& predicted) {
+  const Eigen::VectorXd measured = worked.response_own();
+  INFO(worked.id() << " " << block);
+  if (!worked.figure(block + ".rmse")) {  // null: some argument lies beyond an open edge
+    CHECK(predicted.array().isNaN().any());
+    return;
+  }
+  REQUIRE(predicted.array().isFinite().all());
+  const Figures ours = figures_of(predicted, measured);
+  // Errors cancel in the bias, their rounding does not: it is that of the response.
+  const double unit = measured.cwiseAbs().maxCoeff() * 1e-2;
+  compare(worked, block + ".rmse", ours.rmse, worked.figure(block + ".rmse").value());
+  compare(worked, block + ".mae", ours.mae, worked.figure(block + ".mae").value());
+  compare(worked, block + ".bias", ours.bias, worked.figure(block + ".bias").value(), unit);
+  compare(worked, block + ".r2", ours.r2, worked.figure(block + ".r2").value());
+}
+
+struct Predictions {
+  Eigen::VectorXd mean_own, naive_own, eta;
+};
+
+/// Held-out predictions over the given folds: coefficients and smearing from the training rows alone.
+Predictions held_out(const WorkedCase& worked) {
+  const Eigen::MatrixXd x = worked.design();
+  const Eigen::VectorXd z = worked.response(), w = worked.weights();
+  const std::vector<int> folds = worked.folds();
+  Predictions out{Eigen::VectorXd(z.size()), Eigen::VectorXd(z.size()), Eigen::VectorXd(z.size())};
+  for (const int fold : std::set<int>(folds.begin(), folds.end())) {
+    std::vector<Eigen::Index> training;
+    for (std::size_t i = 0; i < folds.size(); ++i) {
+      if (folds[i] != fold) training.push_back(static_cast<Eigen::Index>(i));
+    }
+    Eigen::VectorXd w_training;
+    if (w.size() != 0) w_training = w(training);
+    const auto fitted = fit::quick_fit(x(training, Eigen::all), z(training), w_training);
+    REQUIRE(fitted.ok());
+    const backtransform::Smearing smearing(response_form(worked), fitted->residuals, w_training);
+    for (Eigen::Index i = 0; i < z.size(); ++i) {
+      if (folds[static_cast<std::size_t>(i)] != fold) continue;
+      out.eta(i) = x.row(i).dot(fitted->coefficients);
+      out.mean_own(i) = smearing.mean(out.eta(i), weight_of(w, i));
+      out.naive_own(i) = smearing.naive(out.eta(i));
+    }
+  }
+  return out;
+}
+
+}  // namespace
+
+TEST_CASE("backtransform: worked cases give the own-units figures in the sample", "[backtransform][reference]") {
+  for (const WorkedCase& worked : reference::worked_cases()) {
+    const Eigen::VectorXd w = worked.weights();
+    const auto fitted = fit::least_squares(worked.design(), worked.response(), w);
+    REQUIRE(fitted.ok());
+    const backtransform::Smearing smearing(response_form(worked), fitted->residuals, w);
+    Eigen::VectorXd mean(fitted->fitted.size()), naive(fitted->fitted.size());
+    for (Eigen::Index i = 0; i < mean.size(); ++i) {
+      mean(i) = smearing.mean(fitted->fitted(i), weight_of(w, i));
+      naive(i) = smearing.naive(fitted->fitted(i));
+    }
+    compare_figures(worked, "natural_in_sample.smearing_clamped", mean);
+    compare_figures(worked, "natural_in_sample.naive_clamped", naive);
+    if (const auto factor = worked.figure("smearing_factor")) {
+      REQUIRE(smearing.constant_factor());
+      compare(worked, "smearing_factor", *smearing.constant_factor(), *factor);
+    } else {
+      CHECK_FALSE(smearing.constant_factor());
+    }
+  }
+}
+
+TEST_CASE("backtransform: worked cases give the cross-validated own-units figures", "[backtransform][reference]") {
+  for (const WorkedCase& worked : reference::worked_cases()) {
+    if (worked.folds().empty()) continue;
+    const Predictions out = held_out(worked);
+    const double rmse_form =
+        std::sqrt((out.eta - worked.response()).squaredNorm() / static_cast<double>(out.eta.size()));
+    compare(worked, "cv.rmse_transformed", rmse_form, worked.figure("cv.rmse_transformed").value());
+    compare_figures(worked, "cv.natural.smearing_clamped", out.mean_own);
+    compare_figures(worked, "cv.natural.naive_clamped", out.naive_own);
+  }
+}
+
+TEST_CASE("backtransform: worked cases agree with their 25-digit figures", "[backtransform][reference]") {
+  // Strict figures, which exist where no argument leaves the inverse's domain; clamping then changes nothing.
+  std::size_t compared = 0;
+  for (const WorkedCase& worked : reference::worked_cases()) {
+    if (worked.folds().empty()) continue;
+    const auto smearing = worked.figure("cv.natural.smearing.rmse");
+    const auto naive = worked.figure("cv.natural.naive.rmse");
+    const Predictions out = held_out(worked);
+    if (smearing) {
+      compare(worked, "cv.natural.smearing.rmse", figures_of(out.mean_own, worked.response_own()).rmse, *smearing);
+      ++compared;
+    }
+    if (naive) compare(worked, "cv.natural.naive.rmse", figures_of(out.naive_own, worked.response_own()).rmse, *naive);
+  }
+  CHECK(compared >= 20);
+}
+
+TEST_CASE("backtransform: the Jacobian of the worked cases' response forms", "[backtransform][reference]") {
+  for (const WorkedCase& worked : reference::worked_cases()) {
+    const forms::Form form = response_form(worked);
+    double total = 0.0;
+    for (const double y : worked.response_own()) total += forms::log_abs_derivative(form, y);
+    compare(worked, "log Jacobian", total, worked.figure("likelihood.log_jacobian").value(), 1e-3);
+  }
+}
+
+TEST_CASE("backtransform: worked cases, the digits reached", "[backtransform][reference]") {
+  std::string table = "largest relative difference over the worked cases:";
+  for (const auto& [name, held] : worst()) {
+    char line[120];
+    std::snprintf(line, sizeof line, "\n  %-42s %8.1e  %s", name.c_str(), held.first, held.second.c_str());
+    table += line;
+  }
+  WARN(table);
+  CHECK_FALSE(worst().empty());
+}
