@@ -68,6 +68,7 @@ class BlockReader {
 
   /// The separator, line feed or end that follows a number, past blanks; null when something else does.
   const char* end_of_number_cell(const char* p) const noexcept {
+    if (p != end_ && *p == syntax_.separator()) return p;  // nearly always
     while (p != end_ && syntax_.is_blank(*p)) ++p;
     if (p == end_ || *p == syntax_.separator() || *p == '\n') return p;
     if (*p == '\r' && (p + 1 == end_ || p[1] == '\n')) return p + 1;

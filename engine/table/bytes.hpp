@@ -1,6 +1,8 @@
 // The bytes of a file, read once into memory.
 #pragma once
 
+#include "table/large_pages.hpp"
+
 #include <formsieve/base.hpp>
 
 #include <cstddef>
@@ -14,7 +16,9 @@ namespace formsieve::table {
 class FileBytes {
  public:
   FileBytes() = default;
-  explicit FileBytes(std::size_t size) : data_(std::make_unique_for_overwrite<char[]>(size)), size_(size) {}
+  explicit FileBytes(std::size_t size) : data_(std::make_unique_for_overwrite<char[]>(size)), size_(size) {
+    prefer_large_pages(data_.get(), size);
+  }
 
   char* data() noexcept { return data_.get(); }
   std::string_view view() const noexcept { return {data_.get(), size_}; }

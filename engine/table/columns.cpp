@@ -2,6 +2,7 @@
 
 #include "base/parallel.hpp"
 #include "table/block_reader.hpp"
+#include "table/large_pages.hpp"
 #include "table/number.hpp"
 #include "table/sample.hpp"
 
@@ -11,19 +12,27 @@ namespace formsieve::table {
 
 namespace {
 
+/// Gives an empty vector n elements.
+template <class T>
+void allocate(std::vector<T>& values, std::size_t n) {
+  values.reserve(n);
+  prefer_large_pages(values.data(), n * sizeof(T));
+  values.resize(n);
+}
+
 /// Allocates the columns, in parallel since filling fresh memory takes a noticeable share of the reading.
-RawColumns allocate(std::span<const ReadAs> read_as, std::size_t n_rows, bool with_lines, unsigned threads) {
+RawColumns allocate_columns(std::span<const ReadAs> read_as, std::size_t n_rows, bool with_lines, unsigned threads) {
   RawColumns raw;
   raw.columns.resize(read_as.size());
   base::parallel_for(read_as.size() + 1, threads, [&](std::size_t i) {
     if (i == read_as.size()) {
-      if (with_lines) raw.line_of_row.resize(n_rows);
+      if (with_lines) allocate(raw.line_of_row, n_rows);
       return;
     }
     RawColumn& column = raw.columns[i];
     column.read_as = read_as[i];
-    if (read_as[i] == ReadAs::number) column.numbers.resize(n_rows);
-    if (read_as[i] == ReadAs::text) column.codes.resize(n_rows);
+    if (read_as[i] == ReadAs::number) allocate(column.numbers, n_rows);
+    if (read_as[i] == ReadAs::text) allocate(column.codes, n_rows);
   });
   return raw;
 }
@@ -67,7 +76,7 @@ std::vector<ReadAs> guess_reading(const Source& source, RowStart body, const Mis
 RawColumns read_columns(const Source& source, const Layout& layout, const MissingMarkers& missing,
                         std::span<const ReadAs> read_as, bool with_lines, unsigned threads,
                         const std::function<void()>& alongside) {
-  RawColumns raw = allocate(read_as, layout.n_rows, with_lines, threads);
+  RawColumns raw = allocate_columns(read_as, layout.n_rows, with_lines, threads);
   std::vector<ColumnSink> sinks;
   for (RawColumn& column : raw.columns) sinks.push_back({column.read_as, column.numbers.data(), column.codes.data()});
   const ReadingTask task{source, missing, sinks, with_lines ? raw.line_of_row.data() : nullptr};
