@@ -36,14 +36,13 @@ inline constexpr std::size_t kMostResiduals = 1001;
 class Smearing {
  public:
   /// `response` is invertible; `residuals` [m], m ≥ 1, response − fitted of the training rows; `weights` [m] of the
-  /// same rows, positive, or size 0. Cost O(m log m), without the logarithm for ln, log10, identity, cube-root and
-  /// asinh.
+  /// same rows, positive, or size 0. Cost O(m); O(m log m) where residuals have to be sorted, for more than
+  /// kMostResiduals or for Yeo–Johnson 0.
   Smearing(forms::Form response, const Eigen::Ref<const Eigen::VectorXd>& residuals,
            const Eigen::Ref<const Eigen::VectorXd>& weights);
 
   /// Mean in own units at the linear predictor `eta` for a row of this weight (ignored when fitted without weights);
-  /// NaN where undefined. Cost O(1) for the closed forms of an unweighted fit, O(log m) for sqrt near its edge,
-  /// otherwise O(min(m, 1001)).
+  /// NaN where undefined. Cost O(1) for the closed forms, otherwise O(min(m, kMostResiduals)).
   double mean(double eta, double weight = 1.0) const;
   double naive(double eta) const;  ///< h(η): no correction; NaN where undefined
   /// ln-like responses without weights: mean of exp(e) (10^e for log10); otherwise unset and the factor depends on the
@@ -72,15 +71,16 @@ class Smearing {
   double mean_square(double eta, double root) const;
   double mean_yeo_johnson_0(double eta) const;
   double mean_inverse(double eta, double root) const;
+  const std::vector<double>& averaged() const { return slices_.empty() ? residuals_ : slices_; }
 
   forms::Form response_;
   forms::Form plain_;                 ///< the same without reflection and shift: its inverse gives u
   forms::Kind kind_;                  ///< as kind()
   double sign_ = 1.0, offset_ = 0.0;  ///< own units = offset + sign·u
   bool weighted_ = false;
-  std::vector<double> residuals_;  ///< [m] standardised; rising where the form needs their order
-  std::vector<double> averaged_;   ///< what a mean without closed form runs over: at most kMostResiduals, rising
-  std::vector<double> sum_from_, square_sum_from_;  ///< sqrt: Σe and Σe² over residuals_[j] and all above
+  std::vector<double> residuals_;                   ///< [m] standardised; rising where the form needs their order
+  std::vector<double> slices_;                      ///< quantiles that stand for more than kMostResiduals; else empty
+  std::vector<double> sum_from_, square_sum_from_;  ///< sqrt, many: Σe and Σe² over residuals_[j] and all above
   std::vector<double> exp_sum_from_;                ///< Yeo–Johnson 0: Σexp(e) likewise
   Moments moments_;
   double smallest_ = 0.0;

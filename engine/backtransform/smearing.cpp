@@ -1,6 +1,7 @@
 #include "backtransform/backtransform.hpp"
 
 #include "backtransform/slices.hpp"
+#include "backtransform/vector_mean.hpp"
 #include "base/sums.hpp"
 
 #include <algorithm>
@@ -101,16 +102,18 @@ void Smearing::set_closed_form() {
 void Smearing::set_order() {
   const bool exponential = kind_ == Kind::ln || kind_ == Kind::log10 || kind_ == Kind::asinh;
   if (kind_ == Kind::identity || kind_ == Kind::cube_root || (exponential && !weighted_)) return;
+  const bool by_halves = is_yeo_johnson_0(response_) && !weighted_;
+  const bool many = residuals_.size() > kMostResiduals;
+  if (!by_halves && !many) return;
   std::sort(residuals_.begin(), residuals_.end());
-  if (kind_ == Kind::sqrt) {
+  if (by_halves) {
+    exp_sum_from_ = sums_from(residuals_, [](double e) { return static_cast<long double>(std::exp(e)); });
+  } else if (kind_ == Kind::sqrt) {
     sum_from_ = sums_from(residuals_, [](double e) { return static_cast<long double>(e); });
     square_sum_from_ = sums_from(residuals_, [](double e) { return static_cast<long double>(e) * e; });
     return;
   }
-  if (is_yeo_johnson_0(response_) && !weighted_) {
-    exp_sum_from_ = sums_from(residuals_, [](double e) { return static_cast<long double>(std::exp(e)); });
-  }
-  averaged_ = residuals_.size() <= kMostResiduals ? residuals_ : slice_means(residuals_, kMostResiduals);
+  if (many) slices_ = slice_means(residuals_, kMostResiduals);
 }
 
 double Smearing::mean(double eta, double weight) const {
@@ -143,7 +146,9 @@ double Smearing::mean_argument(double eta, double root) const {
       if (!weighted_) return std::sinh(eta) * mean_cosh_ + std::cosh(eta) * mean_sinh_;
       break;
     case Kind::yeo_johnson:
-      if (!exp_sum_from_.empty() && eta + residuals_.back() > kSmallArgument) return mean_yeo_johnson_0(eta);
+      if (!exp_sum_from_.empty() && std::max(-(eta + residuals_.front()), eta + residuals_.back()) > kSmallArgument) {
+        return mean_yeo_johnson_0(eta);
+      }
       break;
     default:
       break;
@@ -153,7 +158,10 @@ double Smearing::mean_argument(double eta, double root) const {
 
 /// (1/m) Σ max(η + e·root, 0)²
 double Smearing::mean_square(double eta, double root) const {
+  const auto& [first, second, third] = moments_;
+  if (eta + smallest_ * root >= 0.0) return eta * (eta + 2.0 * root * first) + root * root * second;
   const auto m = static_cast<double>(residuals_.size());
+  if (sum_from_.empty()) return (as_array(residuals_) * root + eta).max(0.0).square().sum() / m;
   const auto above = std::upper_bound(residuals_.begin(), residuals_.end(), -eta / root);
   if (eta < 0.0) {  // few arguments are left, and their squares would cancel between the sums
     double total = 0.0;
@@ -177,24 +185,12 @@ double Smearing::mean_yeo_johnson_0(double eta) const {
 }
 
 double Smearing::mean_inverse(double eta, double root) const {
-  const auto arguments = as_array(averaged_) * root + eta;
-  const auto m = static_cast<double>(averaged_.size());
-  const bool all_positive = eta + averaged_.front() * root > 0.0;
-  switch (kind_) {  // plain loops that the compiler may run two at a time
-    case Kind::reciprocal:
-      return all_positive ? arguments.inverse().sum() / m : kNaN;
-    case Kind::reciprocal_sqrt:
-      return all_positive ? arguments.square().inverse().sum() / m : kNaN;
-    case Kind::reciprocal_square:
-      return all_positive ? arguments.sqrt().inverse().sum() / m : kNaN;
-    case Kind::square:
-      return arguments.max(0.0).sqrt().sum() / m;
-    default:
-      break;
-  }
+  const std::vector<double>& e = averaged();
+  const double smallest = eta + (slices_.empty() ? smallest_ : slices_.front()) * root;
+  if (const auto fast = vector_mean(plain_, kind_, as_array(e), eta, root, smallest)) return *fast;
   double total = 0.0;
-  for (const double e : averaged_) total += forms::inverse(plain_, eta + e * root);
-  return total / m;
+  for (const double one : e) total += forms::inverse(plain_, eta + one * root);
+  return total / static_cast<double>(e.size());
 }
 
 }  // namespace formsieve::backtransform

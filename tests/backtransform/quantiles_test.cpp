@@ -109,8 +109,18 @@ TEST_CASE("backtransform: closed forms use every residual", "[backtransform][pro
   const auto e = heavy_tailed(5000, 0.3, 13);
   for (const Kind kind : {Kind::ln, Kind::log10, Kind::sqrt, Kind::cube_root, Kind::asinh, Kind::identity}) {
     const Smearing smearing({kind}, as_vector(e), Eigen::VectorXd());
-    for (const double eta : {-0.2, 0.5, 3.0}) {
+    for (const double eta : {-0.2, 0.0, 0.5, 3.0}) {
       CHECK(smearing.mean(eta) == Approx(mean_over({kind}, e, eta)).epsilon(1e-12));
     }
+  }
+  const forms::Form halves{Kind::yeo_johnson, {0.0}};
+  CHECK(Smearing(halves, as_vector(e), Eigen::VectorXd()).mean(0.3) ==
+        Approx(mean_over(halves, e, 0.3)).epsilon(1e-12));
+  // Weighted sqrt, on both sides of the edge: weights of 4 halve the residuals of a row of weight 16.
+  const Smearing weighted({Kind::sqrt}, as_vector(e), Eigen::VectorXd::Constant(5000, 4.0));
+  std::vector<double> halved = e;
+  for (double& value : halved) value /= 2.0;
+  for (const double eta : {-0.1, 0.1, 2.0}) {
+    CHECK(weighted.mean(eta, 16.0) == Approx(mean_over({Kind::sqrt}, halved, eta)).epsilon(1e-12));
   }
 }
