@@ -36,14 +36,43 @@ using formsieve::table::Table;
 constexpr int kRepeats = 3;  // the best counts: the machine can only make a reader slower
 constexpr std::size_t kNumericColumns = 9;
 
-struct Outcome {
+/// Time on the clock, and that of all processors; on a busy machine only the second tells of the reader.
+struct Times {
   double seconds = std::numeric_limits<double>::infinity();
+  double cpu_seconds = std::numeric_limits<double>::infinity();
+};
+
+struct Outcome {
+  Times times;
   std::size_t n_rows = 0;
   std::array<double, kNumericColumns> sums = {};
 };
 
-double seconds_now() {
-  return std::chrono::duration<double>(std::chrono::steady_clock::now().time_since_epoch()).count();
+/// Times since it was made.
+class Stopwatch {
+ public:
+  Times read() const { return {clock_now() - clock_start_, cpu_now() - cpu_start_}; }
+
+ private:
+  static double clock_now() {
+    return std::chrono::duration<double>(std::chrono::steady_clock::now().time_since_epoch()).count();
+  }
+  static double cpu_now() {
+    rusage usage = {};
+    ::getrusage(RUSAGE_SELF, &usage);
+    const auto seconds = [](const timeval& time) {
+      return static_cast<double>(time.tv_sec) + 1e-6 * static_cast<double>(time.tv_usec);
+    };
+    return seconds(usage.ru_utime) + seconds(usage.ru_stime);
+  }
+
+  double clock_start_ = clock_now();
+  double cpu_start_ = cpu_now();
+};
+
+void keep_best(Times& best, const Times& times) {
+  best.seconds = std::min(best.seconds, times.seconds);
+  best.cpu_seconds = std::min(best.cpu_seconds, times.cpu_seconds);
 }
 
 /// One row of an invented co-operative's meter readings: figures of all usual lengths, a few missing, one text.
@@ -85,9 +114,9 @@ Outcome read_with_formsieve(const std::string& path, unsigned threads) {
   options.threads = threads;
   options.missing = {"nan"};
   for (int i = 0; i < kRepeats; ++i) {
-    const double start = seconds_now();
+    const Stopwatch stopwatch;
     const formsieve::Result<Table> table = formsieve::table::read_csv(path, options);
-    outcome.seconds = std::min(outcome.seconds, seconds_now() - start);
+    keep_best(outcome.times, stopwatch.read());
     if (!table) {
       std::cerr << table.error().message << ": " << table.error().where << "\n";
       std::exit(1);
@@ -104,7 +133,7 @@ Outcome read_with_formsieve(const std::string& path, unsigned threads) {
 /// The general way: lines, cells, strtod, a string for each text.
 Outcome read_plainly(const std::string& path) {
   Outcome outcome;
-  const double start = seconds_now();
+  const Stopwatch stopwatch;
   std::ifstream file(path);
   std::vector<std::vector<double>> columns(kNumericColumns);
   std::vector<std::string> texts;
@@ -119,7 +148,7 @@ Outcome read_plainly(const std::string& path) {
     }
     texts.push_back(line.substr(at));
   }
-  outcome.seconds = seconds_now() - start;
+  outcome.times = stopwatch.read();
   outcome.n_rows = texts.size();
   for (std::size_t c = 0; c < kNumericColumns; ++c)
     for (const double x : columns[c])
@@ -127,21 +156,21 @@ Outcome read_plainly(const std::string& path) {
   return outcome;
 }
 
-/// Seconds that numpy.loadtxt takes for the numeric columns; infinite where there is no NumPy.
-double seconds_of_numpy(const std::string& path) {
+/// Times of numpy.loadtxt for the numeric columns; infinite where there is no NumPy.
+Times times_of_numpy(const std::string& path) {
   for (const char* python : {"/usr/bin/python3", "python3"}) {
     const std::string command = std::string(python) +
-                                " -c \"import sys, time, numpy; start = time.perf_counter(); "
+                                " -c \"import sys, time, numpy; start, cpu = time.perf_counter(), time.process_time(); "
                                 "numpy.loadtxt(sys.argv[1], delimiter=',', skiprows=1, usecols=range(9)); "
-                                "print(time.perf_counter() - start)\" '" +
+                                "print(time.perf_counter() - start, time.process_time() - cpu)\" '" +
                                 path + "' 2>/dev/null";
     std::FILE* const pipe = ::popen(command.c_str(), "r");
-    double seconds = 0.0;
-    const bool is_read = pipe != nullptr && std::fscanf(pipe, "%lf", &seconds) == 1;
+    Times times;
+    const bool is_read = pipe != nullptr && std::fscanf(pipe, "%lf %lf", &times.seconds, &times.cpu_seconds) == 2;
     if (pipe != nullptr) ::pclose(pipe);
-    if (is_read) return seconds;
+    if (is_read) return times;
   }
-  return std::numeric_limits<double>::infinity();
+  return {};
 }
 
 double peak_megabytes() {
@@ -150,9 +179,10 @@ double peak_megabytes() {
   return static_cast<double>(usage.ru_maxrss) / 1000.0;
 }
 
-void print_line(const std::string& reader, double seconds, double megabytes, double plain_seconds) {
-  std::printf("%-32s %8.3f s %9.1f MB/s %8.1f times the plain reader\n", reader.c_str(), seconds, megabytes / seconds,
-              plain_seconds / seconds);
+void print_line(const std::string& reader, const Times& times, double megabytes, const Times& plain) {
+  std::printf("%-32s %7.3f s %7.1f MB/s %7.1f times the plain reader | CPU %7.3f s %7.1f MB/s %7.1f times\n",
+              reader.c_str(), times.seconds, megabytes / times.seconds, plain.seconds / times.seconds,
+              times.cpu_seconds, megabytes / times.cpu_seconds, plain.cpu_seconds / times.cpu_seconds);
 }
 
 }  // namespace
@@ -170,13 +200,13 @@ int main(int argc, char** argv) {
   const Outcome all = read_with_formsieve(path, threads);
   const double peak = peak_megabytes();
   const Outcome plain = read_plainly(path);
-  const double numpy_seconds = seconds_of_numpy(path);
+  const Times numpy = times_of_numpy(path);
 
   std::printf("%.1f MB, %zu rows, %zu columns; best of %d\n", size, one.n_rows, kNumericColumns + 1, kRepeats);
-  print_line("read_csv, 1 thread", one.seconds, size, plain.seconds);
-  print_line("read_csv, " + std::to_string(threads) + " threads", all.seconds, size, plain.seconds);
-  print_line("plain reader (getline, strtod)", plain.seconds, size, plain.seconds);
-  if (std::isfinite(numpy_seconds)) print_line("numpy.loadtxt (numbers only)", numpy_seconds, size, plain.seconds);
+  print_line("read_csv, 1 thread", one.times, size, plain.times);
+  print_line("read_csv, " + std::to_string(threads) + " threads", all.times, size, plain.times);
+  print_line("plain reader (getline, strtod)", plain.times, size, plain.times);
+  if (std::isfinite(numpy.seconds)) print_line("numpy.loadtxt (numbers only)", numpy, size, plain.times);
   std::printf("peak memory of read_csv: %.0f MB\n", peak);
   const bool is_same = one.n_rows == plain.n_rows && one.sums == plain.sums && all.sums == plain.sums;
   std::printf("%s\n", is_same ? "all readers agree" : "READERS DISAGREE");

@@ -10,6 +10,9 @@ MissingMarkers::MissingMarkers(std::span<const std::string> markers, char decima
     : markers_(markers.begin(), markers.end()),
       has_numbers_(std::any_of(markers.begin(), markers.end(), [decimal](const std::string& marker) {
         return parse_number(marker, decimal).has_value();
-      })) {}
+      })) {
+  for (const std::string& marker : markers_)
+    if (!marker.empty()) is_first_[static_cast<unsigned char>(marker.front())] = true;
+}
 
 }  // namespace formsieve::table

@@ -1,6 +1,7 @@
 // The cells that mean "no value".
 #pragma once
 
+#include <array>
 #include <span>
 #include <string>
 #include <string_view>
@@ -15,6 +16,7 @@ class MissingMarkers {
   MissingMarkers(std::span<const std::string> markers, char decimal);
 
   bool contains(std::string_view cell) const noexcept {
+    if (!cell.empty() && !is_first_[static_cast<unsigned char>(cell.front())]) return false;  // nearly always
     for (const std::string& marker : markers_)
       if (marker == cell) return true;
     return false;
@@ -25,6 +27,7 @@ class MissingMarkers {
 
  private:
   std::vector<std::string> markers_;
+  std::array<bool, 256> is_first_ = {};  ///< bytes with which some marker begins
   bool has_numbers_ = false;
 };
 

@@ -22,10 +22,10 @@ inline DigitRun read_digits(const char* p) noexcept {
   bytes ^= 0x3030303030303030U;  // '0' … '9' become 0 … 9, all other bytes more
   // The high bit of each byte above 9; a carry can spoil only bytes behind the first of these.
   const std::uint64_t others = ((bytes + 0x7676767676767676U) | bytes) & 0x8080808080808080U;
-  const auto length = static_cast<unsigned>(others == 0 ? 8 : std::countr_zero(others) / 8);
-  if (length == 0) return {0, 0};
-  bytes <<= 8 * (8 - length);          // leading zeros
-  bytes = bytes * 10 + (bytes >> 8U);  // pairs of digits
+  const auto length = static_cast<unsigned>(std::countr_zero(others)) / 8;
+  const unsigned half_shift = 4 * (8 - length);  // in two halves, since 64 places at once are undefined
+  bytes = bytes << half_shift << half_shift;     // leading zeros
+  bytes = bytes * 10 + (bytes >> 8U);            // pairs of digits
   constexpr std::uint64_t kPairs = 0x000000FF000000FFU;
   const std::uint64_t high = (bytes & kPairs) * (100 + (1000000ULL << 32U));
   const std::uint64_t low = ((bytes >> 16U) & kPairs) * (1 + (10000ULL << 32U));
@@ -35,7 +35,7 @@ inline DigitRun read_digits(const char* p) noexcept {
 /// Bytes that scan_short_decimal may look at.
 inline constexpr std::ptrdiff_t kShortDecimalBytes = 1 + 8 + 1 + 8 + 1;
 
-/// Reads an optional '-', one to eight digits and, behind a decimal mark, one to eight more. Returns the position after
+/// Reads an optional '-', one to eight digits and, behind a decimal mark, up to eight more. Returns the position after
 /// them, or null for anything else, which the general reader then takes. The value is correctly rounded: the digits as
 /// a whole number (at most 2^53) and the power of ten are doubles without error, so that their quotient is rounded once
 /// (Clinger 1990, "How to read floating point numbers accurately"). At least kShortDecimalBytes must be readable at
@@ -51,7 +51,6 @@ inline const char* scan_short_decimal(const char* p, char decimal, double& value
   std::uint32_t scale = 1;
   if (*p == decimal) {
     const DigitRun fraction = read_digits(p + 1);
-    if (fraction.length == 0) return nullptr;
     p += 1 + fraction.length;
     scale = kPowers[fraction.length];
     digits = digits * scale + fraction.value;
