@@ -5,6 +5,7 @@
 
 #include <algorithm>
 #include <chrono>
+#include <iterator>
 #include <limits>
 
 namespace formsieve::search {
@@ -15,6 +16,22 @@ namespace {
 constexpr double kClockResolutionSeconds = 1e-9;
 /// Candidates of one response in a sampled subtree: a millisecond or so of work, far above the clock's resolution.
 constexpr std::uint64_t kSampleSize = 10'000;
+
+/// Beyond this many candidates, more than a day's work, the sample is drawn from fewer predictors: candidates at the
+/// bottom of the tree, which are nearly all, cost the same, and the workspaces of a tree that no walk could visit would
+/// not fit in memory.
+constexpr std::uint64_t kLargestSampledSpace = std::uint64_t{1} << 40;
+
+/// The space without its last predictors, those that are always in last of all.
+Space reduced(Space space) {
+  while (count(space) > kLargestSampledSpace) {
+    auto last = std::find_if(space.predictors.rbegin(), space.predictors.rend(),
+                             [](const PredictorChoices& predictor) { return !predictor.always; });
+    if (last == space.predictors.rend()) last = space.predictors.rbegin();
+    space.predictors.erase(std::next(last).base());
+  }
+  return space;
+}
 
 /// The i-th point of the base-2 sequence of van der Corput (1935): evenly spread in [0, 1) however many are taken.
 double spread_point(std::uint64_t i) {
@@ -45,7 +62,7 @@ Path subtree_at(const Tree& tree, double point) {
   while (tree.has_children(path.size(), open) && tree.size(path.size(), open) > kSampleSize) {
     const std::size_t depth = path.size();
     const std::size_t first = std::max<std::size_t>(1, tree.first_pick(depth, open));  // nothing is below predictor 0
-    if (first >= open || !tree.has_children(depth + 1, first)) break;
+    if (first >= open || !tree.has_children(depth + 1, first) || tree.n_forms(first) == tree.n_forms(open)) break;
     const std::size_t form = pick_at(tree, depth + 1, first, open, point);
     path.push_back(form);
     open = tree.forms()[form].position;
@@ -60,7 +77,7 @@ double calibrate(const Space& space, const base::GramSet& grams, const WalkOptio
   const auto seconds_since = [](Clock::time_point then) {
     return std::chrono::duration<double>(Clock::now() - then).count();
   };
-  const Tree tree(space);
+  const Tree tree(reduced(space));
   if (tree.size(0, tree.n_predictors()) == 0) return 0.0;
   const Root root(tree, grams, options.smallest_pivot_rel);
   WalkOptions quiet = options;

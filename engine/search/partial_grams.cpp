@@ -13,7 +13,8 @@ void gather(const Tree& tree, const base::GramSet& grams, std::span<const double
   const std::vector<std::size_t>& gram_column = tree.gram_column();
   for (std::size_t i = 0; i < tree.n_columns(); ++i) {
     const double* column = dense.data() + gram_column[i] * order;
-    for (std::size_t k = 0; k < tree.row_length()[i]; ++k) half.rows[tree.row_offset()[i] + k] = column[gram_column[k]];
+    for (std::size_t k = 0; i >= tree.first_row(0) && k < tree.row_length()[i]; ++k)
+      half.rows[tree.row_offset()[i] + k] = column[gram_column[k]];
     half.diagonal[i] = column[gram_column[i]];
     for (std::size_t r = 0; r < tree.n_responses(); ++r)
       half.responses[r * half.stride + i] = column[grams.n_columns + r];
@@ -26,10 +27,10 @@ void gather(const Tree& tree, const base::GramSet& grams, std::span<const double
 
 }  // namespace
 
-PartialGrams::PartialGrams(const Tree& tree, std::size_t open, std::size_t n_folds) {
-  const std::size_t n_columns = tree.columns(open);
+PartialGrams::PartialGrams(const Tree& tree, std::size_t depth, std::size_t n_folds) {
+  const std::size_t n_columns = tree.columns(tree.n_predictors() - depth);
   const std::size_t n_responses = tree.n_responses();
-  const std::size_t n_entries = tree.row_offset()[n_columns];
+  const std::size_t n_entries = tree.first_row(depth) < n_columns ? tree.row_offset()[n_columns] : 0;
   const std::size_t half_size = n_entries + (1 + n_responses) * n_columns + n_responses;
   values_.assign(2 * (n_folds + 1) * half_size, std::numeric_limits<double>::quiet_NaN());
   const auto half = [&](std::size_t index) {
@@ -42,7 +43,7 @@ PartialGrams::PartialGrams(const Tree& tree, std::size_t open, std::size_t n_fol
 }
 
 Root::Root(const Tree& tree, const base::GramSet& set, double smallest_pivot_rel)
-    : n_rows(set.n_rows), n_folds(set.n_folds), grams(tree, tree.n_predictors(), set.n_folds) {
+    : n_rows(set.n_rows), n_folds(set.n_folds), grams(tree, 0, set.n_folds) {
   for (std::size_t f = 0; f < n_folds; ++f) {
     gather(tree, set, set.training[f], grams.fold(f).training);
     gather(tree, set, set.validation[f], grams.fold(f).validation);

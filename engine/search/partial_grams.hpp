@@ -27,11 +27,12 @@ struct FoldGrams {
 };
 
 /// All folds of one node, and after them "all rows", whose validation part stays unused. One allocation, sized for the
-/// open columns of the node's depth; a node with fewer uses a prefix of every array.
+/// open columns of the node's depth; a node with fewer uses a prefix of every array. Memory: about n_folds · (open
+/// columns)² numbers, or n_folds · open columns where the depth needs no rows (Tree::first_row).
 class PartialGrams {
  public:
-  /// Room for nodes with at most `open` open predictors. Unset values are NaN, so that a read of one would show.
-  PartialGrams(const Tree& tree, std::size_t open, std::size_t n_folds);
+  /// Room for any node at `depth`. Unset values are NaN, so that a read of one would show.
+  PartialGrams(const Tree& tree, std::size_t depth, std::size_t n_folds);
   PartialGrams(PartialGrams&&) = default;
 
   std::size_t n_folds() const { return folds_.size() - 1; }

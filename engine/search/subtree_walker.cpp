@@ -44,7 +44,7 @@ SubtreeWalker::SubtreeWalker(const Tree& tree, const Root& root, const WalkOptio
   }
   for (std::size_t depth = 0; depth < tree.max_depth(); ++depth) {
     const std::size_t open = tree.n_predictors() - depth;
-    if (depth > 0) levels_.emplace_back(tree, open, root.n_folds);
+    if (depth > 0) levels_.emplace_back(tree, depth, root.n_folds);
     separable_.emplace_back(tree.n_forms(open));
   }
   const std::size_t stride = tree.n_columns();

@@ -143,7 +143,7 @@ TEST_CASE("design: Gram matrices keep their digits when one row holds nearly all
   CHECK(worst_difference(set->training[fold], columns_of(data), training, training) < 1e-10);
 }
 
-TEST_CASE("design: Gram matrices are the same bits for any number of threads", "[design][property]") {
+TEST_CASE("design: Gram matrices are the same bits for any number of threads", "[design][property][parallel]") {
   for (const bool weighted : {false, true}) {
     const Data data = test::example_data(35, 20000, weighted);
     const Folds folds = test::folds_of(data, 3, 2);

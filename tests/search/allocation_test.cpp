@@ -44,5 +44,5 @@ TEST_CASE("search: a walker allocates nothing while it walks", "[search][unit]")
   walker.walk();
   const std::size_t after = n_allocations;
   CHECK(after == before);
-  CHECK(walker.n_scored() == search::count(problem.space));
+  CHECK(walker.n_scored() == search::count(problem.space).convert_to<std::uint64_t>());
 }

@@ -36,7 +36,7 @@ TEST_CASE("search: tree sizes equal the number of candidates below each node", "
   for (const std::size_t max_terms : {2u, 3u, 4u, 5u, 6u}) {
     space.max_terms = max_terms;
     const Tree tree(space);
-    CHECK(tree.size(0, 6) * 2 == search::count(space));
+    CHECK(tree.size(0, 6) * 2 == search::count(space).convert_to<std::uint64_t>());
     CHECK(tree.size(0, 6) == counted(tree, 0, 6));
     CHECK(tree.size(1, 5) == counted(tree, 1, 5));
     for (std::size_t open = 0; open <= 4; ++open) CHECK(tree.size(2, open) == counted(tree, 2, open));

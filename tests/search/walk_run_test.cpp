@@ -52,7 +52,7 @@ Problem with_duplicates() {
 
 }  // namespace
 
-TEST_CASE("search: lists are the same bits for any number of threads", "[search][property]") {
+TEST_CASE("search: lists are the same bits for any number of threads", "[search][property][parallel]") {
   Problem problem =
       test::make_problem(20, 60, {{{1, 1, 1}}, {{1, 2}}, {{1, 1, 1}}, {{1, 1}}, {{1, 1, 1}}, {{1, 1}}, {{1}}}, 2, 5);
   const auto grams = test::grams_of(problem);
@@ -173,7 +173,7 @@ TEST_CASE("search: a stopped walk says so and counts what it scored", "[search][
   }
 }
 
-TEST_CASE("search: progress adds up to what was scored", "[search][unit]") {
+TEST_CASE("search: progress adds up to what was scored", "[search][unit][parallel]") {
   const Problem problem = test::make_problem(26, 60, std::vector<test::Shape>(6, {{1, 1, 1, 1}}), 2, 5);
   search::WalkOptions options = short_lists(10);
   options.threads = 2;
