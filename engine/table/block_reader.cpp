@@ -16,7 +16,12 @@ class BlockReader {
         syntax_(task.source.syntax),
         text_(task.source.bytes.data()),
         end_(text_ + block.end),
-        scan_numbers_(syntax_.separator() != syntax_.decimal()) {
+        separator_(syntax_.separator()),
+        decimal_(syntax_.decimal()),
+        scan_numbers_(separator_ != decimal_),
+        short_end_(scan_numbers_ && !task.missing.has_numbers() && end_ - text_ > kShortDecimalBytes
+                       ? end_ - kShortDecimalBytes
+                       : text_) {
     reading_.columns.resize(task.sinks.size());
   }
 
@@ -36,16 +41,32 @@ class BlockReader {
   /// Reads the row at `p`; returns the start of the next.
   const char* read_row(const char* p) {
     row_begin_ = p;
-    const std::size_t n_columns = task_.sinks.size();
-    for (std::size_t column = 0; column < n_columns; ++column) {
-      const char* const stop = read_cell(p, column);
+    const std::size_t last = task_.sinks.size() - 1;
+    for (std::size_t column = 0; column < last; ++column) {
+      const char* stop = read_short_number(p, column, separator_);
+      if (stop == nullptr) stop = read_cell(p, column);
       if (ends_row(stop)) {
-        if (column + 1 < n_columns) finish_short_row(column + 1, stop);
+        finish_short_row(column + 1, stop);
         return stop == end_ ? end_ : stop + 1;
       }
       p = stop + 1;
     }
-    return finish_long_row(p);
+    const char* stop = read_short_number(p, last, '\n');
+    if (stop == nullptr) stop = read_cell(p, last);
+    if (ends_row(stop)) return stop == end_ ? end_ : stop + 1;
+    return finish_long_row(stop + 1);
+  }
+
+  /// The shortest way for the commonest cell: a plain decimal number right up to what must follow it. Returns null when
+  /// the cell is anything else.
+  const char* read_short_number(const char* p, std::size_t column, char follower) {
+    const ColumnSink& sink = task_.sinks[column];
+    if (sink.numbers == nullptr || p >= short_end_) return nullptr;
+    double value = 0.0;
+    const char* const after = scan_short_decimal(p, decimal_, value);
+    if (after == nullptr || *after != follower) return nullptr;
+    sink.numbers[row_] = value;
+    return after;
   }
 
   /// Reads one cell; returns the separator, line feed or end behind it.
@@ -54,13 +75,11 @@ class BlockReader {
     if (sink.read_as == ReadAs::number && scan_numbers_) {
       while (p != end_ && syntax_.is_blank(*p)) ++p;
       double value = 0.0;
-      const char* const after = scan_number(p, end_, syntax_.decimal(), value);
-      if (after != nullptr) {
-        const char* const stop = end_of_number_cell(after);
-        if (stop != nullptr && !(task_.missing.has_numbers() && is_marker(p, after))) {
-          sink.numbers[row_] = value;
-          return stop;
-        }
+      const char* const after = scan_number(p, end_, decimal_, value);
+      const char* const stop = after == nullptr ? nullptr : end_of_number_cell(after);
+      if (stop != nullptr && !(task_.missing.has_numbers() && is_marker(p, after))) {
+        sink.numbers[row_] = value;
+        return stop;
       }
     }
     return read_any_cell(p, column);
@@ -68,9 +87,8 @@ class BlockReader {
 
   /// The separator, line feed or end that follows a number, past blanks; null when something else does.
   const char* end_of_number_cell(const char* p) const noexcept {
-    if (p != end_ && *p == syntax_.separator()) return p;  // nearly always
     while (p != end_ && syntax_.is_blank(*p)) ++p;
-    if (p == end_ || *p == syntax_.separator() || *p == '\n') return p;
+    if (p == end_ || *p == separator_ || *p == '\n') return p;
     if (*p == '\r' && (p + 1 == end_ || p[1] == '\n')) return p + 1;
     return nullptr;
   }
@@ -106,7 +124,7 @@ class BlockReader {
       sink.codes[row_] = texts.add(content.text, content.in_file, row_);
       return;
     }
-    const std::optional<double> number = parse_number(trimmed, syntax_.decimal());
+    const std::optional<double> number = parse_number(trimmed, decimal_);
     sink.numbers[row_] = number.value_or(std::numeric_limits<double>::quiet_NaN());
     if (!number) texts.add(content.text, content.in_file, row_);
   }
@@ -150,7 +168,10 @@ class BlockReader {
   const Syntax& syntax_;
   const char* text_;
   const char* end_;
-  bool scan_numbers_;  ///< false where an unquoted number could run past its separator
+  char separator_;
+  char decimal_;
+  bool scan_numbers_;      ///< false where an unquoted number could run past its separator
+  const char* short_end_;  ///< cells that start before it may be read as short numbers
   BlockReading reading_;
   const char* row_begin_ = nullptr;
   std::size_t row_ = 0;

@@ -20,8 +20,10 @@ constexpr bool is_digit(char c) noexcept { return c >= '0' && c <= '9'; }
 /// Words (inf, nan, infinity) and hexadecimal notation are no numbers. `end` bounds the reading; `decimal` is '.' or
 /// ','.
 inline const char* scan_number(const char* p, const char* end, char decimal, double& value) noexcept {
-  if (end - p >= kShortDecimalBytes)
-    if (const char* const after = scan_short_decimal(p, decimal, value)) return after;
+  if (end - p >= kShortDecimalBytes) {
+    const char* const after = scan_short_decimal(p, decimal, value);
+    if (after != nullptr && !is_digit(*after) && *after != 'e' && *after != 'E' && *after != decimal) return after;
+  }
   if (p == end) return nullptr;
   const char* digits = p + (*p == '-' || *p == '+' ? 1 : 0);
   if (digits == end || !(is_digit(*digits) || *digits == decimal)) return nullptr;

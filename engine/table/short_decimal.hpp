@@ -32,31 +32,39 @@ inline DigitRun read_digits(const char* p) noexcept {
   return {length, (high + low) >> 32U};
 }
 
-/// Bytes that scan_short_decimal may look at.
-inline constexpr std::ptrdiff_t kShortDecimalBytes = 1 + 8 + 1 + 8 + 1;
+/// Bytes that scan_short_decimal may look at: sign, digits, mark, digits, and what follows.
+inline constexpr std::ptrdiff_t kShortDecimalBytes = 1 + 8 + 1 + 16 + 1;
 
-/// Reads an optional '-', one to eight digits and, behind a decimal mark, up to eight more. Returns the position after
-/// them, or null for anything else, which the general reader then takes. The value is correctly rounded: the digits as
-/// a whole number (at most 2^53) and the power of ten are doubles without error, so that their quotient is rounded once
-/// (Clinger 1990, "How to read floating point numbers accurately"). At least kShortDecimalBytes must be readable at
-/// `p`.
+/// Reads an optional '-', one to eight digits and, behind a decimal mark, up to sixteen more. Returns the position
+/// after them, or null when that is not how `p` begins. The text may go on as a number there (a further digit, an
+/// exponent); it is for the caller to look. The value is correctly rounded: the digits as a whole number (at most 2^53)
+/// and the power of ten (at most 10^16) are doubles without error, so that their quotient is rounded once (Clinger
+/// 1990, "How to read floating point numbers accurately"). At least kShortDecimalBytes must be readable at `p`.
 inline const char* scan_short_decimal(const char* p, char decimal, double& value) noexcept {
   constexpr std::array<std::uint32_t, 9> kPowers = {1, 10, 100, 1000, 10000, 100000, 1000000, 10000000, 100000000};
   constexpr std::uint64_t kExactIntegers = std::uint64_t{1} << 53U;
   const bool is_negative = *p == '-';
   p += is_negative ? 1 : 0;
   const DigitRun whole = read_digits(p);
+  if (whole.length == 0) return nullptr;
   p += whole.length;
   std::uint64_t digits = whole.value;
-  std::uint32_t scale = 1;
+  double scale = 1;
   if (*p == decimal) {
     const DigitRun fraction = read_digits(p + 1);
     p += 1 + fraction.length;
+    digits = digits * kPowers[fraction.length] + fraction.value;
     scale = kPowers[fraction.length];
-    digits = digits * scale + fraction.value;
+    if (fraction.length == 8) {
+      const DigitRun more = read_digits(p);
+      // Below 10^11 the eight further digits cannot overflow.
+      if (digits >= 100'000'000'000U) return nullptr;
+      p += more.length;
+      digits = digits * kPowers[more.length] + more.value;
+      scale *= kPowers[more.length];
+    }
   }
-  const bool goes_on = static_cast<unsigned char>(*p - '0') < 10 || (*p | 0x20) == 'e' || *p == decimal;
-  if (whole.length == 0 || goes_on || digits > kExactIntegers) return nullptr;
+  if (digits > kExactIntegers) return nullptr;
   // The sign bit is set without a branch, since the signs of a column may follow no pattern.
   const auto sign = static_cast<std::uint64_t>(is_negative) << 63U;
   value = std::bit_cast<double>(std::bit_cast<std::uint64_t>(static_cast<double>(digits) / scale) | sign);

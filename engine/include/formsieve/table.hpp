@@ -61,14 +61,28 @@ struct Table {
 };
 
 /// Reads a delimited text file by RFC 4180 (quotes with embedded separators and newlines; CR LF or LF; UTF-8 with or
-/// without a byte order mark). A column is numeric when every non-missing cell is a finite number. Errors (kind data or
-/// io), each naming file, line and column of the earliest fault: unreadable or empty file, a header alone, duplicate or
-/// empty header, ragged row, unclosed quote, invalid UTF-8, NUL byte, a stray text cell in an otherwise numeric column.
-/// Cost: O(bytes), parsed in parallel over blocks that start at row ends; the result does not depend on the number of
-/// threads.
+/// without a byte order mark). Spaces and tabs around cells are no part of them unless quoted; lines without content at
+/// the end of the file are no rows.
+///
+/// A number is decimal digits with at most one decimal mark, an optional sign and exponent, read as the nearest double;
+/// words (nan, inf), hexadecimal notation and thousands separators are none. A column is numeric when every non-missing
+/// cell is a number, quoted or not. It is text when plainly so; when it holds other cells too, but at least half of its
+/// values are figures, or at most three different words stand beside at least ten different numbers, that is an error,
+/// not a guess. So are numbers that, for want of better ones in the file, may have a decimal or a thousands mark.
+///
+/// Errors (kind usage for options, io for files that cannot be read, else data), each naming file, line and column of
+/// the earliest fault and a remedy: not found, a folder, no ordinary file, unreadable or empty file, another format
+/// than text, a header alone, duplicate or empty header, ragged row, empty line, unclosed or stray quote, lone CR,
+/// invalid UTF-8, NUL byte, a stray text cell in an otherwise numeric column. Cost: O(bytes), parsed in parallel over
+/// blocks that start at row ends; memory about that of the file and the columns together. The result does not depend on
+/// the number of threads.
 Result<Table> read_csv(const std::string& path, const CsvOptions& options = {});
 
-/// Reads the rows of one SELECT from an SQLite database opened read-only. NULL is missing. Errors name the statement.
+/// Reads the rows of one SELECT (or WITH … SELECT, or VALUES) from an SQLite database opened read-only. NULL is
+/// missing. A column holds numbers or texts as stored; `sha256` is that of the database file, without what a
+/// write-ahead log beside it may hold. Errors name the statement: kind plan for a query that is not one SELECT or that
+/// SQLite refuses; io when the file cannot be read; data for no database, no rows, a name twice, numbers and texts in
+/// one column, numbers all stored as text, a BLOB, an infinite number, text that is not UTF-8.
 Result<Table> read_sqlite(const std::string& path, const std::string& query);
 
 }  // namespace formsieve::table
