@@ -109,7 +109,8 @@ Status Examiner::complete(const search::Choice& choice, judge::Candidate& candid
   candidate.checks = checks::run_all(subject_of(candidate, x, *fit, weights_, prepared_.order));
   candidate.ranges = ranges(choice);
   candidate.equation = report::equation(candidate);
-  candidate.back.formula = report::mean_equation(candidate, smearing);
+  candidate.back.formula =
+      backtransform::formula(smearing, candidate.response_column, report::linear_predictor(candidate));
   candidate.cautions = judge::candidate_cautions(candidate);
   return {};
 }

@@ -117,11 +117,6 @@ std::vector<double> raw_values(const table::Column& column, const forms::Form& f
   return raw;
 }
 
-bool named_in_plan(const run::Plan& plan, const std::string& column) {
-  return plan.forms.of.contains(column) ||
-         std::find(plan.forms.always.begin(), plan.forms.always.end(), column) != plan.forms.always.end();
-}
-
 Result<int> direction_of(const run::Plan& plan, const table::Column& column) {
   const auto declared = plan.forms.direction.find(column.name);
   if (declared == plan.forms.direction.end()) return 0;
@@ -135,7 +130,7 @@ Result<int> direction_of(const run::Plan& plan, const table::Column& column) {
 Status add_predictor(Prepared& prepared, const run::Plan& plan, std::size_t index) {
   const table::Column& column = prepared.table.columns[index];
   const survey::ColumnProfile& profile = profile_of(prepared.survey, column.name);
-  if (profile.set_aside) {
+  if (profile.set_aside && !(named_in_plan(plan, column.name) && only_repeats(prepared.table, plan, column.name))) {
     const std::string why = profile.notes.empty() ? "it cannot serve as a predictor" : profile.notes.front();
     if (named_in_plan(plan, column.name))
       return Error{ErrorKind::data,

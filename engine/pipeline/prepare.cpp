@@ -31,6 +31,23 @@ void keep_rows(table::Table& table, const std::vector<std::size_t>& rows) {
   table.n_rows = rows.size();
 }
 
+}  // namespace
+
+bool named_in_plan(const run::Plan& plan, const std::string& column) {
+  return plan.forms.of.contains(column) ||
+         std::find(plan.forms.always.begin(), plan.forms.always.end(), column) != plan.forms.always.end();
+}
+
+bool only_repeats(const table::Table& table, const run::Plan& plan, const std::string& name) {
+  survey::Options alone;
+  alone.rare_level_count = plan.data.rare_levels;
+  for (const auto& column : table.columns)
+    if (column.name != name) alone.ignore.push_back(column.name);
+  return survey::unusable_columns(table, alone).empty();
+}
+
+namespace {
+
 /// Predictors that cannot serve whatever the rows (labels, constants, empty columns) must not cost rows: they are taken
 /// out beforehand.
 Status drop_hopeless(const table::Table& table, const run::Plan& plan, Roles& roles, std::vector<std::string>& notes) {
@@ -49,10 +66,14 @@ Status drop_hopeless(const table::Table& table, const run::Plan& plan, Roles& ro
       kept.push_back(index);
       continue;
     }
-    if (plan.forms.of.contains(name) ||
-        std::find(plan.forms.always.begin(), plan.forms.always.end(), name) != plan.forms.always.end())
+    if (named_in_plan(plan, name)) {
+      if (only_repeats(table, plan, name)) {
+        kept.push_back(index);
+        continue;
+      }
       return Error{ErrorKind::data, "the column '" + name + "' cannot serve as a predictor: " + reason->second,
                    table.source, "take it out of forms.always and forms.of"};
+    }
     notes.push_back("'" + name + "' is set aside: " + reason->second);
   }
   roles.predictors = std::move(kept);

@@ -51,6 +51,13 @@ Result<Roles> assign_roles(const table::Table& table, const run::Plan& plan);
 /// notes. `profiles` are those of the survey by table column.
 Status build_menus(Prepared& prepared, const Roles& roles, const run::Plan& plan);
 
+/// True when forms.always or forms.of names the column.
+bool named_in_plan(const run::Plan& plan, const std::string& column);
+
+/// True when all that is wrong with a column is that it repeats another one: harmless where a plan gives the two
+/// different forms.
+bool only_repeats(const table::Table& table, const run::Plan& plan, const std::string& name);
+
 /// The profile of a column by name; it must be there.
 const survey::ColumnProfile& profile_of(const survey::Survey& survey, const std::string& column);
 

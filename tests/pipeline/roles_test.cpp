@@ -32,7 +32,7 @@ TEST_CASE("pipeline: wrong column names are refused with the nearest one", "[pip
   CHECK_THAT(error.hint, Catch::Contains("'y'"));
 
   plan = plan_for(file, "y");
-  plan.data.ignore = {"sight"};
+  plan.data.ignore = {"sitee"};
   CHECK_THAT(failure(plan, folder).hint, Catch::Contains("'site'"));
   plan.data.ignore = {};
   plan.forms.always = {"aa"};
