@@ -117,7 +117,7 @@ void rows_in_use(Page& page, const Candidate& candidate) {
 
 void coefficients(Page& page, const Candidate& candidate) {
   page.heading("What does each term contribute?");
-  TextTable table({{"term"}, {"coefficient", true, false, 1}, {"se", true, false, 1}, {"robust se", true, false, 1}});
+  TextTable table({{"term"}, {"coefficient", true, 0, 1}, {"se", true, 0, 1}, {"robust se", true, 0, 1}});
   for (const fit::Coefficient& one : candidate.coefficients) {
     table.add_row({{one.term}, {significant(one.value, 5)}, {significant(one.se, 3)}, {significant(one.se_robust, 3)}});
   }
@@ -137,20 +137,20 @@ std::string check_statistic(const checks::Check& check) {
     text += " on " + significant(*check.df) + " df";
   }
   if (check.p) text += ", p " + p_value(*check.p);
-  if (check.p_adjusted) text += ", " + p_value(*check.p_adjusted) + " among all checks here";
+  if (check.p_adjusted) text += ", " + p_value(*check.p_adjusted) + " after Holm's adjustment";
   return text;
 }
 
 void assumption_checks(Page& page, const Candidate& candidate) {
   if (candidate.checks.empty()) return;
   page.heading("What is wrong with it?");
+  constexpr std::size_t kVerdictWidth = 6;
   for (const checks::Check& check : candidate.checks) {
-    const std::string verdict = check.passes ? "passes  " : "fails   ";
-    std::string text = check.size_words;
-    if (!check.hypothesis.empty()) text = check.hypothesis + ": " + text;
-    page.labelled(verdict + check.name, kLabelWidth + 4, text, check.passes ? Tone::plain : Tone::alarm);
-    page.labelled("", kLabelWidth + 4, check_statistic(check));
-    if (!check.note.empty()) page.labelled("", kLabelWidth + 4, check.note);
+    std::string found = check.name + ": " + check.size_words;
+    if (!check.note.empty()) found += "; " + check.note;
+    page.labelled(check.passes ? "passes" : "fails", kVerdictWidth, found, check.passes ? Tone::plain : Tone::alarm);
+    const std::string asked = check.hypothesis.empty() ? "" : "Supposed: " + check.hypothesis + ". ";
+    page.labelled("", kVerdictWidth, asked + check_statistic(check));
   }
 }
 
@@ -158,10 +158,8 @@ void back_transformation(Page& page, const Candidate& candidate) {
   const std::vector<backtransform::Correction>& corrections = candidate.back.corrections;
   if (is_identity(candidate.response) || corrections.empty()) return;
   page.heading("What does going back to own units cost?");
-  TextTable table({{"correction"},
-                   {"factor", true, false, 1},
-                   {"held-out mean error", true, false, 1},
-                   {"held-out RMSE", true, false, 1}});
+  TextTable table(
+      {{"correction"}, {"factor", true, 0, 1}, {"held-out mean error", true, 0, 1}, {"held-out RMSE", true, 0, 1}});
   for (const backtransform::Correction& one : corrections) {
     const bool used = one.method == candidate.back.used;
     table.add_row({{one.method + (used ? " (used)" : ""), used ? Tone::strong : Tone::plain},

@@ -56,6 +56,12 @@ void Page::command(std::string_view line) { text_ += std::string(kIndent) + prin
 
 void Page::table(const TextTable& table) { text_ += table.draw(terminal_.width, terminal_.colour); }
 
+std::string held_together(std::string_view text) {
+  std::string held;
+  for (const char letter : text) held += letter == ' ' ? std::string("\xC2\xA0") : std::string(1, letter);
+  return held;
+}
+
 std::string joined(const std::vector<std::string>& words, std::string_view separator) {
   std::string text;
   for (std::size_t i = 0; i < words.size(); ++i) {

@@ -35,6 +35,9 @@ class Page {
   std::string text_;
 };
 
+/// The text with its spaces unbreakable: a form and its figure stay on one line.
+std::string held_together(std::string_view text);
+
 /// "a", "a and b", "a, b and c".
 std::string listed(const std::vector<std::string>& words);
 std::string joined(const std::vector<std::string>& words, std::string_view separator);

@@ -62,7 +62,7 @@ int run_search(const SearchArguments& arguments) {
   const Result<pipeline::SearchOutcome> outcome = run_watched(*plan, arguments);
   if (!outcome) return refused(outcome.error(), *plan);
   const int code = outcome->stopped_early ? kStoppedEarly : kDone;
-  if (arguments.common.json) return write_result(report::shortlist_json(outcome->shortlist) + "\n", code);
+  if (arguments.common.json) return write_result(report::shortlist_json(outcome->shortlist), code);
   return write_result(shortlist_page(outcome->shortlist, outcome->run_folder, look_at(kStandardOutput)), code);
 }
 

@@ -18,6 +18,7 @@ using judge::Shortlist;
 // the same line.
 constexpr std::size_t kNarrowestTable = 64;
 constexpr std::size_t kRoomForTerms = 60;
+constexpr std::size_t kLeastChecks = 14;
 // Digits of the error that tell neighbours in a ranking apart.
 constexpr int kErrorDigits = 4;
 
@@ -96,13 +97,13 @@ std::string marked(const Candidate& candidate, const std::string& text) {
 
 TextTable wide_table(const Shortlist& shortlist, const Scale& scale, bool terms_inside) {
   std::vector<TableColumn> columns = {{"rank", true},
-                                      {"response", false, false, 1},
-                                      {"CV RMSE ± se", true, false, 1},
-                                      {"Δ" + criterion_words(scale.criterion), true, false, 1},
-                                      {"terms / coef.", true, false, 1},
-                                      {"R²", true, false, 1},
-                                      {"checks failing", false, true, 1}};
-  if (terms_inside) columns.push_back({"terms", false, true, 1, true});
+                                      {"response", false, 0, 1},
+                                      {"CV RMSE ± se", true, 0, 1},
+                                      {"Δ" + criterion_words(scale.criterion), true, 0, 1},
+                                      {"terms / coef.", true, 0, 1},
+                                      {"R²", true, 0, 1},
+                                      {"checks failing", false, kLeastChecks, 1}};
+  if (terms_inside) columns.push_back({"terms", false, kRoomForTerms, 1, true});
   TextTable table(columns);
   for (const Candidate& candidate : shortlist.candidates) {
     const std::string failing = failing_words(candidate);
@@ -192,17 +193,10 @@ void sentences(Page& page, const std::string& heading, const std::vector<std::st
   for (const std::string& text : texts) page.note(text);
 }
 
-std::string coverage(const Shortlist& shortlist) {
-  const judge::Coverage& space = shortlist.space;
+std::string coverage(const judge::Coverage& space) {
   std::string text = grouped(space.candidates) + " candidates";
-  if (space.scored == space.candidates) {
-    text += ", every one scored";
-  } else {
-    text += ", " + grouped(space.scored) + " scored";
-  }
+  text += space.scored == space.candidates ? ", every one scored" : ", " + grouped(space.scored) + " scored";
   if (!space.complete) text += " before the search was stopped";
-  if (space.inseparable != "0") text += ", " + grouped(space.inseparable) + " set aside as inseparable";
-  text += "; " + grouped(space.examined) + " examined in full";
   return text;
 }
 
@@ -212,8 +206,34 @@ std::string setting(const Shortlist& shortlist) {
   if (data.rows_used != data.rows_read) rows = grouped(data.rows_used) + " of " + counted(data.rows_read, "row");
   std::string folds = counted(shortlist.folds.count, "fold") + " (" + shortlist.folds.kind + ")";
   if (shortlist.folds.repeats > 1) folds += ", dealt " + std::to_string(shortlist.folds.repeats) + " times";
-  return data.response + " in " + data.file + ": " + rows + ", " + folds + ". " + coverage(shortlist) + ". Ranked by " +
-         criterion_words(shortlist.criterion) + ".";
+  return data.response + " in " + data.file + ": " + rows + ", " + folds + ". " + coverage(shortlist.space) +
+         ". Ranked by " + criterion_words(shortlist.criterion) + ".";
+}
+
+// What was looked at, what was not, and why.
+std::vector<std::string> extent(const Shortlist& shortlist) {
+  const judge::Coverage& space = shortlist.space;
+  std::vector<std::string> said;
+  if (!shortlist.data.dropped.empty()) {
+    std::vector<std::string> parts;
+    for (const auto& [column, rows] : shortlist.data.dropped) parts.push_back(grouped(rows) + " for " + column);
+    said.push_back("Rows left out because a value is missing: " + joined(parts, ", ") + ".");
+  }
+  std::string examined = "Examined in full: " + grouped(space.examined);
+  if (space.examined != space.pooled) examined += " of " + grouped(space.pooled) + " pooled";
+  if (!space.pool_formed.empty()) examined += "; the pool is " + space.pool_formed;
+  said.push_back(examined + ".");
+  if (!space.pool_margin.empty()) said.push_back("Margin: " + space.pool_margin + ".");
+  if (space.inseparable != "0") {
+    said.push_back(grouped(space.inseparable) + " candidates were not entered: their columns cannot be told apart in " +
+                   "some fold.");
+  }
+  const auto aside = [&](std::size_t count, const std::string& why) {
+    if (count > 0) said.push_back(grouped(count) + " pooled candidates were set aside: " + why);
+  };
+  aside(space.set_aside_direction, "a fitted effect contradicts its declared direction.");
+  aside(space.set_aside_require, "a required check fails.");
+  return said;
 }
 
 }  // namespace
@@ -235,6 +255,7 @@ std::string shortlist_page(const judge::Shortlist& shortlist, const std::string&
     equation_of(page, *recommended(shortlist));
   }
   sentences(page, "What the ranking shows", shortlist.remarks);
+  sentences(page, "How far the search went", extent(shortlist));
   sentences(page, "To keep in mind", shortlist.cautions);
   page.blank();
   page.prose("Everything is in the run folder " + run_folder + ". One candidate in full:");

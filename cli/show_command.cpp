@@ -68,14 +68,14 @@ int show_candidate(judge::Shortlist shortlist, const ShowArguments& arguments) {
   }
   judge::Candidate only = **found;
   shortlist.candidates.assign(1, std::move(only));
-  return write_result(report::shortlist_json(shortlist) + "\n");
+  return write_result(report::shortlist_json(shortlist));
 }
 
 int run_show(const ShowArguments& arguments) {
   const Result<judge::Shortlist> shortlist = pipeline::open_run(arguments.run_folder);
   if (!shortlist) return refused(shortlist.error(), {}, true);
   if (arguments.rank) return show_candidate(*shortlist, arguments);
-  if (arguments.common.json) return write_result(report::shortlist_json(*shortlist) + "\n");
+  if (arguments.common.json) return write_result(report::shortlist_json(*shortlist));
   return write_result(shortlist_page(*shortlist, arguments.run_folder, look_at(kStandardOutput)));
 }
 

@@ -55,7 +55,7 @@ int run_survey(const SurveyArguments& arguments) {
   if (!wanted.empty()) {
     if (const Status found = restrict_to(*survey, wanted); !found) return refused(found.error(), *plan);
   }
-  if (arguments.common.json) return write_result(report::survey_json(*survey) + "\n");
+  if (arguments.common.json) return write_result(report::survey_json(*survey));
   return write_result(survey_page(*survey, look_at(kStandardOutput)));
 }
 

@@ -15,6 +15,8 @@ namespace {
 constexpr std::size_t kNarrowestTable = 56;
 // Levels of a text column that are named before the rest is counted.
 constexpr std::size_t kNamedLevels = 6;
+// A menu of four forms on one line, and a list of levels that is more than a ladder of single words.
+constexpr std::size_t kLeastMenu = 28, kLeastLevels = 24;
 
 using Profile = survey::ColumnProfile;
 
@@ -32,7 +34,7 @@ std::string short_label(const survey::FormTrial& trial) { return forms::term_nam
 std::string suggested_menu(const Profile& profile) {
   std::vector<std::string> labels;
   for (const survey::FormTrial& trial : profile.forms) {
-    if (trial.suggested) labels.push_back(short_label(trial));
+    if (trial.suggested) labels.push_back(held_together(short_label(trial)));
   }
   if (!labels.empty()) return joined(labels, ", ");
   return profile.set_aside ? "set aside" : "–";
@@ -87,7 +89,7 @@ TextTable numbers_table(const std::vector<const Profile*>& profiles, const std::
     for (const Figure& figure : figures()) {
       if (figure.group != group || !shown(figure, profiles)) continue;
       used.push_back(&figure);
-      columns.push_back({figure.heading, !is_words(figure), figure.group == kSuggested, figure.group});
+      columns.push_back({figure.heading, !is_words(figure), figure.group == kSuggested ? kLeastMenu : 0, figure.group});
     }
   }
   TextTable table(columns);
@@ -133,10 +135,10 @@ std::string level_list(const Profile& profile) {
 
 TextTable texts_table(const std::vector<const Profile*>& profiles) {
   TextTable table({{"column of text"},
-                   {"n", true, false, 1},
-                   {"missing", true, false, 1},
-                   {"levels", true, false, 1},
-                   {"the most frequent, with rows", false, true, 2}});
+                   {"n", true, 0, 1},
+                   {"missing", true, 0, 1},
+                   {"levels", true, 0, 1},
+                   {"the most frequent, with rows", false, kLeastLevels, 2}});
   for (const Profile* profile : profiles) {
     table.add_row({{profile->facts.name},
                    {grouped(profile->facts.n)},
@@ -172,35 +174,44 @@ std::string with_skewness(const survey::FormTrial& trial) {
   return trial.skewness_after ? label + " " + with_decimals(*trial.skewness_after, 2) : label;
 }
 
+// A form that is one with a simpler one is possible, but no choice of its own.
+bool is_merged(const survey::FormTrial& trial) { return trial.possible && !trial.suggested && !trial.reason.empty(); }
+
 std::string trials_of(const Profile& profile, bool suggested) {
   std::vector<std::string> parts;
   for (const survey::FormTrial& trial : profile.forms) {
-    if (!trial.possible || trial.suggested != suggested) continue;
-    std::string part = with_skewness(trial);
-    // Words of one item stay together on a line.
-    for (std::size_t at = part.find(' '); at != std::string::npos; at = part.find(' ', at + 2)) {
-      part.replace(at, 1, "\xC2\xA0");
-    }
-    parts.push_back(std::move(part));
+    if (!trial.possible || trial.suggested != suggested || is_merged(trial)) continue;
+    parts.push_back(held_together(with_skewness(trial)));
   }
   return joined(parts, " · ");
 }
 
+// The untransformed column is in every menu: saying so for each column would hide the other reasons.
+std::string reason_for(const survey::FormTrial& trial) {
+  const bool untransformed = trial.form.kind == forms::Kind::identity && !trial.form.reflect;
+  return trial.suggested && !untransformed ? trial.why : std::string();
+}
+
+std::string reason_merged(const survey::FormTrial& trial) { return is_merged(trial) ? trial.reason : std::string(); }
+
+std::string reason_against(const survey::FormTrial& trial) {
+  if (trial.possible) return {};
+  return trial.repair.empty() ? trial.reason : trial.reason + "; " + trial.repair;
+}
+
 // Forms that share a reason are named together.
-void grouped_reasons(Page& page, const Profile& profile, std::size_t label_width, bool possible) {
+void reasons(Page& page, const Profile& profile, std::string_view label, std::size_t label_width,
+             std::string (*reason_of)(const survey::FormTrial&)) {
   std::vector<std::pair<std::string, std::vector<std::string>>> by_reason;
   for (const survey::FormTrial& trial : profile.forms) {
-    if (trial.possible != possible) continue;
-    std::string reason = possible ? trial.why : trial.reason;
-    if (possible && !trial.suggested) reason = trial.reason;  // merged with a simpler one
+    const std::string reason = reason_of(trial);
     if (reason.empty()) continue;
-    if (!possible && !trial.repair.empty()) reason += "; " + trial.repair;
     auto found = std::find_if(by_reason.begin(), by_reason.end(), [&](const auto& one) { return one.first == reason; });
     if (found == by_reason.end()) found = by_reason.insert(by_reason.end(), {reason, {}});
-    found->second.push_back(short_label(trial));
+    found->second.push_back(held_together(short_label(trial)));
   }
   for (const auto& [reason, labels] : by_reason) {
-    page.labelled(possible ? "why" : "not possible", label_width, joined(labels, ", ") + ": " + reason);
+    page.labelled(label, label_width, joined(labels, ", ") + ": " + reason);
   }
 }
 
@@ -218,8 +229,9 @@ void forms_of(Page& page, const Profile& profile) {
   const std::string suggested = trials_of(profile, true), others = trials_of(profile, false);
   if (!suggested.empty()) page.labelled("suggested", kLabelWidth, suggested);
   if (!others.empty()) page.labelled("also possible", kLabelWidth, others);
-  grouped_reasons(page, profile, kLabelWidth, true);
-  grouped_reasons(page, profile, kLabelWidth, false);
+  reasons(page, profile, "why", kLabelWidth, reason_for);
+  reasons(page, profile, "merged", kLabelWidth, reason_merged);
+  reasons(page, profile, "not possible", kLabelWidth, reason_against);
   for (const std::string& note : profile.notes) page.labelled("note", kLabelWidth, note);
 }
 

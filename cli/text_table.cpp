@@ -10,8 +10,6 @@ namespace formsieve::cli {
 namespace {
 
 constexpr std::size_t kGap = 2;  // two spaces tell columns of figures apart without rules
-// A wrapped column narrower than this becomes a ladder of single words.
-constexpr std::size_t kNarrowestFlexible = 16;
 // The key may take this share of the line (one in so many) before long names are wrapped, but never fewer columns than
 // `kNarrowestKey`.
 constexpr std::size_t kKeyShare = 3;
@@ -38,8 +36,8 @@ std::size_t TextTable::natural(std::size_t column) const {
 
 std::size_t TextTable::smallest(std::size_t column) const {
   const std::size_t full = natural(column);
-  const std::size_t wrapped_width = std::max(kNarrowestFlexible, display_width(columns_[column].heading));
-  return columns_[column].flexible ? std::min(full, wrapped_width) : full;
+  const TableColumn& one = columns_[column];
+  return one.least > 0 ? std::min(full, std::max(one.least, display_width(one.heading))) : full;
 }
 
 std::size_t TextTable::key_width(std::size_t width) const {
@@ -77,7 +75,7 @@ std::vector<std::vector<std::size_t>> TextTable::bands(std::size_t width) const 
   return result;
 }
 
-// Widths within one band: flexible columns share what is left, none more than it needs.
+// Widths within one band: wrapped columns share what is left, none more than it needs.
 TextTable::Band TextTable::placed(const std::vector<std::size_t>& columns, std::size_t width) const {
   Band band;
   std::size_t used = kGap * (columns.size() - 1);
@@ -86,7 +84,7 @@ TextTable::Band TextTable::placed(const std::vector<std::size_t>& columns, std::
     used += band.back().width;
   }
   for (Placed& place : band) {
-    if (place.column == 0 || !columns_[place.column].flexible || used >= width) continue;
+    if (place.column == 0 || columns_[place.column].least == 0 || used >= width) continue;
     const std::size_t more = std::min(width - used, natural(place.column) - place.width);
     place.width += more;
     used += more;

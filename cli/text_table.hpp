@@ -18,9 +18,9 @@ struct Cell {
 struct TableColumn {
   std::string heading;
   bool right = false;     ///< figures stand on the right
-  bool flexible = false;  ///< its text may be wrapped, and takes what the others leave
+  std::size_t least = 0;  ///< when positive, text may be wrapped to as few columns, and takes what the others leave
   std::size_t group = 0;  ///< neighbours with the same number belong together
-  bool sum = false;       ///< flexible text is a sum of terms and is broken before its signs
+  bool sum = false;       ///< wrapped text is a sum of terms and is broken before its signs
 };
 
 class TextTable {

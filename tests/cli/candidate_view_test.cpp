@@ -35,7 +35,7 @@ TEST_CASE("cli: one candidate in full answers every question with its figures", 
   CHECK(has(page, "√(101 − fill_percent) −0.1204 0.0101 0.0098"));
   CHECK(has(page, "AIC 30,508.1, AICc 30,508.1, BIC 30,529.1"));
   CHECK(has(page, "fails equal-spread"));
-  CHECK(has(page, "statistic 14.2 on 1 df, p below 0.001, 0.001 among all checks here"));
+  CHECK(has(page, "statistic 14.2 on 1 df, p below 0.001, 0.001 after Holm's adjustment"));
   CHECK(has(page, "smearing (used) 1.022 −12 12,352"));
   CHECK(has(page, "floor_area seen from 120.5 to 48,210; form defined above 0"));
   CHECK(has(page, "fill_percent seen from 0 to 100; form defined up to 101"));

@@ -9,7 +9,7 @@ using namespace formsieve::cli::testing;
 namespace {
 
 TextTable small_table() {
-  TextTable table({{"column"}, {"n", true, false, 1}, {"min", true, false, 2}, {"max", true, false, 2}});
+  TextTable table({{"column"}, {"n", true, 0, 1}, {"min", true, 0, 2}, {"max", true, 0, 2}});
   table.add_row({{"floor_area"}, {"1,420"}, {"120.5"}, {"48,210"}});
   table.add_row({{"√_fill"}, {"9"}, {"−1"}, {"100"}});
   return table;
@@ -46,7 +46,7 @@ TEST_CASE("cli: a group is torn apart only when it does not fit alone", "[cli][u
 }
 
 TEST_CASE("cli: a flexible column takes what the others leave and wraps", "[cli][unit]") {
-  TextTable table({{"column"}, {"n", true, false, 1}, {"why", false, true, 1}});
+  TextTable table({{"column"}, {"n", true, 0, 1}, {"why", false, 16, 1}});
   table.add_row({{"a"}, {"10"}, {"left-skewed, hence reflected"}});
   CHECK(table.draw(30, false) ==
         "column   n  why\n"
@@ -57,7 +57,7 @@ TEST_CASE("cli: a flexible column takes what the others leave and wraps", "[cli]
 }
 
 TEST_CASE("cli: text below a row is a sum broken at its signs", "[cli][unit]") {
-  TextTable table({{"rank", true}, {"error", true, false, 1}});
+  TextTable table({{"rank", true}, {"error", true, 0, 1}});
   table.add_row({{"1"}, {"12.3"}}, {"ln(a) + √(101 − b) + c"});
   CHECK(table.draw(26, false) ==
         "rank  error\n"
@@ -68,7 +68,7 @@ TEST_CASE("cli: text below a row is a sum broken at its signs", "[cli][unit]") {
 }
 
 TEST_CASE("cli: long names in the key column wrap instead of crowding out the figures", "[cli][unit]") {
-  TextTable table({{"column"}, {"n", true, false, 1}});
+  TextTable table({{"column"}, {"n", true, 0, 1}});
   table.add_row({{"energy_use_of_the_northern_stores"}, {"7"}});
   const std::string drawn = table.draw(36, false);
   CHECK(widest_line(drawn) <= 36);
@@ -77,7 +77,7 @@ TEST_CASE("cli: long names in the key column wrap instead of crowding out the fi
 }
 
 TEST_CASE("cli: cells cannot break the table with control characters", "[cli][unit]") {
-  TextTable table({{"column"}, {"n", true, false, 1}});
+  TextTable table({{"column"}, {"n", true, 0, 1}});
   table.add_row({{"two\nlines\x1b[31m"}, {"7"}});
   const std::string drawn = table.draw(80, false);
   CHECK(lines_of(drawn).size() == 3);
@@ -85,7 +85,7 @@ TEST_CASE("cli: cells cannot break the table with control characters", "[cli][un
 }
 
 TEST_CASE("cli: colour does not move a column", "[cli][unit]") {
-  TextTable plain({{"a"}, {"b", true, false, 1}}), toned = plain;
+  TextTable plain({{"a"}, {"b", true, 0, 1}}), toned = plain;
   plain.add_row({{"x"}, {"1"}});
   toned.add_row({{"x", Tone::strong}, {"1", Tone::alarm}});
   std::string drawn = toned.draw(40, true);
