@@ -2,6 +2,7 @@
 
 #include <cmath>
 #include <cstdio>
+#include <vector>
 
 namespace formsieve::report {
 
@@ -17,13 +18,30 @@ std::string number_text(double value, int digits) {
   return (value < 0.0 ? "−" : "") + shown;
 }
 
+namespace {
+
+/// Labels of the design columns in order; an indicator in Iverson's brackets, since "cooling = air" after a coefficient
+/// would read as an equation.
+std::vector<std::string> column_texts(const judge::Candidate& candidate) {
+  std::vector<std::string> texts;
+  for (const auto& term : candidate.terms)
+    for (std::size_t k = 0; k < forms::n_columns(term.form); ++k) {
+      const std::string label = forms::label(term.form, term.column, k);
+      texts.push_back(term.form.kind == forms::Kind::levels ? "[" + label + "]" : label);
+    }
+  return texts;
+}
+
+}  // namespace
+
 std::string linear_predictor(const judge::Candidate& candidate) {
   if (candidate.coefficients.empty()) return "";
+  const std::vector<std::string> texts = column_texts(candidate);
   std::string text = number_text(candidate.coefficients.front().value, kEquationDigits);
   for (std::size_t i = 1; i < candidate.coefficients.size(); ++i) {
     const fit::Coefficient& coefficient = candidate.coefficients[i];
     text += coefficient.value < 0.0 ? " − " : " + ";
-    text += number_text(std::abs(coefficient.value), kEquationDigits) + "·" + coefficient.term;
+    text += number_text(std::abs(coefficient.value), kEquationDigits) + "·" + texts[i - 1];
   }
   return text;
 }
