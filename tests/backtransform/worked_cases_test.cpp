@@ -2,6 +2,7 @@
 // 1.24.2 and, where the case has 25 digits, mpmath.
 #include "backtransform/backtransform.hpp"
 #include "fit/least_squares.hpp"
+#include "reference/comparison.hpp"
 #include "reference/worked_case.hpp"
 
 #include <catch2/catch.hpp>
@@ -12,29 +13,11 @@
 namespace {
 
 using namespace formsieve;
-using reference::relative_difference;
+using reference::Comparison;
 using reference::WorkedCase;
 
-/// Relative difference that is tolerated; the last test prints what is reached.
+/// Relative difference that is tolerated; each test prints what is reached.
 constexpr double kTolerated = 1e-11;
-
-std::map<std::string, std::pair<double, std::string>>& worst() {
-  static std::map<std::string, std::pair<double, std::string>> held;
-  return held;
-}
-
-/// `unit`: differences are taken relative to the larger of the value and this (a bias may be 0 up to rounding).
-void compare(const WorkedCase& worked, const std::string& name, double ours, double theirs, double unit = 0.0) {
-  const double scale = std::max({std::abs(ours), std::abs(theirs), unit});
-  const double difference = ours == theirs ? 0.0 : std::abs(ours - theirs) / scale;
-  INFO(worked.id() << " (" << worked.title() << "): " << name << " " << ours << ", expected " << theirs);
-  CHECK(difference <= kTolerated);
-  auto& [largest, where] = worst()[name];
-  if (where.empty() || difference > largest) {
-    largest = difference;
-    where = worked.id();
-  }
-}
 
 forms::Form response_form(const WorkedCase& worked) {
   const reference::FormSpec spec = worked.response_form();
@@ -62,7 +45,8 @@ Figures figures_of(const Eigen::VectorXd& predicted, const Eigen::VectorXd& meas
   return {std::sqrt(error.square().mean()), error.abs().mean(), error.mean(), 1.0 - error.square().sum() / tss};
 }
 
-void compare_figures(const WorkedCase& worked, const std::string& block, const Eigen::VectorXd& predicted) {
+void compare_figures(Comparison& compare, const WorkedCase& worked, const std::string& block,
+                     const Eigen::VectorXd& predicted) {
   const Eigen::VectorXd measured = worked.response_own();
   INFO(worked.id() << " " << block);
   if (!worked.figure(block + ".rmse")) {  // null: some argument lies beyond an open edge
@@ -73,10 +57,10 @@ void compare_figures(const WorkedCase& worked, const std::string& block, const E
   const Figures ours = figures_of(predicted, measured);
   // Errors cancel in the bias, their rounding does not: it is that of the response.
   const double unit = measured.cwiseAbs().maxCoeff() * 1e-2;
-  compare(worked, block + ".rmse", ours.rmse, worked.figure(block + ".rmse").value());
-  compare(worked, block + ".mae", ours.mae, worked.figure(block + ".mae").value());
-  compare(worked, block + ".bias", ours.bias, worked.figure(block + ".bias").value(), unit);
-  compare(worked, block + ".r2", ours.r2, worked.figure(block + ".r2").value());
+  compare.check(worked, block + ".rmse", ours.rmse);
+  compare.check(worked, block + ".mae", ours.mae);
+  compare.check(worked, block + ".bias", ours.bias, worked.figure(block + ".bias").value(), unit);
+  compare.check(worked, block + ".r2", ours.r2);
 }
 
 struct Predictions {
@@ -112,6 +96,7 @@ Predictions held_out(const WorkedCase& worked) {
 }  // namespace
 
 TEST_CASE("backtransform: worked cases give the own-units figures in the sample", "[backtransform][reference]") {
+  Comparison compare(kTolerated);
   for (const WorkedCase& worked : reference::worked_cases()) {
     const Eigen::VectorXd w = worked.weights();
     const auto fitted = fit::least_squares(worked.design(), worked.response(), w);
@@ -122,30 +107,34 @@ TEST_CASE("backtransform: worked cases give the own-units figures in the sample"
       mean(i) = smearing.mean(fitted->fitted(i), weight_of(w, i));
       naive(i) = smearing.naive(fitted->fitted(i));
     }
-    compare_figures(worked, "natural_in_sample.smearing_clamped", mean);
-    compare_figures(worked, "natural_in_sample.naive_clamped", naive);
+    compare_figures(compare, worked, "natural_in_sample.smearing_clamped", mean);
+    compare_figures(compare, worked, "natural_in_sample.naive_clamped", naive);
     if (const auto factor = worked.figure("smearing_factor")) {
       REQUIRE(smearing.constant_factor());
-      compare(worked, "smearing_factor", *smearing.constant_factor(), *factor);
+      compare.check(worked, "smearing_factor", *smearing.constant_factor(), *factor);
     } else {
       CHECK_FALSE(smearing.constant_factor());
     }
   }
+  compare.report();
 }
 
 TEST_CASE("backtransform: worked cases give the cross-validated own-units figures", "[backtransform][reference]") {
+  Comparison compare(kTolerated);
   for (const WorkedCase& worked : reference::worked_cases()) {
     if (worked.folds().empty()) continue;
     const Predictions out = held_out(worked);
     const double rmse_form =
         std::sqrt((out.eta - worked.response()).squaredNorm() / static_cast<double>(out.eta.size()));
-    compare(worked, "cv.rmse_transformed", rmse_form, worked.figure("cv.rmse_transformed").value());
-    compare_figures(worked, "cv.natural.smearing_clamped", out.mean_own);
-    compare_figures(worked, "cv.natural.naive_clamped", out.naive_own);
+    compare.check(worked, "cv.rmse_transformed", rmse_form, worked.figure("cv.rmse_transformed").value());
+    compare_figures(compare, worked, "cv.natural.smearing_clamped", out.mean_own);
+    compare_figures(compare, worked, "cv.natural.naive_clamped", out.naive_own);
   }
+  compare.report();
 }
 
 TEST_CASE("backtransform: worked cases agree with their 25-digit figures", "[backtransform][reference]") {
+  Comparison compare(kTolerated);
   // Strict figures, which exist where no argument leaves the inverse's domain; clamping then changes nothing.
   std::size_t compared = 0;
   for (const WorkedCase& worked : reference::worked_cases()) {
@@ -154,30 +143,24 @@ TEST_CASE("backtransform: worked cases agree with their 25-digit figures", "[bac
     const auto naive = worked.figure("cv.natural.naive.rmse");
     const Predictions out = held_out(worked);
     if (smearing) {
-      compare(worked, "cv.natural.smearing.rmse", figures_of(out.mean_own, worked.response_own()).rmse, *smearing);
+      compare.check(worked, "cv.natural.smearing.rmse", figures_of(out.mean_own, worked.response_own()).rmse,
+                    *smearing);
       ++compared;
     }
-    if (naive) compare(worked, "cv.natural.naive.rmse", figures_of(out.naive_own, worked.response_own()).rmse, *naive);
+    if (naive)
+      compare.check(worked, "cv.natural.naive.rmse", figures_of(out.naive_own, worked.response_own()).rmse, *naive);
   }
   CHECK(compared >= 20);
+  compare.report();
 }
 
 TEST_CASE("backtransform: the Jacobian of the worked cases' response forms", "[backtransform][reference]") {
+  Comparison compare(kTolerated);
   for (const WorkedCase& worked : reference::worked_cases()) {
     const forms::Form form = response_form(worked);
     double total = 0.0;
     for (const double y : worked.response_own()) total += forms::log_abs_derivative(form, y);
-    compare(worked, "log Jacobian", total, worked.figure("likelihood.log_jacobian").value(), 1e-3);
+    compare.check(worked, "log Jacobian", total, worked.figure("likelihood.log_jacobian").value(), 1e-3);
   }
-}
-
-TEST_CASE("backtransform: worked cases, the digits reached", "[backtransform][reference]") {
-  std::string table = "largest relative difference over the worked cases:";
-  for (const auto& [name, held] : worst()) {
-    char line[120];
-    std::snprintf(line, sizeof line, "\n  %-42s %8.1e  %s", name.c_str(), held.first, held.second.c_str());
-    table += line;
-  }
-  WARN(table);
-  CHECK_FALSE(worst().empty());
+  compare.report();
 }

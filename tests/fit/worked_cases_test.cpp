@@ -1,46 +1,25 @@
 // Every figure of the worked cases that the fit covers. Values: tests/reference/cases, 25-digit figures by mpmath where
 // the case has them, otherwise NumPy 1.24.2, SciPy 1.10.1 and statsmodels 0.13.5.
+#include "fit/folded_fit.hpp"
 #include "fit/least_squares.hpp"
+#include "reference/comparison.hpp"
 #include "reference/worked_case.hpp"
 
 #include <catch2/catch.hpp>
 
-#include <map>
-#include <numeric>
+#include <algorithm>
+#include <cstdint>
+#include <limits>
 
 namespace {
 
 using namespace formsieve;
-using reference::relative_difference;
+using reference::Comparison;
 using reference::WorkedCase;
 
-/// Relative difference that is tolerated, near-collinear cases included; the last test prints what is reached.
+/// Relative differences that are tolerated, near-collinear cases included; each test prints what is reached.
 constexpr double kTolerated = 1e-12;
-
-/// The largest relative difference by figure over all cases, for the table at the end.
-std::map<std::string, std::pair<double, std::string>>& worst() {
-  static std::map<std::string, std::pair<double, std::string>> held;
-  return held;
-}
-
-void compare(const WorkedCase& worked, const std::string& name, double ours, double theirs, double tolerated) {
-  const double difference = relative_difference(ours, theirs);
-  INFO(worked.id() << " (" << worked.title() << "): " << name << " " << ours << ", expected " << theirs);
-  CHECK(difference <= tolerated);
-  auto& [largest, where] = worst()[name];
-  if (where.empty() || difference > largest) {
-    largest = difference;
-    where = worked.id();
-  }
-}
-
-void compare(const WorkedCase& worked, const std::string& name, const Eigen::VectorXd& ours, double tolerated) {
-  const std::vector<double> theirs = worked.figures(name);
-  REQUIRE(ours.size() == static_cast<Eigen::Index>(theirs.size()));
-  for (Eigen::Index i = 0; i < ours.size(); ++i) {
-    compare(worked, name, ours(i), theirs[static_cast<std::size_t>(i)], tolerated);
-  }
-}
+constexpr double kToleratedQuick = 1e-11;
 
 double half_log_weights(const Eigen::VectorXd& weights) {
   return weights.size() == 0 ? 0.0 : 0.5 * weights.array().log().sum();
@@ -68,24 +47,26 @@ fit::Likelihood expected_likelihood(const WorkedCase& worked, std::size_t n) {
 TEST_CASE("fit: worked cases give every figure of the fit", "[fit][reference]") {
   const auto cases = reference::worked_cases();
   REQUIRE(cases.size() == 26);
+  Comparison compare(kTolerated);
   for (const WorkedCase& worked : cases) {
     const auto fitted = fit::least_squares(worked.design(), worked.response(), worked.weights());
     INFO(worked.id());
     REQUIRE(fitted.ok());
-    compare(worked, "coefficients", fitted->coefficients, kTolerated);
-    compare(worked, "se", fitted->se, kTolerated);
-    compare(worked, "se_hc3", fitted->se_robust, kTolerated);
-    compare(worked, "influence.leverage", fitted->leverage, 1e-8);  // double-precision figures
-    compare(worked, "influence.leverage_max", fitted->leverage.maxCoeff(),
-            worked.figure("influence.leverage_max").value(), kTolerated);
-    compare(worked, "rss", fitted->rss, worked.figure("rss").value(), kTolerated);
-    compare(worked, "tss", fitted->tss, worked.figure("tss").value(), kTolerated);
-    compare(worked, "sigma", fitted->sigma, std::sqrt(worked.figure("sigma2_unbiased").value()), kTolerated);
-    compare(worked, "r2", 1.0 - fitted->rss / fitted->tss, worked.figure("r2_transformed").value(), kTolerated);
+    compare.check(worked, "coefficients", fitted->coefficients);
+    compare.check(worked, "se", fitted->se);
+    compare.check(worked, "se_hc3", fitted->se_robust);
+    compare.check(worked, "influence.leverage", fitted->leverage);
+    compare.check(worked, "influence.leverage_max", fitted->leverage.maxCoeff());
+    compare.check(worked, "rss", fitted->rss);
+    compare.check(worked, "tss", fitted->tss);
+    compare.check(worked, "sigma", fitted->sigma, std::sqrt(worked.figure("sigma2_unbiased").value()));
+    compare.check(worked, "r2_transformed", 1.0 - fitted->rss / fitted->tss);
   }
+  compare.report();
 }
 
 TEST_CASE("fit: worked cases give the likelihood and its criteria in own units", "[fit][reference]") {
+  Comparison compare(kTolerated);
   for (const WorkedCase& worked : reference::worked_cases()) {
     const Eigen::MatrixXd x = worked.design();
     const auto n = static_cast<std::size_t>(x.rows());
@@ -96,34 +77,35 @@ TEST_CASE("fit: worked cases give the likelihood and its criteria in own units",
                                   worked.figure("likelihood.log_jacobian").value(), half_log_weights(worked.weights()));
     const auto theirs = expected_likelihood(worked, n);
     CHECK(static_cast<double>(ours.n_parameters + worked.extra_parameters()) == worked.figure("likelihood.k").value());
-    compare(worked, "log-likelihood", ours.log_likelihood, theirs.log_likelihood, kTolerated);
-    compare(worked, "aic", ours.aic, theirs.aic, kTolerated);
-    compare(worked, "aicc", ours.aicc, theirs.aicc, kTolerated);
-    compare(worked, "bic", ours.bic, theirs.bic, kTolerated);
+    compare.check(worked, "log-likelihood", ours.log_likelihood, theirs.log_likelihood);
+    compare.check(worked, "aic", ours.aic, theirs.aic);
+    compare.check(worked, "aicc", ours.aicc, theirs.aicc);
+    compare.check(worked, "bic", ours.bic, theirs.bic);
   }
+  compare.report();
 }
 
-TEST_CASE("fit: quick fit agrees with the worked cases", "[fit][reference]") {
+TEST_CASE("fit: quick and folded fits agree with the worked cases", "[fit][reference]") {
+  Comparison compare(kToleratedQuick);
   for (const WorkedCase& worked : reference::worked_cases()) {
     const Eigen::MatrixXd x = worked.design();
-    const auto fitted = fit::quick_fit(x, worked.response(), worked.weights());
+    const Eigen::VectorXd z = worked.response(), weights = worked.weights();
+    const auto fitted = fit::quick_fit(x, z, weights);
     REQUIRE(fitted.ok());
-    compare(worked, "quick coefficients", fitted->coefficients(x.cols() - 1), worked.figures("coefficients").back(),
-            1e-11);
-    const Eigen::VectorXd weights = worked.weights();
+    compare.check(worked, "coefficients", fitted->coefficients);
     const Eigen::VectorXd squares = fitted->residuals.array().square();
-    compare(worked, "quick rss", weights.size() == 0 ? squares.sum() : weights.dot(squares),
-            worked.figure("rss").value(), 1e-11);
+    compare.check(worked, "rss", weights.size() == 0 ? squares.sum() : weights.dot(squares));
+    const std::vector<int> given = worked.folds();
+    if (given.empty()) continue;
+    const std::vector<std::uint32_t> folds(given.begin(), given.end());
+    const fit::FoldedFit folded(x, z, weights, folds, *std::max_element(folds.begin(), folds.end()) + 1);
+    Eigen::VectorXd held_out(z.size());
+    for (Eigen::Index i = 0; i < z.size(); ++i) {
+      const auto training = folded.without(folds[static_cast<std::size_t>(i)]);
+      REQUIRE(training.ok());
+      held_out(i) = x.row(i).dot(training->coefficients);
+    }
+    compare.check(worked, "cv.rmse_transformed", std::sqrt((held_out - z).array().square().mean()));
   }
-}
-
-TEST_CASE("fit: worked cases, the digits reached", "[fit][reference]") {
-  std::string table = "largest relative difference over the 26 worked cases:";
-  for (const auto& [name, held] : worst()) {
-    char line[120];
-    std::snprintf(line, sizeof line, "\n  %-24s %8.1e  %s", name.c_str(), held.first, held.second.c_str());
-    table += line;
-  }
-  WARN(table);
-  CHECK_FALSE(worst().empty());
+  compare.report();
 }
