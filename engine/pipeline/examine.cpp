@@ -54,41 +54,49 @@ Eigen::MatrixXd Examiner::design_of(const search::Choice& choice) const {
   return design::design_matrix(prepared_.data, choice.choice, all_rows_);
 }
 
-Result<Examiner::Prediction> Examiner::held_out(const search::Choice& choice, const Eigen::MatrixXd& x,
-                                                const Eigen::VectorXd& z) const {
-  const auto& folds = prepared_.folds;
+Status Examiner::predict_repeat(const search::Choice& choice, const Eigen::MatrixXd& x, const Eigen::VectorXd& z,
+                                std::size_t repeat, const fit::FoldedFit& folded, Prediction& prediction) const {
+  const auto& fold_of = prepared_.folds.fold_of[repeat];
   const std::size_t n = prepared_.data.n_rows;
   const bool weighted = weights_.size() > 0;
-  Prediction prediction;
-  prediction.mean_own.resize(folds.repeats * n);
-  prediction.naive_own.resize(folds.repeats * n);
-  prediction.form.resize(folds.repeats * n);
-  Eigen::VectorXd residuals(static_cast<Index>(n));
-  Eigen::VectorXd training_weights(weighted ? static_cast<Index>(n) : 0);
-  for (std::size_t repeat = 0; repeat < folds.repeats; ++repeat) {
-    const auto& fold_of = folds.fold_of[repeat];
-    const fit::FoldedFit folded(x, z, weights_, fold_of, folds.count);
-    for (std::size_t fold = 0; fold < folds.count; ++fold) {
-      const auto solution = folded.without(fold);
-      if (!solution) return solution.error();
-      const Eigen::VectorXd fitted = x * solution->coefficients;
-      Index n_training = 0;
-      for (std::size_t i = 0; i < n; ++i) {
-        if (fold_of[i] == fold) continue;
-        residuals[n_training] = z[static_cast<Index>(i)] - fitted[static_cast<Index>(i)];
-        if (weighted) training_weights[n_training] = weights_[static_cast<Index>(i)];
-        ++n_training;
-      }
-      const backtransform::Smearing smearing(prepared_.data.response_forms[choice.response], residuals.head(n_training),
-                                             training_weights.head(weighted ? n_training : 0));
-      for (std::size_t i = 0; i < n; ++i) {
-        if (fold_of[i] != fold) continue;
-        const double eta = fitted[static_cast<Index>(i)];
-        prediction.form[repeat * n + i] = eta;
-        prediction.mean_own[repeat * n + i] = smearing.mean(eta, weighted ? weights_[static_cast<Index>(i)] : 1.0);
-        prediction.naive_own[repeat * n + i] = smearing.naive(eta);
-      }
+  Eigen::VectorXd residuals(z.size());
+  Eigen::VectorXd training_weights(weights_.size());
+  for (std::size_t fold = 0; fold < prepared_.folds.count; ++fold) {
+    const auto solution = folded.without(fold);
+    if (!solution) return solution.error();
+    const Eigen::VectorXd fitted = x * solution->coefficients;
+    Index n_training = 0;
+    for (std::size_t i = 0; i < n; ++i) {
+      if (fold_of[i] == fold) continue;
+      const auto row = static_cast<Index>(i);
+      residuals[n_training] = z[row] - fitted[row];
+      if (weighted) training_weights[n_training] = weights_[row];
+      ++n_training;
     }
+    const backtransform::Smearing smearing(prepared_.data.response_forms[choice.response], residuals.head(n_training),
+                                           training_weights.head(weighted ? n_training : 0));
+    for (std::size_t i = 0; i < n; ++i) {
+      if (fold_of[i] != fold) continue;
+      const auto row = static_cast<Index>(i);
+      const double eta = fitted[row];
+      prediction.form[repeat * n + i] = eta;
+      prediction.mean_own[repeat * n + i] = smearing.mean(eta, weighted ? weights_[row] : 1.0);
+      prediction.naive_own[repeat * n + i] = smearing.naive(eta);
+    }
+  }
+  return {};
+}
+
+Result<Examiner::Prediction> Examiner::held_out(const search::Choice& choice, const Eigen::MatrixXd& x,
+                                                const Eigen::VectorXd& z, const fit::FoldedFit& first_repeat) const {
+  const auto& folds = prepared_.folds;
+  Prediction prediction;
+  for (auto* values : {&prediction.mean_own, &prediction.naive_own, &prediction.form})
+    values->resize(folds.repeats * prepared_.data.n_rows);
+  if (auto status = predict_repeat(choice, x, z, 0, first_repeat, prediction); !status) return status.error();
+  for (std::size_t repeat = 1; repeat < folds.repeats; ++repeat) {
+    const fit::FoldedFit folded(x, z, weights_, folds.fold_of[repeat], folds.count);
+    if (auto status = predict_repeat(choice, x, z, repeat, folded, prediction); !status) return status.error();
   }
   return prediction;
 }
@@ -145,7 +153,7 @@ Examined Examiner::score(const search::Choice& choice, const search::BigCount& n
     return examined;
   }
   examined.contradicts_direction = contradicts(choice, solution->coefficients);
-  const auto prediction = held_out(choice, x, z);
+  const auto prediction = held_out(choice, x, z, folded);
   if (!prediction) {
     examined.failure = prediction.error().message;
     return examined;
@@ -163,15 +171,9 @@ Examined Examiner::score(const search::Choice& choice, const search::BigCount& n
   held.n_folds = prepared_.folds.count;
   for (const auto& fold_of : prepared_.folds.fold_of) held.fold_of.emplace_back(fold_of);
   candidate.cv = judge::cross_validation(held);
-  const double naive_bias = [&] {
-    std::vector<double> errors(prediction->naive_own.size());
-    for (std::size_t i = 0; i < errors.size(); ++i)
-      errors[i] = prediction->naive_own[i] - prepared_.data.response[i % n];
-    return base::mean(errors);
-  }();
-  backtransform::Correction none{"none", 1.0, std::nullopt, candidate.cv.rmse_naive};
-  if (std::isfinite(naive_bias)) none.cv_bias = naive_bias;
-  candidate.back.corrections = {none, {"smearing", 1.0, candidate.cv.bias, candidate.cv.rmse}};
+  candidate.back.corrections = {
+      backtransform::judged("none", 1.0, prediction->naive_own, prepared_.data.response),
+      backtransform::judged("smearing", 1.0, prediction->mean_own, prepared_.data.response)};
   examined.candidate = std::move(candidate);
   return examined;
 }

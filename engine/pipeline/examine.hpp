@@ -4,6 +4,7 @@
 
 #include <formsieve/judge.hpp>
 
+#include "fit/folded_fit.hpp"
 #include "pipeline/prepare.hpp"
 #include "search/space.hpp"
 
@@ -38,7 +39,10 @@ class Examiner {
  private:
   struct Prediction;
   Eigen::MatrixXd design_of(const search::Choice& choice) const;
-  Result<Prediction> held_out(const search::Choice& choice, const Eigen::MatrixXd& x, const Eigen::VectorXd& z) const;
+  Result<Prediction> held_out(const search::Choice& choice, const Eigen::MatrixXd& x, const Eigen::VectorXd& z,
+                              const fit::FoldedFit& first_repeat) const;
+  Status predict_repeat(const search::Choice& choice, const Eigen::MatrixXd& x, const Eigen::VectorXd& z,
+                        std::size_t repeat, const fit::FoldedFit& folded, Prediction& prediction) const;
   bool contradicts(const search::Choice& choice, const Eigen::VectorXd& coefficients) const;
   judge::Candidate named(const search::Choice& choice, const search::BigCount& number) const;
   std::vector<judge::ValidRange> ranges(const search::Choice& choice) const;
