@@ -149,7 +149,7 @@ void assumption_checks(Page& page, const Candidate& candidate) {
     std::string found = check.name + ": " + check.size_words;
     if (!check.note.empty()) found += "; " + check.note;
     page.labelled(check.passes ? "passes" : "fails", kVerdictWidth, found, check.passes ? Tone::plain : Tone::alarm);
-    const std::string asked = check.hypothesis.empty() ? "" : "Supposed: " + check.hypothesis + ". ";
+    const std::string asked = check.hypothesis.empty() ? "" : "Supposed: " + check.hypothesis + "; ";
     page.labelled("", kVerdictWidth, asked + check_statistic(check));
   }
 }

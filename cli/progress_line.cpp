@@ -6,25 +6,25 @@
 
 #include <algorithm>
 #include <cmath>
-#include <vector>
+#include <string_view>
 
 namespace formsieve::cli {
 namespace {
 
 constexpr std::string_view kEraseLine = "\r\x1b[2K";
 
-// "2.34 of 5.86 million candidates": the word of scale is said once when both counts share it.
+// "2.34 of 5.86 million": the word of scale is said once when both counts share it.
 std::string amount(const Progress& progress) {
   const std::string done = rough_count(progress.done);
-  if (progress.total <= 0.0) return done + " " + progress.unit;
+  if (progress.total <= 0.0) return done;
   const std::string total = rough_count(progress.total);
   constexpr std::string_view kScale = " million";
   const bool shared = done.ends_with(kScale) && total.ends_with(kScale);
-  const std::string head = shared ? done.substr(0, done.size() - kScale.size()) : done;
-  return head + " of " + total + " " + progress.unit;
+  return (shared ? done.substr(0, done.size() - kScale.size()) : done) + " of " + total;
 }
 
 std::string share(const Progress& progress) {
+  if (progress.total <= 0.0) return {};
   // Rounded down: "100 %" is said only of what is finished.
   const double percent = std::floor(100.0 * std::clamp(progress.done / progress.total, 0.0, 1.0));
   return " (" + std::to_string(static_cast<int>(percent)) + " %)";
@@ -33,21 +33,15 @@ std::string share(const Progress& progress) {
 }  // namespace
 
 std::string progress_text(const Progress& progress, std::size_t width) {
-  const std::string phase = printable(progress.phase);
-  std::vector<std::string> versions;
-  std::string text = phase;
-  versions.push_back(text);
-  if (progress.total > 0.0) versions.push_back(text + share(progress));
-  if (progress.done > 0.0 || progress.total > 0.0) text += "  " + amount(progress);
-  versions.push_back(text);
-  if (progress.total > 0.0) text += share(progress);
-  versions.push_back(text);
+  const std::string phase = printable(progress.phase), percent = share(progress);
+  const bool counts = progress.done > 0.0 || progress.total > 0.0;
+  const std::string done = counts ? "  " + amount(progress) : std::string();
+  const std::string unit = counts ? " " + progress.unit : std::string();
+  const std::string rate = progress.per_second > 0.0 ? " · " + rough_count(progress.per_second) + "/s" : std::string();
   const std::string left = progress.seconds_left >= 0.0 ? " · " + duration(progress.seconds_left) + " left" : "";
-  versions.push_back(text + left);
-  const std::string rate = progress.per_second > 0.0 ? " · " + rough_count(progress.per_second) + "/s" : "";
-  versions.push_back(text + rate + left);
-  for (auto version = versions.rbegin(); version != versions.rend(); ++version) {
-    if (display_width(*version) <= width) return *version;
+  for (const std::string& version : {phase + done + unit + percent + rate + left, phase + done + unit + percent + left,
+                                     phase + done + percent + left, phase + percent + left, phase + percent}) {
+    if (display_width(version) <= width) return version;
   }
   return truncated(phase, width);
 }

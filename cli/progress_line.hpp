@@ -11,8 +11,8 @@
 
 namespace formsieve::cli {
 
-/// "screening  2.34 of 5.86 million candidates (40 %) · 12.3 million/s · 3 s left", with parts left out from the right
-/// until it fits into `width` columns.
+/// "screening  2.34 of 5.86 million candidates (40 %) · 12.3 million/s · 3 s left", with parts left
+/// out, the rate first and the time left last, until it fits into `width` columns.
 std::string progress_text(const Progress& progress, std::size_t width);
 
 /// Draws and erases the line. All members may be called from any thread; messages written through it never collide

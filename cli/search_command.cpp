@@ -6,6 +6,9 @@
 #include "failure.hpp"
 #include "help_page.hpp"
 #include "interrupt.hpp"
+#include "numbers.hpp"
+#include "output.hpp"
+#include "page.hpp"
 #include "progress_line.hpp"
 #include "shortlist_view.hpp"
 #include "terminal.hpp"
@@ -39,11 +42,25 @@ Result<run::Plan> settled_plan(const SearchArguments& arguments) {
                "add --response COLUMN; formsieve survey " + source + " lists the columns"};
 }
 
+// A sentence for standard error.
+std::string to_reader(std::string_view sentence) {
+  Page page(look_at(kStandardError));
+  page.prose(sentence);
+  return page.text();
+}
+
+void say_how_far(const pipeline::SearchOutcome& outcome) {
+  const judge::Coverage& space = outcome.shortlist.space;
+  (void)write_all(kStandardError, to_reader("Stopped early: " + grouped(space.scored) + " of " +
+                                            grouped(space.candidates) + " candidates were scored. The run folder " +
+                                            outcome.run_folder + " holds the shortlist of these."));
+}
+
 Result<pipeline::SearchOutcome> run_watched(const run::Plan& plan, const SearchArguments& arguments) {
   const Terminal terminal = look_at(kStandardError);
   ProgressLine line(kStandardError, terminal.is_terminal);
   StopOnSignal signals([&line] {
-    line.message("Stopping: what has been scored so far is examined. Press Ctrl-C again to quit at once.\n");
+    line.message(to_reader("Stopping: what has been scored so far is examined. Press Ctrl-C again to quit at once."));
   });
   pipeline::SearchOptions options;
   options.out = arguments.out;
@@ -62,6 +79,7 @@ int run_search(const SearchArguments& arguments) {
   const Result<pipeline::SearchOutcome> outcome = run_watched(*plan, arguments);
   if (!outcome) return refused(outcome.error(), *plan);
   const int code = outcome->stopped_early ? kStoppedEarly : kDone;
+  if (outcome->stopped_early) say_how_far(*outcome);
   if (arguments.common.json) return write_result(report::shortlist_json(outcome->shortlist), code);
   return write_result(shortlist_page(outcome->shortlist, outcome->run_folder, look_at(kStandardOutput)), code);
 }

@@ -251,8 +251,8 @@ std::string shortlist_page(const judge::Shortlist& shortlist, const std::string&
     page.prose("The shortlist is empty: no candidate could be examined.");
   } else {
     ranking(page, shortlist);
-    named_lines(page, shortlist);
     equation_of(page, *recommended(shortlist));
+    named_lines(page, shortlist);
   }
   sentences(page, "What the ranking shows", shortlist.remarks);
   sentences(page, "How far the search went", extent(shortlist));

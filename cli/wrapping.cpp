@@ -80,8 +80,8 @@ std::vector<std::string> pieces_at(std::string_view text, int depth) {
   std::vector<std::string> pieces(1);
   int open = 0;
   for (std::size_t i = 0; i < text.size(); ++i) {
-    if (text[i] == '(') ++open;
-    if (text[i] == ')') open = std::max(0, open - 1);
+    if (text[i] == '(' || text[i] == '[') ++open;
+    if (text[i] == ')' || text[i] == ']') open = std::max(0, open - 1);
     const bool after_equals = i > 0 && text[i - 1] == '=';
     if (text[i] == ' ' && open <= depth && (after_equals || starts_with_operator(text.substr(i + 1)))) {
       pieces.emplace_back();

@@ -26,7 +26,7 @@ struct RowSet {
   std::vector<std::pair<std::string, std::size_t>>
       dropped;  ///< column → rows dropped, counted at the first missing column in table order
 };
-/// Errors (kind data): no row is complete.
+/// Errors (kind data): no row is complete, a column that does not exist.
 Result<RowSet> complete_rows(const table::Table& table, std::span<const std::string> columns);
 
 struct Predictor {
@@ -88,8 +88,9 @@ struct FoldRequest {
 Result<Folds> make_folds(std::span<const std::size_t> table_rows, const FoldRequest& request);
 
 /// Builds the Gram matrices in fixed blocks of rows, forms on the fly, with a fixed reduction: the same bits for any
-/// number of threads. Cost O(n · order²). Errors (kind data): a form undefined on a row in use, with its label and
-/// table line.
+/// number of threads. Columns without spread, on all rows or on the training rows of a fold, become zeros there. Cost
+/// O(n · order²). Errors (kind data): a form undefined on a row in use, with its label and table row, a response that
+/// is the same on every row, a weight that is not a positive number.
 Result<base::GramSet> build_grams(const Data& data, const Folds& folds, unsigned threads);
 
 }  // namespace formsieve::design

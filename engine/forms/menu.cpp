@@ -27,7 +27,7 @@ bool is_share(const ColumnFacts& facts) {
   return inside && facts.lower_bound.value_or(0.0) >= 0.0 && facts.upper_bound.value_or(1.0) <= 1.0;
 }
 
-/// "strongly", … as an adverb of skewness.
+/// "severely skewed to the right" and the like.
 std::string skew_words(const ColumnFacts& facts) {
   const std::string side = facts.skewness < 0.0 ? " skewed to the left" : " skewed to the right";
   switch (skew_class(facts.skewness)) {
@@ -50,9 +50,11 @@ std::string rung_why(const std::string& what, SkewClass usual, const ColumnFacts
 }
 
 void add_positive(std::vector<MenuEntry>& wanted, const ColumnFacts& facts) {
+  const bool zero_allowed = facts.lower_bound && *facts.lower_bound <= 0.0 && std::isfinite(*facts.lower_bound);
+  const std::string caution = zero_allowed ? "; new rows at 0, which the declared bounds allow, cannot be scored" : "";
   wanted.push_back({plain(Kind::sqrt), rung_why("positive column", SkewClass::mild, facts)});
-  wanted.push_back({plain(Kind::ln), rung_why("positive column", SkewClass::moderate, facts)});
-  wanted.push_back({plain(Kind::reciprocal), rung_why("positive column", SkewClass::severe, facts)});
+  wanted.push_back({plain(Kind::ln), rung_why("positive column", SkewClass::moderate, facts) + caution});
+  wanted.push_back({plain(Kind::reciprocal), rung_why("positive column", SkewClass::severe, facts) + caution});
 }
 
 void add_with_zeros(std::vector<MenuEntry>& wanted, Menu& menu, const ColumnFacts& facts) {

@@ -7,6 +7,7 @@
 #include "search/tree.hpp"
 
 #include <algorithm>
+#include <atomic>
 #include <cassert>
 #include <memory>
 #include <mutex>
@@ -22,6 +23,10 @@ class Workers {
       : tree_(tree), root_(root), options_(options) {}
 
   void walk(const Path& path) {
+    if (options_.stop.stop_requested()) {
+      stopped_ = true;
+      return;
+    }
     SubtreeWalker* const walker = take();
     if (walker->enter(path)) walker->walk();
     const std::scoped_lock lock(mutex_);
@@ -29,6 +34,8 @@ class Workers {
   }
 
   const std::vector<std::unique_ptr<SubtreeWalker>>& all() const { return all_; }
+  /// True when a part was left out because a stop was requested.
+  bool stopped() const { return stopped_; }
 
  private:
   SubtreeWalker* take() {
@@ -45,6 +52,7 @@ class Workers {
   const Tree& tree_;
   const Root& root_;
   const WalkOptions& options_;
+  std::atomic<bool> stopped_ = false;
   std::mutex mutex_;
   std::vector<std::unique_ptr<SubtreeWalker>> all_;
   std::vector<SubtreeWalker*> idle_;
@@ -86,6 +94,7 @@ WalkResult walk(const Space& space, const base::GramSet& grams, const WalkOption
   base::parallel_for(parts.size(), options.threads, [&](std::size_t i) { workers.walk(parts[i]); });
 
   WalkResult result;
+  result.complete = !workers.stopped();
   for (const auto& walker : workers.all()) {
     result.n_scored += walker->n_scored();
     result.n_inseparable += walker->n_inseparable();

@@ -61,7 +61,8 @@ struct WalkResult {
 /// interior node; nothing depends on the number of rows.
 WalkResult walk(const Space& space, const base::GramSet& grams, const WalkOptions& options);
 
-/// Candidates scored per second on a thread, from a walk over a sample of subtrees for about `seconds`.
+/// Candidates done with per second on a thread, those found inseparable included, from a walk over subtrees spread
+/// evenly over the space for about `seconds` (at least one subtree). Any space, however large.
 double calibrate(const Space& space, const base::GramSet& grams, const WalkOptions& options, double seconds);
 
 }  // namespace formsieve::search

@@ -126,8 +126,7 @@ class Watcher {
       due_ = Clock::now() + setting_.signal_after;
     }
     if (Clock::now() < *due_) return;
-    kill(child_, setting_.signals[n_sent_++]);
-    due_ = Clock::now() + setting_.signal_after;
+    while (n_sent_ < setting_.signals.size()) kill(child_, setting_.signals[n_sent_++]);
   }
 
   pid_t child_;

@@ -20,8 +20,8 @@ struct Setting {
   std::string folder;                    ///< working directory; empty: as it is
   enum class Stream { pipe, terminal, full, closed, read_once } out = Stream::pipe;  ///< standard output
   bool err_is_terminal = false;
-  /// Signals sent to the program, each `signal_after` later than the one before, the first counted from the moment at
-  /// which `signal_when` appears on standard error.
+  /// Signals sent to the program, one directly after the other, `signal_after` from the moment at which `signal_when`
+  /// appears on standard error.
   std::vector<int> signals;
   std::string signal_when;
   std::chrono::milliseconds signal_after{300};

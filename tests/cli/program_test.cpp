@@ -257,3 +257,47 @@ TEST_CASE("cli: a terminal gets colour unless NO_COLOR is set, a pipe never", "[
   CHECK_FALSE(has(run_formsieve(arguments, terminal).out, "\x1b"));
   CHECK_FALSE(has(run_formsieve(arguments).out, "\x1b"));
 }
+
+TEST_CASE("cli: a signal stops a search early with a usable run folder and exit code 4", "[cli][unit]") {
+  const Folder folder;
+  folder.write("endless.csv", endless_csv());
+  Setting interrupted;
+  interrupted.signals = {SIGINT};
+  interrupted.signal_when = "candidates: ";
+  interrupted.signal_after = std::chrono::milliseconds(1500);
+  interrupted.err_is_terminal = true;
+  interrupted.environment = {"TERM=xterm", "COLUMNS=80"};
+  const Outcome outcome = run_formsieve(
+      {"search", folder.file("endless.csv"), "--response", "y", "--budget", "3000d", "--out", folder.file("a.run")},
+      interrupted);
+  CHECK(outcome.exit_code == 4);
+  CHECK(has(outcome.out, "scored before the search was stopped"));
+  CHECK(has(outcome.err, "Press Ctrl-C again"));
+  CHECK(has(outcome.err, "Stopped early: "));
+  CHECK(has(outcome.err, "\x1b[2Kscreening"));  // the progress line, after a second
+  const std::size_t last_line = outcome.err.rfind("\x1b[2K");
+  CHECK_FALSE(has(outcome.err.substr(last_line), "screening"));  // and nothing of it left
+  CHECK(run_formsieve({"show", folder.file("a.run"), "1"}).exit_code == 0);
+}
+
+TEST_CASE("cli: a second signal ends the program at once", "[cli][unit]") {
+  const Folder folder;
+  folder.write("endless.csv", endless_csv());
+  Setting impatient;
+  impatient.signals = {SIGINT, SIGTERM};
+  impatient.signal_when = "candidates: ";
+  impatient.signal_after = std::chrono::milliseconds(100);
+  const Outcome outcome = run_formsieve(
+      {"search", folder.file("endless.csv"), "--response", "y", "--budget", "3000d", "--out", folder.file("a.run")},
+      impatient);
+  CHECK(outcome.exit_code == 130);
+  CHECK(outcome.out.empty());
+}
+
+TEST_CASE("cli: a space too large for the budget is refused before it starts", "[cli][unit]") {
+  const Folder folder;
+  folder.write("endless.csv", endless_csv());
+  check_error(run_formsieve({"search", folder.file("endless.csv"), "--response", "y", "--budget", "1s", "--out",
+                             folder.file("a.run")}),
+              2, "", "max_terms");
+}

@@ -57,7 +57,8 @@ TEST_CASE("cli: progress says phase, amount, share, rate and time left", "[cli][
 
 TEST_CASE("cli: progress loses its lesser parts first when the screen is narrow", "[cli][unit]") {
   CHECK(progress_text(screening(), 70) == "screening  2.34 of 5.86 million candidates (40 %) · 3.2 s left");
-  CHECK(progress_text(screening(), 50) == "screening  2.34 of 5.86 million candidates (40 %)");
+  CHECK(progress_text(screening(), 54) == "screening  2.34 of 5.86 million (40 %) · 3.2 s left");
+  CHECK(progress_text(screening(), 40) == "screening (40 %) · 3.2 s left");
   CHECK(progress_text(screening(), 20) == "screening (40 %)");
   CHECK(progress_text(screening(), 12) == "screening");
   CHECK(progress_text(screening(), 5) == "scre…");

@@ -33,4 +33,20 @@ inline std::string stores_csv() {
   return text;
 }
 
+/// A table whose default search takes hours on any machine: 60 rows, 16 positive predictors.
+inline std::string endless_csv() {
+  std::string text = "y";
+  for (int j = 1; j <= 16; ++j) text += ",x" + std::to_string(j);
+  text += "\n";
+  for (int i = 0; i < 60; ++i) {
+    for (int j = 0; j <= 16; ++j) {
+      char cell[32];
+      std::snprintf(cell, sizeof cell, "%s%.3f", j == 0 ? "" : ",", std::exp(2.0 * spread_out(i, j)));
+      text += cell;
+    }
+    text += "\n";
+  }
+  return text;
+}
+
 }  // namespace formsieve::cli::testing

@@ -52,6 +52,10 @@ TEST_CASE("forms: a positive column gets identity, sqrt, ln and reciprocal", "[f
   CHECK(menu.entries[2].why.find("common practice") != std::string::npos);  // moderate: ln first
   CHECK(menu.entries[1].why.find("common practice") == std::string::npos);
   CHECK(labels(default_menu(facts_of(2, 9, 0.1), 5)) == Labels{"x", "√(x)", "ln(x)", "1/x"});
+  ColumnFacts bounded = facts_of(2, 9, 0.1);
+  CHECK(default_menu(bounded, 5).entries[2].why.find("cannot be scored") == std::string::npos);
+  bounded.lower_bound = 0.0;  // zeros may come, though none was seen
+  CHECK(default_menu(bounded, 5).entries[2].why.find("cannot be scored") != std::string::npos);
 }
 
 TEST_CASE("forms: zeros admit sqrt and a shifted ln, and the rest is said with its repair", "[forms][unit]") {
