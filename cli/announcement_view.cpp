@@ -5,6 +5,9 @@
 
 namespace formsieve::cli {
 
+/// Below it duration() says "less than", which takes no "about".
+constexpr double kShortestSaid = 0.05;
+
 std::string announcement_text(const pipeline::Announcement& announcement, const Terminal& terminal) {
   Page page(terminal);
   std::string rows = counted(announcement.rows_used, "row");
@@ -15,8 +18,8 @@ std::string announcement_text(const pipeline::Announcement& announcement, const 
   if (announcement.repeats > 1) folds += " dealt " + std::to_string(announcement.repeats) + " times";
   page.prose(grouped(announcement.candidates) + " candidates: " + counted(announcement.n_responses, "response form") +
              " × " + counted(announcement.n_predictors, "predictor") + " with " +
-             counted(announcement.n_forms, "form") + "; " + rows + "; " + folds + "; about " +
-             duration(announcement.seconds_estimate));
+             counted(announcement.n_forms, "form") + "; " + rows + "; " + folds + "; " +
+             (announcement.seconds_estimate < kShortestSaid ? "" : "about ") + duration(announcement.seconds_estimate));
   for (const std::string& note : announcement.notes) page.note(note);
   return page.text();
 }

@@ -171,9 +171,8 @@ Examined Examiner::score(const search::Choice& choice, const search::BigCount& n
   held.n_folds = prepared_.folds.count;
   for (const auto& fold_of : prepared_.folds.fold_of) held.fold_of.emplace_back(fold_of);
   candidate.cv = judge::cross_validation(held);
-  candidate.back.corrections = {
-      backtransform::judged("none", 1.0, prediction->naive_own, prepared_.data.response),
-      backtransform::judged("smearing", 1.0, prediction->mean_own, prepared_.data.response)};
+  candidate.back.corrections = {backtransform::judged("none", 1.0, prediction->naive_own, prepared_.data.response),
+                                backtransform::judged("smearing", 1.0, prediction->mean_own, prepared_.data.response)};
   examined.candidate = std::move(candidate);
   return examined;
 }

@@ -12,6 +12,9 @@ namespace {
 /// data is worth a sentence).
 constexpr double kManyRowsDropped = 0.10;
 
+/// An intercept, a slope and one degree of freedom for the residual.
+constexpr std::size_t kFewestRows = 3;
+
 /// Keeps only the given rows, in place.
 void keep_rows(table::Table& table, const std::vector<std::size_t>& rows) {
   if (rows.size() == table.n_rows) return;
@@ -121,6 +124,12 @@ Status choose_rows(Prepared& prepared, const Roles& roles) {
 
 Status check_values(const Prepared& prepared, const Roles& roles) {
   const table::Column& response = prepared.table.columns[roles.response];
+  if (response.numbers.size() < kFewestRows)
+    return Error{ErrorKind::data,
+                 "only " + std::to_string(response.numbers.size()) + " of " +
+                     std::to_string(prepared.summary.rows_read) + " rows are complete; a search needs at least " +
+                     std::to_string(kFewestRows),
+                 prepared.table.source, "ignore columns that are often missing (data.ignore, --ignore), or add rows"};
   const auto [low, high] = std::minmax_element(response.numbers.begin(), response.numbers.end());
   if (*low == *high)
     return Error{ErrorKind::data,

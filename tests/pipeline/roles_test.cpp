@@ -61,6 +61,14 @@ TEST_CASE("pipeline: weights that are not positive name their line", "[pipeline]
   CHECK_THAT(error.where, Catch::Contains("line 4"));
 }
 
+TEST_CASE("pipeline: fewer than three complete rows are refused with their number", "[pipeline][unit]") {
+  const TemporaryFolder folder;
+  const std::string file = folder.write("gaps.csv", "y,a\n1,2\n2,3\n3,\n,5\n");
+  const Error error = failure(plan_for(file, "y"), folder);
+  CHECK(error.kind == ErrorKind::data);
+  CHECK_THAT(error.message, Catch::Contains("only 2 of 4 rows are complete"));
+}
+
 TEST_CASE("pipeline: one column cannot have two roles", "[pipeline][unit]") {
   const TemporaryFolder folder;
   run::Plan plan = plan_for(folder.write("t.csv", kTable), "y");
