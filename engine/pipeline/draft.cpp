@@ -1,5 +1,6 @@
 #include <formsieve/pipeline.hpp>
 
+#include "pipeline/guarded.hpp"
 #include "pipeline/draft_text.hpp"
 #include "pipeline/estimate.hpp"
 
@@ -46,7 +47,9 @@ void limit_terms(DraftFindings& findings, const search::Space& space) {
 
 }  // namespace
 
-Result<std::string> draft(const run::Plan& plan, unsigned threads) {
+namespace {
+
+Result<std::string> draft_plan(const run::Plan& plan, unsigned threads) {
   auto table = load_table(plan, threads);
   if (!table) return table.error();
   DraftFindings findings;
@@ -64,6 +67,12 @@ Result<std::string> draft(const run::Plan& plan, unsigned threads) {
   findings.set_aside = set_aside(*prepared, *roles, hopeless);
   limit_terms(findings, prepared->space);
   return draft_text(plan, *prepared, findings);
+}
+
+}  // namespace
+
+Result<std::string> draft(const run::Plan& plan, unsigned threads) {
+  return guarded(plan.data.file, [&] { return draft_plan(plan, threads); });
 }
 
 }  // namespace formsieve::pipeline

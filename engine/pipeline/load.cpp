@@ -3,6 +3,7 @@
 #include <formsieve/report.hpp>
 #include <formsieve/table.hpp>
 
+#include "pipeline/guarded.hpp"
 #include "run/folder.hpp"
 
 #include <filesystem>
@@ -37,7 +38,9 @@ Result<table::Table> load_table(const run::Plan& plan, unsigned threads) {
   return table::read_csv(path, csv_options(plan, threads));
 }
 
-Result<survey::Survey> survey(const run::Plan& plan, unsigned threads) {
+namespace {
+
+Result<survey::Survey> profile_table(const run::Plan& plan, unsigned threads) {
   const auto loaded = load_table(plan, threads);
   if (!loaded) return loaded.error();
   survey::Options options;
@@ -45,7 +48,14 @@ Result<survey::Survey> survey(const run::Plan& plan, unsigned threads) {
   options.rare_level_count = plan.data.rare_levels;
   options.ignore = plan.data.ignore;
   options.response = plan.data.response;
+  options.threads = threads;
   return survey::profile(*loaded, options);
+}
+
+}  // namespace
+
+Result<survey::Survey> survey(const run::Plan& plan, unsigned threads) {
+  return guarded(plan.data.file, [&] { return profile_table(plan, threads); });
 }
 
 Result<judge::Shortlist> open_run(const std::string& run_folder) {

@@ -78,14 +78,15 @@ std::string pool_words(const Prepared& prepared, const run::Plan& plan, std::siz
 std::string margin_words(const Prepared& prepared, const search::WalkResult& walked,
                          const std::vector<search::Scored>& pool) {
   if (walked.n_scored <= pool.size()) return "every candidate that was scored is in the pool";
+  std::set<search::BigCount> pooled;
+  for (const auto& scored : pool) pooled.insert(scored.number);
   std::string words;
   for (std::size_t r = 0; r < prepared.data.response_forms.size(); ++r) {
     const auto& list = walked.lists.front()[r];
     if (list.empty()) continue;
     double last = list.front().cv_sse;
     for (const auto& scored : list)
-      if (std::any_of(pool.begin(), pool.end(), [&](const auto& pooled) { return pooled.number == scored.number; }))
-        last = scored.cv_sse;
+      if (pooled.contains(scored.number)) last = scored.cv_sse;
     const double behind = std::sqrt(last / list.front().cv_sse) - 1.0;
     words += (words.empty() ? "" : ", ") + percent(behind) + " for " +
              forms::term_name(prepared.data.response_forms[r], prepared.summary.response);

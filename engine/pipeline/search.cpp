@@ -5,6 +5,7 @@
 #include "judge/judge.hpp"
 #include "pipeline/estimate.hpp"
 #include "pipeline/examine.hpp"
+#include "pipeline/guarded.hpp"
 #include "pipeline/meter.hpp"
 #include "pipeline/outputs.hpp"
 #include "pipeline/pool.hpp"
@@ -297,12 +298,7 @@ Result<SearchOutcome> Search::run() {
 }  // namespace
 
 Result<SearchOutcome> search(const run::Plan& plan, const SearchOptions& options, std::stop_token stop) {
-  try {
-    return Search(plan, options, std::move(stop)).run();
-  } catch (const std::bad_alloc&) {
-    return Error{ErrorKind::data, "there is not enough memory for this table and these menus", plan.data.file,
-                 "use fewer forms or predictors, or a machine with more memory"};
-  }
+  return guarded(plan.data.file, [&] { return Search(plan, options, std::move(stop)).run(); });
 }
 
 }  // namespace formsieve::pipeline

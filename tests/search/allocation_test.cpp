@@ -9,17 +9,21 @@
 #include <limits>
 #include <new>
 
+// The sanitizers bring their own operators and check that they are used in pairs.
+#if !defined(__SANITIZE_ADDRESS__) && !defined(__SANITIZE_THREAD__)
+
 namespace {
 std::atomic<std::size_t> n_allocations = 0;
 }  // namespace
 
-void* operator new(std::size_t size) {
+// Not inlined, since the compiler would then see memory of `new` given to `free`, and warn.
+[[gnu::noinline]] void* operator new(std::size_t size) {
   ++n_allocations;
   if (void* const memory = std::malloc(size == 0 ? 1 : size)) return memory;
   throw std::bad_alloc();
 }
-void operator delete(void* memory) noexcept { std::free(memory); }
-void operator delete(void* memory, std::size_t) noexcept { std::free(memory); }
+[[gnu::noinline]] void operator delete(void* memory) noexcept { std::free(memory); }
+[[gnu::noinline]] void operator delete(void* memory, std::size_t) noexcept { std::free(memory); }
 
 using namespace formsieve;
 
@@ -46,3 +50,5 @@ TEST_CASE("search: a walker allocates nothing while it walks", "[search][unit]")
   CHECK(after == before);
   CHECK(walker.n_scored() == search::count(problem.space).convert_to<std::uint64_t>());
 }
+
+#endif

@@ -66,7 +66,7 @@ TEST_CASE("table: the dialect of random tables is found out", "[table][property]
   }
 }
 
-TEST_CASE("table: a table does not depend on blocks and threads", "[table][property]") {
+TEST_CASE("table: a table does not depend on blocks and threads", "[table][property][parallel]") {
   std::mt19937_64 random(13);
   for (int i = 0; i < 60; ++i) {
     const RandomText table = random_text(random, 1 + random() % 40);

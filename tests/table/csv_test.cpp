@@ -134,6 +134,15 @@ TEST_CASE("table: a column without any value is numeric and all missing", "[tabl
   CHECK(table.columns[1].numbers.size() == 2);
 }
 
+TEST_CASE("table: a last cell that is empty at the very end of the file is a missing value", "[table][unit]") {
+  for (const char* text : {"x,y\n1,2\n3,", "x,y\n1,2\n3,\n", "x,y\r\n1,2\r\n3,\r\n", "x,y\n1,2\n3,\"\""}) {
+    const Table table = read_valid(text);
+    CHECK(table.n_rows == 2);
+    CHECK(table.columns[0].numbers == Numbers{1, 3});
+    CHECK(table.columns[1].n_missing == 1);
+  }
+}
+
 TEST_CASE("table: a row of separators alone is a row of missing values", "[table][unit]") {
   const Table table = read_valid("x,y\n1,2\n,\n3,4\n");
   CHECK(table.n_rows == 3);
