@@ -71,7 +71,7 @@ if [ "$full" = yes ]; then
   build asan
   run_tests asan -LE slow
   build tsan table_test design_test search_test pipeline_test   # the programs that hold tests tagged [parallel]
-  TSAN_OPTIONS="suppressions=$root/tests/tsan.txt${TSAN_OPTIONS:+ $TSAN_OPTIONS}" run_tests tsan -L parallel
+  run_tests tsan -L parallel
 fi
 
 echo "$passed passed, $failed failed"

@@ -5,9 +5,14 @@
 #include <tbb/task_arena.h>
 
 #include <algorithm>
+#include <atomic>
 #include <cmath>
+#include <exception>
 #include <fstream>
+#include <mutex>
 #include <string>
+#include <thread>
+#include <vector>
 
 namespace formsieve::base {
 
@@ -38,12 +43,33 @@ unsigned available_threads() {
   return static_cast<unsigned>(std::max(1.0, std::min<double>(by_affinity, by_quota)));
 }
 
-void parallel_for(std::size_t n, unsigned threads, const std::function<void(std::size_t)>& body) {
-  const unsigned workers = threads == 0 ? available_threads() : threads;
-  if (workers == 1 || n <= 1) {
-    for (std::size_t i = 0; i < n; ++i) body(i);
-    return;
-  }
+namespace {
+
+#if defined(__SANITIZE_THREAD__)
+
+/// Debian's oneTBB is not compiled for the thread sanitizer, which then takes the library's own hand-overs for races.
+/// Under it plain threads do the same work, so that what is checked is our code.
+void run_on(unsigned workers, std::size_t n, const std::function<void(std::size_t)>& body) {
+  std::atomic<std::size_t> next{0};
+  std::mutex failing;
+  std::exception_ptr failure;
+  const auto work = [&] {
+    try {
+      for (std::size_t i = next++; i < n; i = next++) body(i);
+    } catch (...) {
+      const std::lock_guard lock(failing);
+      failure = std::current_exception();
+    }
+  };
+  std::vector<std::thread> threads;
+  for (unsigned t = 0; t < workers; ++t) threads.emplace_back(work);
+  for (std::thread& thread : threads) thread.join();
+  if (failure) std::rethrow_exception(failure);
+}
+
+#else
+
+void run_on(unsigned workers, std::size_t n, const std::function<void(std::size_t)>& body) {
   tbb::task_arena arena(static_cast<int>(workers));
   arena.execute([&] {
     tbb::parallel_for(
@@ -53,6 +79,19 @@ void parallel_for(std::size_t n, unsigned threads, const std::function<void(std:
         },
         tbb::simple_partitioner());
   });
+}
+
+#endif
+
+}  // namespace
+
+void parallel_for(std::size_t n, unsigned threads, const std::function<void(std::size_t)>& body) {
+  const unsigned workers = threads == 0 ? available_threads() : threads;
+  if (workers == 1 || n <= 1) {
+    for (std::size_t i = 0; i < n; ++i) body(i);
+  } else {
+    run_on(workers, n, body);
+  }
 }
 
 }  // namespace formsieve::base

@@ -16,6 +16,9 @@ TEST_CASE("cli: every kind of failure has its exit code", "[cli][unit]") {
   CHECK(code(ErrorKind::plan, "plan.toml:3:1", false) == 2);
   CHECK(code(ErrorKind::data, "stores.csv, line 7", false) == 3);
   CHECK(code(ErrorKind::io, "stores.csv", false) == 3);
+  CHECK(code(ErrorKind::io, "plans/stores.csv, line 7", false) == 3);
+  CHECK(code(ErrorKind::io, "stores.csv.run", false) == 1);
+  CHECK(code(ErrorKind::io, "old_stores.csv", false) == 1);
   CHECK(code(ErrorKind::io, "stores.run", true) == 2);
   CHECK(code(ErrorKind::io, "stores.run", false) == 1);
   CHECK(code(ErrorKind::internal, "", false) == 1);
