@@ -53,14 +53,14 @@ int run_draft(const DraftArguments& arguments) {
   OutputFile file;
   if (arguments.out) {
     Result<OutputFile> opened = OutputFile::open(*arguments.out, arguments.replace);
-    if (!opened) return refused(opened.error(), plan);
+    if (!opened) return refused(opened.error(), {});
     file = std::move(*opened);
   }
   settle_names(arguments.out, plan);
   const Result<std::string> text = pipeline::draft(plan, arguments.common.threads);
   if (!text) return refused(text.error(), plan);
   if (arguments.out) {
-    if (const Status written = file.finish(*text); !written) return refused(written.error(), plan);
+    if (const Status written = file.finish(*text); !written) return refused(written.error(), {});
     const std::string next = "formsieve search " + shell_word(*arguments.out);
     (void)write_all(kStandardError, "The plan is in " + *arguments.out + ". Edit it, then type\n  " + next + "\n");
   }

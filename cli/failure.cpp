@@ -19,6 +19,18 @@ std::string part(const std::string& label, Tone tone, const std::string& text, b
   return indented(wrapped(text, width - hanging.size()), first, hanging);
 }
 
+// True when `where` speaks of the file: "stores.csv", "plans/stores.csv, line 7", not "stores.csv.run".
+bool names_file(const std::string& where, const std::string& file) {
+  if (file.empty()) return false;
+  for (std::size_t at = where.find(file); at != std::string::npos; at = where.find(file, at + 1)) {
+    const std::size_t end = at + file.size();
+    const bool starts_name = at == 0 || where[at - 1] == '/';
+    const bool ends_name = end == where.size() || where[end] == ',' || where[end] == ':';
+    if (starts_name && ends_name) return true;
+  }
+  return false;
+}
+
 }  // namespace
 
 int exit_code_of(const Error& error, const std::string& data_file, bool named_input) {
@@ -29,7 +41,7 @@ int exit_code_of(const Error& error, const std::string& data_file, bool named_in
     case ErrorKind::data:
       return kBadData;
     case ErrorKind::io:
-      if (!data_file.empty() && error.where.find(data_file) != std::string::npos) return kBadData;
+      if (names_file(error.where, data_file)) return kBadData;
       return named_input ? kBadUsage : kUnexpected;
     case ErrorKind::internal:
       break;
@@ -53,8 +65,7 @@ void print_error(const Error& error, const std::string& settings) {
 }
 
 int refused(const Error& error, const run::Plan& plan, bool named_input) {
-  const bool about_table =
-      error.kind == ErrorKind::data && !plan.data.file.empty() && error.where.find(plan.data.file) != std::string::npos;
+  const bool about_table = error.kind == ErrorKind::data && names_file(error.where, plan.data.file);
   print_error(error, about_table ? settings_in_force(plan) : std::string());
   return exit_code_of(error, plan.data.file, named_input);
 }

@@ -57,8 +57,7 @@ void say_how_far(const pipeline::SearchOutcome& outcome) {
 }
 
 Result<pipeline::SearchOutcome> run_watched(const run::Plan& plan, const SearchArguments& arguments) {
-  const Terminal terminal = look_at(kStandardError);
-  ProgressLine line(kStandardError, terminal.is_terminal);
+  ProgressLine line(kStandardError, look_at(kStandardError).erases);
   StopOnSignal signals([&line] {
     line.message(to_reader("Stopping: what has been scored so far is examined. Press Ctrl-C again to quit at once."));
   });

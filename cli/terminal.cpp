@@ -93,7 +93,8 @@ Terminal look_at(int descriptor) {
   terminal.is_terminal = isatty(descriptor) == 1;
   const char* kind = std::getenv("TERM");
   const bool dumb = kind != nullptr && std::string_view(kind) == "dumb";
-  terminal.colour = terminal.is_terminal && !dumb && !is_set("NO_COLOR");
+  terminal.erases = terminal.is_terminal && !dumb;
+  terminal.colour = terminal.erases && !is_set("NO_COLOR");
   terminal.width = width_of(descriptor);
   return terminal;
 }

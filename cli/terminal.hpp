@@ -10,6 +10,7 @@ namespace formsieve::cli {
 /// The device behind a stream, looked at when something is about to be drawn.
 struct Terminal {
   bool is_terminal = false;
+  bool erases = false;     ///< a terminal, not a dumb one: a line written on it can be taken back
   bool colour = false;     ///< a terminal, not a dumb one, and NO_COLOR is unset or empty
   std::size_t width = 80;  ///< columns
 };

@@ -70,7 +70,7 @@ if [ "$full" = yes ]; then
   note "the demo runs" env FORMSIEVE_DEMO_RUN="$build_root/demo-check.run" sh "$root/demo-data/run.sh"
   build asan
   run_tests asan -LE slow
-  build tsan table_test design_test search_test pipeline_test   # the programs that hold tests tagged [parallel]
+  build tsan design_test search_test   # where threads share memory: the Gram matrices and the walk
   run_tests tsan -L parallel
 fi
 
