@@ -6,8 +6,9 @@ namespace formsieve::pipeline {
 
 namespace {
 
-forms::Request request_of(const run::FormEntry& entry) {
+forms::Request request_of(const run::FormEntry& entry, std::size_t rare_levels) {
   forms::Request request;
+  request.rare_level_count = rare_levels;
   request.form = entry.form;
   request.parameters = entry.parameters;
   request.reflect = entry.reflect;
@@ -20,13 +21,13 @@ forms::Request request_of(const run::FormEntry& entry) {
 /// The plan's entries settled for one column. `lenient`: a form that does not suit this kind of column at all is passed
 /// over (the list was written for every predictor).
 Result<std::vector<forms::MenuEntry>> settle_all(const std::vector<run::FormEntry>& entries,
-                                                 const forms::ColumnFacts& facts, bool lenient,
-                                                 const std::string& key) {
+                                                 const forms::ColumnFacts& facts, bool lenient, const std::string& key,
+                                                 std::size_t rare_levels) {
   std::vector<forms::MenuEntry> wanted;
   for (const auto& entry : entries) {
     const bool is_levels = entry.form == "levels";
     if (lenient && is_levels != facts.text) continue;
-    auto form = forms::settle(request_of(entry), facts);
+    auto form = forms::settle(request_of(entry, rare_levels), facts);
     if (!form) {
       Error error = form.error();
       if (error.where.empty()) error.where = entry.where;
@@ -63,7 +64,7 @@ Result<forms::Menu> menu_of(const run::Plan& plan, const forms::ColumnFacts& fac
   } else {
     const bool lenient = own == plan.forms.of.end();
     auto wanted = settle_all(lenient ? *plan.forms.default_menu : own->second, facts, lenient,
-                             lenient ? "forms.default" : "forms.of." + facts.name);
+                             lenient ? "forms.default" : "forms.of." + facts.name, plan.data.rare_levels);
     if (!wanted) return wanted.error();
     if (lenient && wanted->empty())
       menu = forms::default_menu(facts, plan.data.rare_levels);
@@ -92,7 +93,7 @@ Status build_response(Prepared& prepared, const Roles& roles, const run::Plan& p
   const forms::ColumnFacts& facts = profile_of(prepared.survey, prepared.table.columns[roles.response].name).facts;
   forms::Menu menu;
   if (plan.forms.response) {
-    auto wanted = settle_all(*plan.forms.response, facts, false, "forms.response");
+    auto wanted = settle_all(*plan.forms.response, facts, false, "forms.response", plan.data.rare_levels);
     if (!wanted) return wanted.error();
     menu.entries = std::move(*wanted);
   } else {

@@ -186,4 +186,20 @@ TEST_CASE("pipeline: required checks set failing candidates aside", "[pipeline][
       if (check.at("check") == "straightness") CHECK(check.at("passes").get<bool>());
 }
 
+TEST_CASE("pipeline: rare levels are pooled alike by the default menu and by a listed one", "[pipeline][unit]") {
+  const TemporaryFolder folder;
+  std::string text = "y,site\n";
+  for (int i = 0; i < 40; ++i)
+    text += std::to_string(10 + i % 7 + (i * i) % 5) + "," +
+            (i < 20   ? "north"
+             : i < 36 ? "south"
+             : i < 38 ? "east"
+                      : "west") +
+            "\n";
+  run::Plan plan = plan_for(folder.write("sites.csv", text), "y");
+  const json by_default = search_json(plan, folder);
+  plan.forms.of["site"] = {form_entry("levels")};
+  CHECK(search_json(plan, folder).at("menus") == by_default.at("menus"));
+}
+
 }  // namespace formsieve::test
