@@ -1,5 +1,6 @@
 #include "base/parallel.hpp"
 
+#include <tbb/global_control.h>
 #include <tbb/info.h>
 #include <tbb/parallel_for.h>
 #include <tbb/task_arena.h>
@@ -70,6 +71,8 @@ void run_on(unsigned workers, std::size_t n, const std::function<void(std::size_
 #else
 
 void run_on(unsigned workers, std::size_t n, const std::function<void(std::size_t)>& body) {
+  // without it more threads than processors would be refused, with a warning on standard error
+  const tbb::global_control allowed(tbb::global_control::max_allowed_parallelism, workers);
   tbb::task_arena arena(static_cast<int>(workers));
   arena.execute([&] {
     tbb::parallel_for(

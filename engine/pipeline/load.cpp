@@ -4,6 +4,7 @@
 #include <formsieve/table.hpp>
 
 #include "pipeline/guarded.hpp"
+#include "pipeline/prepare.hpp"
 #include "run/folder.hpp"
 
 #include <filesystem>
@@ -11,13 +12,6 @@
 namespace formsieve::pipeline {
 
 namespace {
-
-/// A data file named in a plan is looked up beside the plan.
-std::string beside_plan(const run::Plan& plan) {
-  const std::filesystem::path file(plan.data.file);
-  if (plan.path.empty() || file.is_absolute()) return plan.data.file;
-  return (std::filesystem::path(plan.path).parent_path() / file).string();
-}
 
 table::CsvOptions csv_options(const run::Plan& plan, unsigned threads) {
   table::CsvOptions options;
@@ -32,8 +26,14 @@ table::CsvOptions csv_options(const run::Plan& plan, unsigned threads) {
 
 }  // namespace
 
+std::string data_path(const run::Plan& plan) {
+  const std::filesystem::path file(plan.data.file);
+  if (plan.path.empty() || file.is_absolute()) return plan.data.file;
+  return (std::filesystem::path(plan.path).parent_path() / file).string();
+}
+
 Result<table::Table> load_table(const run::Plan& plan, unsigned threads) {
-  const std::string path = beside_plan(plan);
+  const std::string path = data_path(plan);
   if (plan.data.query) return table::read_sqlite(path, *plan.data.query);
   return table::read_csv(path, csv_options(plan, threads));
 }

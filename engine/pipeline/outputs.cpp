@@ -5,7 +5,9 @@
 #include <spdlog/sinks/basic_file_sink.h>
 #include <spdlog/spdlog.h>
 
+#include <filesystem>
 #include <span>
+#include <system_error>
 
 namespace formsieve::pipeline {
 
@@ -15,6 +17,18 @@ std::vector<std::size_t> lines_of(const table::Table& table) {
   std::vector<std::size_t> lines(table.n_rows);
   for (std::size_t i = 0; i < lines.size(); ++i) lines[i] = i < table.line_of_row.size() ? table.line_of_row[i] : i + 1;
   return lines;
+}
+
+/// The plan as it must read in `folder` to find its table: the name made relative to the folder, so that both can move
+/// together, or absolute where there is no such way.
+run::Plan seen_from(const std::string& folder, run::Plan plan) {
+  namespace fs = std::filesystem;
+  std::error_code failure;
+  const fs::path data = fs::absolute(data_path(plan), failure);
+  if (failure) return plan;
+  const fs::path relative = fs::relative(data, folder, failure);
+  plan.data.file = failure || relative.empty() ? data.string() : relative.generic_string();
+  return plan;
 }
 
 }  // namespace
@@ -43,7 +57,8 @@ Result<std::unique_ptr<Outputs>> Outputs::open(const std::string& path, bool rep
 }
 
 Status Outputs::write_inputs(const Prepared& prepared, const run::Plan& plan) {
-  if (auto status = folder_.write(run::kPlanFile, run::write_plan(plan)); !status) return status;
+  if (auto status = folder_.write(run::kPlanFile, run::write_plan(seen_from(folder_.path(), plan))); !status)
+    return status;
   if (auto status = folder_.write(run::kSurveyFile, report::survey_json(prepared.survey)); !status) return status;
   const std::vector<std::size_t> lines = lines_of(prepared.table);
   std::vector<std::span<const std::uint32_t>> folds(prepared.folds.fold_of.begin(), prepared.folds.fold_of.end());

@@ -39,6 +39,9 @@ struct Prepared {
   std::vector<int> direction;      ///< [predictors] +1 rising, −1 falling, 0 undeclared
 };
 
+/// Where the table of a plan is: a relative name is looked up beside the plan.
+std::string data_path(const run::Plan& plan);
+
 /// Errors: an unknown column (kind plan, nearest name), a response that is not numeric or is constant, weights that are
 /// not positive, no complete rows, no predictor left, no response form possible, a form undefined on the rows in use
 /// where a plan leaves nothing else (kind plan or data).

@@ -14,6 +14,7 @@
 #include <cstddef>
 #include <cstdint>
 #include <functional>
+#include <limits>
 #include <stop_token>
 #include <vector>
 
@@ -32,8 +33,41 @@ struct PoolRule {
       penalty;  ///< penalised_rss: criterion penalty by number of design columns k, 0 … most; may hold +infinity
 };
 
+/// What the walk says about a set of candidates of one response form.
+struct Standing {
+  double best_cv_sse = std::numeric_limits<double>::infinity();         ///< form's scale
+  double best_penalised_rss = std::numeric_limits<double>::infinity();  ///< min RSS · exp(penalty[k] / n), form's scale
+  /// ln Σ (RSS · exp(penalty[k] / n))^(−n/2): the logarithm of the summed Akaike weights of the set, up to what all
+  /// candidates of the response share. The sum leaves out candidates whose weights together are below
+  /// Summary::kNegligibleWeight of the whole.
+  double log_weight = -std::numeric_limits<double>::infinity();
+};
+
+/// By-products of the walk over every candidate of one response form that was scored, in plan order.
+struct ResponseSummary {
+  Standing all;
+  std::vector<std::vector<Standing>> of_choice;  ///< [predictor][0 absent, 1 + form index]
+  std::vector<Standing> by_terms;                ///< [number of predictors present, 0 … n_predictors]
+  std::vector<std::uint64_t> histogram;          ///< [Summary::kBins] candidates by cv_sse
+};
+
+/// The whole space in figures. Empty `responses` when it was not asked for.
+struct Summary {
+  static constexpr double kNegligibleWeight = 1e-6;
+  /// Bins of the histogram: eight to an octave, the first holding everything below edge(1), the last everything from
+  /// edge(kBins − 1).
+  static constexpr std::size_t kBins = 512;
+
+  std::vector<ResponseSummary> responses;
+  std::vector<double> unit_sse;  ///< [response] the unit of edge(): response_scale²
+  /// Lower edge of bin i in units of unit_sse: 2^(i div 8 − 40) · (1 + (i mod 8)/8).
+  static double edge(std::size_t i);
+};
+
 struct WalkOptions {
   std::vector<PoolRule> rules;
+  /// Also makes Summary, with this penalty by number of design columns k (empty: no summary).
+  std::vector<double> summary_penalty;
   unsigned threads = 0;  ///< 0: all that the process may use
   std::stop_token stop;
   std::function<void(std::uint64_t scored)> progress;  ///< called from worker threads with increments; may be empty
@@ -52,6 +86,7 @@ struct Scored {
 struct WalkResult {
   /// [rule][response] best first, ties by candidate number; the same for any number of threads when complete.
   std::vector<std::vector<std::vector<Scored>>> lists;
+  Summary summary;
   std::uint64_t n_scored = 0;
   BigCount n_inseparable = 0;  ///< candidates below a child that was not entered
   bool complete = true;        ///< false when stopped

@@ -149,6 +149,27 @@ TEST_CASE("pipeline: an existing run is not overwritten without being asked", "[
   CHECK(pipeline::search(plan, options).ok());
 }
 
+TEST_CASE("pipeline: the plan in a run folder runs again from any place", "[pipeline][unit]") {
+  const TemporaryFolder folder;
+  folder.write("trees.csv", read_text(kOpen + "/trees.csv"));
+  const std::string plan_file =
+      folder.write("trees.toml", "[data]\nfile = \"trees.csv\"\nresponse = \"volume\"\n");
+  const auto plan = run::read_plan(plan_file);
+  REQUIRE(plan.ok());
+  pipeline::SearchOptions options;
+  options.out = folder.file("first.run");
+  REQUIRE(pipeline::search(*plan, options).ok());
+  const auto resolved = run::read_plan(folder.file("first.run") + "/plan.toml");
+  REQUIRE(resolved.ok());
+  CHECK(resolved->data.file == "../trees.csv");
+  options.out = folder.file("second.run");
+  REQUIRE(pipeline::search(*resolved, options).ok());
+  const auto shortlist = [&](const std::string& run) {
+    return nlohmann::json::parse(read_text(folder.file(run) + "/shortlist.json")).at("shortlist");
+  };
+  CHECK(shortlist("first.run") == shortlist("second.run"));
+}
+
 TEST_CASE("pipeline: replacing a run leaves the old one alone when the new plan is wrong", "[pipeline][unit]") {
   const TemporaryFolder folder;
   pipeline::SearchOptions options;
