@@ -13,11 +13,11 @@ import sys
 EIGEN = ("Eigen/",)
 BOOST_MATH = ("boost/math/", "boost/multiprecision/")
 ARROWS = {
-    "base": ([], ("tbb/", "boost/multiprecision/") + EIGEN),
+    "base": ([], ("tbb/", "hwy/", "boost/multiprecision/") + EIGEN),
     "table": (["base"], ("fast_float/", "sqlite3.h", "openssl/")),
     "forms": (["base"], BOOST_MATH),
     "survey": (["base", "table", "forms"], BOOST_MATH),
-    "design": (["base", "table", "forms"], EIGEN),
+    "design": (["base", "table", "forms"], ("hwy/",) + EIGEN),
     "search": (["base"], ("boost/multiprecision/", "hwy/")),
     "fit": (["base"], EIGEN),
     "checks": (["base", "design", "forms", "fit:"], EIGEN + BOOST_MATH),

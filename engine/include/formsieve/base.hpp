@@ -7,6 +7,7 @@
 #include <functional>
 #include <optional>
 #include <string>
+#include <string_view>
 #include <utility>
 #include <variant>
 
@@ -87,5 +88,16 @@ struct Progress {
 };
 
 using ProgressSink = std::function<void(const Progress&)>;
+
+namespace base {
+
+/// The instruction set that the kernels run with: "AVX-512", "AVX2" or "baseline".
+std::string instruction_set();
+
+/// Makes the kernels run with "baseline", "avx2" or "avx512" from now on, or with "best", the best that the processor
+/// has. Not while another thread computes. Errors (kind usage): another name, a set that this processor does not have.
+Status force_instruction_set(std::string_view name);
+
+}  // namespace base
 
 }  // namespace formsieve
