@@ -7,6 +7,10 @@
 
 #include <algorithm>
 #include <cassert>
+#include <memory>
+#include <mutex>
+#include <numeric>
+#include <optional>
 #include <utility>
 
 namespace formsieve::design {
@@ -31,6 +35,7 @@ struct FoldMoments {
 /// A run of rows of one fold, summed in one piece.
 struct Part {
   std::size_t fold;
+  std::size_t number;  ///< within the fold
   std::vector<std::uint32_t> rows;
 };
 
@@ -46,28 +51,68 @@ std::vector<Part> cut(const std::vector<std::uint32_t>& fold_of, std::size_t n_f
     for (std::size_t first = 0; first < all.size(); first += part_size) {
       const std::size_t last = std::min(first + part_size, all.size());
       parts.push_back(
-          {fold, {all.begin() + static_cast<std::ptrdiff_t>(first), all.begin() + static_cast<std::ptrdiff_t>(last)}});
+          {fold,
+           first / part_size,
+           {all.begin() + static_cast<std::ptrdiff_t>(first), all.begin() + static_cast<std::ptrdiff_t>(last)}});
     }
   }
   return parts;
 }
 
-FoldMoments sum_rows(const Data& data, const StandardColumns& columns, const std::vector<std::uint32_t>& rows) {
-  FoldMoments sums;
-  BlockWorkspace workspace;
-  std::vector<double> values(columns.order() * base::kRowChunk);
+/// The parts in the order in which to sum them: those of the same number lie in about the same rows of the table, whose
+/// values are then still in a cache.
+std::vector<std::size_t> working_order(const std::vector<Part>& parts) {
+  std::vector<std::size_t> order(parts.size());
+  std::iota(order.begin(), order.end(), std::size_t{0});
+  std::stable_sort(order.begin(), order.end(),
+                   [&](std::size_t a, std::size_t b) { return parts[a].number < parts[b].number; });
+  return order;
+}
+
+/// What the sums of one part need: kept for the next part, since fresh memory costs as much as the sums.
+struct PartWorkspace {
+  std::vector<double> values;
   std::vector<double> weights;
+  BlockWorkspace block;
+};
+
+/// Workspaces that the parts take in turn, as many as there are parts at the same time.
+class PartWorkspaces {
+ public:
+  std::unique_ptr<PartWorkspace> take() {
+    const std::lock_guard lock(mutex_);
+    if (idle_.empty()) return std::make_unique<PartWorkspace>();
+    auto workspace = std::move(idle_.back());
+    idle_.pop_back();
+    return workspace;
+  }
+  void give_back(std::unique_ptr<PartWorkspace> workspace) {
+    const std::lock_guard lock(mutex_);
+    idle_.push_back(std::move(workspace));
+  }
+
+ private:
+  std::mutex mutex_;
+  std::vector<std::unique_ptr<PartWorkspace>> idle_;
+};
+
+FoldMoments sum_rows(const Data& data, const StandardColumns& columns, const std::vector<std::uint32_t>& rows,
+                     PartWorkspace& workspace) {
+  FoldMoments sums;
+  workspace.values.resize(columns.order() * base::kRowChunk);
   for (std::size_t first = 0; first < rows.size(); first += base::kRowChunk) {
     const auto chunk = std::span(rows).subspan(first, std::min(base::kRowChunk, rows.size() - first));
-    columns.evaluate(data, chunk, values);
-    const RowBlock block{chunk.size(), columns.order(), values.data()};
+    columns.evaluate(data, chunk, workspace.values);
+    const RowBlock block{chunk.size(), columns.order(), workspace.values.data()};
+    workspace.weights.clear();
     if (!data.weights.empty()) {
-      weights.clear();
-      for (const std::uint32_t row : chunk) weights.push_back(data.weights[row]);
-      join(sums.plain, moments_of(block, {}, workspace));
+      for (const std::uint32_t row : chunk) workspace.weights.push_back(data.weights[row]);
+      add_block(sums.plain, block, {}, workspace.block);
     }
-    join(sums.weighted, moments_of(block, weights, workspace));
+    add_block(sums.weighted, block, workspace.weights, workspace.block);
   }
+  mirror(sums.plain);
+  mirror(sums.weighted);
   return sums;
 }
 
@@ -75,7 +120,14 @@ std::vector<FoldMoments> sum_folds(const Data& data, const StandardColumns& colu
                                    const std::vector<std::uint32_t>& fold_of, std::size_t n_folds, unsigned threads) {
   const std::vector<Part> parts = cut(fold_of, n_folds);
   std::vector<FoldMoments> sums(parts.size());
-  base::parallel_for(parts.size(), threads, [&](std::size_t p) { sums[p] = sum_rows(data, columns, parts[p].rows); });
+  const std::vector<std::size_t> order = working_order(parts);
+  PartWorkspaces workspaces;
+  base::parallel_for(parts.size(), threads, [&](std::size_t i) {
+    const std::size_t p = order[i];
+    auto workspace = workspaces.take();
+    sums[p] = sum_rows(data, columns, parts[p].rows, *workspace);
+    workspaces.give_back(std::move(workspace));
+  });
   std::vector<FoldMoments> folds(n_folds);
   std::size_t p = 0;
   for (std::size_t fold = 0; fold < n_folds; ++fold) {
@@ -131,20 +183,77 @@ void add_repeat(std::vector<FoldMoments> folds, base::GramSet& set) {
   }
 }
 
+/// The sums of every fold of one repeat, standardised.
+class FoldSums {
+ public:
+  /// Finds the maps on the way: from the first repeat's sums, or by passes of its own where those will not do.
+  static Result<FoldSums> start(const Data& data, const Folds& folds, unsigned threads) {
+    auto columns = StandardColumns::provisional(data, threads);
+    if (!columns) return columns.error();
+    FoldSums result(data, folds, threads);
+    result.columns_ = std::move(*columns);
+    result.first_ = result.sum(0);
+    result.scales_ = result.columns_.remaining_scales(total(result.first_));
+    if (result.scales_) return result;
+    auto exact = StandardColumns::fit(data, threads);
+    if (!exact) return exact.error();
+    result.columns_ = std::move(*exact);
+    result.first_ = result.sum(0);
+    return result;
+  }
+
+  std::vector<FoldMoments> of_repeat(std::size_t repeat) {
+    std::vector<FoldMoments> sums = repeat == 0 ? std::move(first_) : sum(repeat);
+    for (FoldMoments& fold : sums) {
+      if (!scales_) break;
+      if (fold.weighted.order() > 0) scales_->apply(fold.weighted);
+      if (fold.plain.order() > 0) scales_->apply(fold.plain);
+    }
+    return sums;
+  }
+
+  std::size_t order() const { return columns_.order(); }
+
+  std::vector<double> response_scale() const {
+    std::vector<double> scale = columns_.response_scale();
+    const std::size_t first = order() - scale.size();
+    for (std::size_t r = 0; scales_ && r < scale.size(); ++r) scale[r] /= scales_->factor[first + r];
+    return scale;
+  }
+
+ private:
+  FoldSums(const Data& data, const Folds& folds, unsigned threads) : data_(data), folds_(folds), threads_(threads) {}
+
+  std::vector<FoldMoments> sum(std::size_t repeat) const {
+    assert(folds_.fold_of[repeat].size() == data_.n_rows);
+    return sum_folds(data_, columns_, folds_.fold_of[repeat], folds_.count, threads_);
+  }
+
+  static Moments total(const std::vector<FoldMoments>& folds) {
+    Moments all;
+    for (const FoldMoments& fold : folds) join(all, fold.weighted);
+    return all;
+  }
+
+  const Data& data_;
+  const Folds& folds_;
+  unsigned threads_;
+  StandardColumns columns_;
+  std::optional<ColumnScales> scales_;  ///< what the maps lack; nothing when they are exact
+  std::vector<FoldMoments> first_;
+};
+
 }  // namespace
 
 Result<base::GramSet> build_grams(const Data& data, const Folds& folds, unsigned threads) {
-  const auto columns = StandardColumns::fit(data, threads);
-  if (!columns) return columns.error();
+  auto sums = FoldSums::start(data, folds, threads);
+  if (!sums) return sums.error();
   base::GramSet set;
   set.n_rows = data.n_rows;
   set.n_responses = data.response_forms.size();
-  set.n_columns = columns->order() - set.n_responses;
-  set.response_scale = columns->response_scale();
-  for (const auto& fold_of : folds.fold_of) {
-    assert(fold_of.size() == data.n_rows);
-    add_repeat(sum_folds(data, *columns, fold_of, folds.count, threads), set);
-  }
+  set.n_columns = sums->order() - set.n_responses;
+  set.response_scale = sums->response_scale();
+  for (std::size_t repeat = 0; repeat < folds.fold_of.size(); ++repeat) add_repeat(sums->of_repeat(repeat), set);
   set.n_folds = set.training.size();
   return set;
 }

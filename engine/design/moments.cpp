@@ -4,43 +4,62 @@
 #include "design/cross_product_kernel.hpp"
 
 #include <cassert>
-#include <cmath>
-#include <numeric>
+#include <utility>
 
 namespace formsieve::design {
 
-Moments moments_of(const RowBlock& block, std::span<const double> weights, BlockWorkspace& workspace) {
-  const std::size_t n_rows = block.n_rows;
-  Moments result;
-  result.weight = weights.empty() ? static_cast<double>(n_rows) : base::sum(weights);
-  result.mean.resize(block.n_columns);
-  result.cross.resize(block.n_columns * block.n_columns);
-  workspace.centred.resize(block.n_columns * n_rows);
-  workspace.panels.resize(panels_size(n_rows, block.n_columns));
-  for (std::size_t c = 0; c < block.n_columns; ++c) {
-    const std::span<const double> column(block.values + c * base::kRowChunk, n_rows);
-    const double mean = base::weighted_mean(column, weights);
-    double* centred = workspace.centred.data() + c * n_rows;
-    for (std::size_t i = 0; i < n_rows; ++i) centred[i] = column[i] - mean;
-    if (!weights.empty())
-      for (std::size_t i = 0; i < n_rows; ++i) centred[i] *= std::sqrt(weights[i]);
-    result.mean[c] = mean;
+namespace {
+
+/// Joins moments whose cross-products stand `stride` apart to a set, in the lower triangle.
+void join_lower(Moments& set, double weight, const double* mean, const double* cross, std::size_t stride) {
+  const std::size_t order = set.order();
+  const double joined = set.weight + weight;
+  std::vector<double> d(order);
+  for (std::size_t c = 0; c < order; ++c) d[c] = mean[c] - set.mean[c];
+  const double factor = set.weight / joined * weight;
+  for (std::size_t j = 0; j < order; ++j) {
+    double* own = set.cross.data() + j * order;
+    const double* other = cross + j * stride;
+    for (std::size_t i = j; i < order; ++i) own[i] += other[i] + factor * (d[i] * d[j]);
   }
-  pack(workspace.centred.data(), n_rows, n_rows, block.n_columns, workspace.panels.data());
-  cross_products(workspace.panels.data(), n_rows, block.n_columns, result.cross.data());
+  for (std::size_t c = 0; c < order; ++c) set.mean[c] += weight / joined * d[c];
+  set.weight = joined;
+}
+
+}  // namespace
+
+void add_block(Moments& set, const RowBlock& block, std::span<const double> weights, BlockWorkspace& workspace) {
+  const std::size_t stride = padded(block.n_columns);
+  workspace.panels.resize(panels_size(block.n_rows, block.n_columns));
+  workspace.mean.resize(stride);
+  workspace.cross.resize(stride * stride);
+  const double weight = weights.empty() ? static_cast<double>(block.n_rows) : base::sum(weights);
+  pack_centred(block.values, base::kRowChunk, block.n_rows, block.n_columns, weights.empty() ? nullptr : weights.data(),
+               weight, workspace.panels.data(), workspace.mean.data());
+  cross_products(workspace.panels.data(), block.n_rows, block.n_columns, workspace.cross.data());
+  set.mean.resize(block.n_columns);
+  set.cross.resize(block.n_columns * block.n_columns);
+  join_lower(set, weight, workspace.mean.data(), workspace.cross.data(), stride);
+}
+
+void mirror(Moments& set) {
+  const std::size_t order = set.order();
+  for (std::size_t j = 0; j < order; ++j)
+    for (std::size_t i = j + 1; i < order; ++i) set.cross[j + i * order] = set.cross[i + j * order];
+}
+
+Moments moments_of(const RowBlock& block, std::span<const double> weights, BlockWorkspace& workspace) {
+  Moments result;
+  add_block(result, block, weights, workspace);
+  mirror(result);
   return result;
 }
 
 void add_outer_product(std::vector<double>& matrix, double factor, std::span<const double> d) {
   const std::size_t order = d.size();
-  for (std::size_t j = 0; j < order; ++j) {
-    const double scaled = factor * d[j];
-    for (std::size_t i = 0; i < j; ++i) {
-      matrix[i + j * order] += scaled * d[i];
-      matrix[j + i * order] = matrix[i + j * order];
-    }
-    matrix[j + j * order] += scaled * d[j];
-  }
+  // the product of the two first: then equal columns have equal entries wherever they stand
+  for (std::size_t j = 0; j < order; ++j)
+    for (std::size_t i = 0; i < order; ++i) matrix[i + j * order] += factor * (d[i] * d[j]);
 }
 
 void join(Moments& set, const Moments& other) {

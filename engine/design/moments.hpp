@@ -24,13 +24,20 @@ struct RowBlock {
   const double* values;
 };
 
-/// Scratch of moments_of.
+/// Scratch of add_block.
 struct BlockWorkspace {
-  std::vector<double> centred, panels;
+  std::vector<double> panels, mean, cross;
 };
 
-/// Moments of a block of rows; `weights` is empty or holds the weight of each row. Cost O(n_rows · n_columns²). Every
-/// entry is a sum over the rows in their order, whatever the processor: see cross_product_kernel.hpp.
+/// Joins a block of rows to a set; `weights` is empty or holds the weight of each row. Of `set.cross` only the lower
+/// triangle is kept up: mirror() after the last block. Cost n_rows · n_columns² / 2. The additions of an entry depend
+/// on the rows alone, not on the columns beside it: see cross_product_kernel.hpp.
+void add_block(Moments& set, const RowBlock& block, std::span<const double> weights, BlockWorkspace& workspace);
+
+/// Copies the lower triangle of `cross` to the upper.
+void mirror(Moments& set);
+
+/// Moments of a block of rows.
 Moments moments_of(const RowBlock& block, std::span<const double> weights, BlockWorkspace& workspace);
 
 /// Moments of the union of two disjoint sets of rows (Chan, Golub & LeVeque 1983, eq. 2.1, for cross-products).

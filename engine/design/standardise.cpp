@@ -2,6 +2,7 @@
 
 #include "base/parallel.hpp"
 #include "base/sums.hpp"
+#include "design/form_values.hpp"
 
 #include <algorithm>
 #include <cmath>
@@ -18,6 +19,9 @@ constexpr double kConstantSpread_rel = 1e-13;
 /// A column of a form is determined by those before it when less than this share of its variance is left: beyond it the
 /// roundings of its values, 1e-16 of the column, are more than 1e-10 of what is left.
 constexpr double kDependentVariance_rel = 1e-12;
+/// A provisional map is trusted only where the standard deviation is more than this share of the mean: what is nearer
+/// to constant is left to the exact maps, which tell a small spread from roundings.
+constexpr double kTrustedSpread_rel = 1e-7;
 /// Below this a sum of squares may have lost digits to underflow.
 constexpr double kSmallestSum = 1e-250;
 
@@ -45,7 +49,7 @@ std::span<const double> chunk_of(const std::vector<double>& values, std::size_t 
 void evaluate_apart(const forms::Form& form, std::span<const double> x, std::span<double> scratch, double* out) {
   const std::size_t n_columns = forms::n_columns(form);
   if (n_columns == 1) {
-    forms::evaluate_column(form, x, {out, x.size()});
+    values_for_sums(form, x, {out, x.size()});
     return;
   }
   forms::evaluate_column(form, x, scratch.first(n_columns * x.size()));
@@ -168,6 +172,32 @@ Standardiser standardiser_of(const Data& data, const Source& source, const Range
   return map;
 }
 
+/// The map of a form of one column that gives the first rows mean 0 and variance 1.
+Standardiser map_of_first_rows(const Source& source) {
+  Standardiser map = identity_map(1);
+  const auto x = chunk_of(*source.raw, 0);
+  std::vector<double> values(x.size());
+  forms::evaluate_column(*source.form, x, values);
+  double largest = 0.0;
+  for (const double value : values) largest = std::max(largest, std::abs(value));
+  if (!std::isfinite(largest) || largest == 0.0) return map;
+  map.power_of_two[0] = std::ldexp(1.0, -std::ilogb(largest));
+  for (double& value : values) value *= map.power_of_two[0];
+  map.centre[0] = base::mean(values);
+  const double variance = base::sum_of_squares(values, map.centre[0]) / static_cast<double>(values.size());
+  if (std::isfinite(variance) && variance > kSmallestSum) map.t[0] = 1.0 / std::sqrt(variance);
+  return map;
+}
+
+/// Whether the moments of a column under a provisional map are good for a better one. Its mean is never so many
+/// standard deviations from 0 as to cost digits: the first rows, whose mean is 0, are a share of the rows.
+bool is_trusted(const Standardiser& map, const Moments& all, std::size_t c) {
+  const double own = all.cross[c * (all.order() + 1)];
+  if (!std::isfinite(own) || own < kSmallestSum) return false;
+  const double mean = map.centre[0] + all.mean[c] / map.t[0];
+  return std::sqrt(own / all.weight) / map.t[0] > kTrustedSpread_rel * std::abs(mean);
+}
+
 Error undefined_on(const Data& data, const Source& source, std::size_t row) {
   const std::string column = source.predictor != nullptr ? source.predictor->column : "response";
   Error error{ErrorKind::data, forms::term_name(*source.form, column) + " is not a finite number on a row in use", "",
@@ -192,6 +222,13 @@ Status check_weights(const Data& data) {
 }  // namespace
 
 void Standardiser::apply(double* columns, std::size_t n_rows) const {
+  if (n_columns == 1) {
+    const double p = power_of_two[0];
+    const double mean = centre[0];
+    const double factor = t[0];
+    for (std::size_t i = 0; i < n_rows; ++i) columns[i] = (columns[i] * p - mean) * factor;
+    return;
+  }
   const auto column = [&](std::size_t c) { return columns + c * base::kRowChunk; };
   for (std::size_t c = 0; c < n_columns; ++c)
     for (std::size_t i = 0; i < n_rows; ++i) column(c)[i] = column(c)[i] * power_of_two[c] - centre[c];
@@ -204,14 +241,37 @@ void Standardiser::apply(double* columns, std::size_t n_rows) const {
   }
 }
 
+void ColumnScales::apply(Moments& moments) const {
+  const std::size_t order = moments.order();
+  for (std::size_t j = 0; j < order; ++j) {
+    moments.mean[j] = (moments.mean[j] - shift[j]) * factor[j];
+    // the product of the factors first, so that the matrix stays symmetric to the bit
+    for (std::size_t i = 0; i < order; ++i) moments.cross[i + j * order] *= factor[i] * factor[j];
+  }
+}
+
 Result<StandardColumns> StandardColumns::fit(const Data& data, unsigned threads) {
+  return with_maps(data, threads, false);
+}
+
+Result<StandardColumns> StandardColumns::provisional(const Data& data, unsigned threads) {
+  return with_maps(data, threads, true);
+}
+
+Result<StandardColumns> StandardColumns::with_maps(const Data& data, unsigned threads, bool provisional) {
   if (const Status status = check_weights(data); !status) return status.error();
   const std::vector<Source> all = sources(data);
   std::vector<std::optional<std::size_t>> undefined_row(all.size());
   StandardColumns result;
+  result.n_responses_ = data.response_forms.size();
   result.standardisers_.resize(all.size());
   base::parallel_for(all.size(), threads, [&](std::size_t s) {
-    const Range range = range_of_form(data, all[s], forms::n_columns(*all[s].form));
+    const std::size_t n_columns = forms::n_columns(*all[s].form);
+    if (provisional && n_columns == 1) {
+      result.standardisers_[s] = map_of_first_rows(all[s]);
+      return;
+    }
+    const Range range = range_of_form(data, all[s], n_columns);
     undefined_row[s] = range.undefined_row;
     if (!range.undefined_row) result.standardisers_[s] = standardiser_of(data, all[s], range);
   });
@@ -219,13 +279,32 @@ Result<StandardColumns> StandardColumns::fit(const Data& data, unsigned threads)
     if (undefined_row[s]) return undefined_on(data, all[s], *undefined_row[s]);
     const Standardiser& map = result.standardisers_[s];
     result.order_ += map.n_columns;
-    if (all[s].predictor != nullptr) continue;
-    if (map.t[0] == 0.0)
+    if (all[s].predictor == nullptr && map.t[0] == 0.0)
       return Error{ErrorKind::data, "the response has the same value on every row in use", "",
                    "choose a response that varies"};
-    result.response_scale_.push_back(1.0 / (map.t[0] * map.power_of_two[0]));
   }
   return result;
+}
+
+std::optional<ColumnScales> StandardColumns::remaining_scales(const Moments& all) const {
+  ColumnScales scales{std::vector<double>(order_, 0.0), std::vector<double>(order_, 1.0)};
+  std::size_t c = 0;
+  for (const Standardiser& map : standardisers_) {
+    if (map.n_columns == 1) {
+      if (!is_trusted(map, all, c)) return std::nullopt;
+      scales.shift[c] = all.mean[c];
+      scales.factor[c] = 1.0 / std::sqrt(all.cross[c * (order_ + 1)] / all.weight);
+    }
+    c += map.n_columns;
+  }
+  return scales;
+}
+
+std::vector<double> StandardColumns::response_scale() const {
+  std::vector<double> scale;
+  for (std::size_t s = standardisers_.size() - n_responses_; s < standardisers_.size(); ++s)
+    scale.push_back(1.0 / (standardisers_[s].t[0] * standardisers_[s].power_of_two[0]));
+  return scale;
 }
 
 void StandardColumns::evaluate(const Data& data, std::span<const std::uint32_t> rows, std::span<double> out) const {

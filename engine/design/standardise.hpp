@@ -8,6 +8,7 @@
 
 #include <cstddef>
 #include <cstdint>
+#include <optional>
 #include <span>
 #include <vector>
 
@@ -26,6 +27,14 @@ struct Standardiser {
   void apply(double* columns, std::size_t n_rows) const;
 };
 
+/// A linear map of each column, (x − shift) · factor.
+struct ColumnScales {
+  std::vector<double> shift, factor;
+
+  /// The moments of the mapped columns, from those of the columns. Cost O(order²).
+  void apply(Moments& moments) const;
+};
+
 /// All columns of a Data: every form of every predictor in layout order, then the response forms.
 class StandardColumns {
  public:
@@ -33,18 +42,30 @@ class StandardColumns {
   /// weight that is not a positive number.
   static Result<StandardColumns> fit(const Data& data, unsigned threads);
 
+  /// Maps from the first rows alone for forms of one column, exact ones for the others, which saves two passes over the
+  /// rows: remaining_scales() says afterwards what they lack. Errors as fit(), but a one-column form that is undefined
+  /// on some row shows only there.
+  static Result<StandardColumns> provisional(const Data& data, unsigned threads);
+
+  /// From the moments of all rows under provisional maps, what takes the columns to mean 0 and variance 1. Nothing when
+  /// the moments cannot be trusted for it: a column with values that are not finite, that is nearly constant, or of
+  /// which the first rows say nothing.
+  std::optional<ColumnScales> remaining_scales(const Moments& all) const;
+
   std::size_t order() const { return order_; }
   /// Standard deviations of the response forms.
-  const std::vector<double>& response_scale() const { return response_scale_; }
+  std::vector<double> response_scale() const;
 
   /// Standardised values of at most kRowChunk rows: column c of row i to out[c * kRowChunk + i]; out holds
   /// order() * kRowChunk values.
   void evaluate(const Data& data, std::span<const std::uint32_t> rows, std::span<double> out) const;
 
  private:
+  static Result<StandardColumns> with_maps(const Data& data, unsigned threads, bool provisional);
+
   std::size_t order_ = 0;
   std::vector<Standardiser> standardisers_;  ///< predictors × menu, then response forms
-  std::vector<double> response_scale_;
+  std::size_t n_responses_ = 0;
 };
 
 }  // namespace formsieve::design

@@ -2,6 +2,7 @@
 #include "base/sums.hpp"
 #include "design/standardise.hpp"
 #include "example.hpp"
+#include "instruction_sets.hpp"
 
 #include <catch2/catch.hpp>
 
@@ -122,6 +123,61 @@ TEST_CASE("design: Gram matrices equal their definition when one fold holds most
   Folds folds = test::folds_of(data, 3);
   for (std::size_t i = 40; i < data.n_rows; ++i) folds.fold_of[0][i] = 1;
   check_definition(data, folds);
+}
+
+TEST_CASE("design: Gram matrices equal their definition with every instruction set", "[design][property]") {
+  test::for_each_instruction_set([] {
+    const Data data = test::example_data(39, 800, true);
+    check_definition(data, test::folds_of(data, 3));
+  });
+}
+
+TEST_CASE("design: Gram matrices equal their definition when the first rows are unlike the rest",
+          "[design][property]") {
+  Data constant = test::example_data(40, 3000, true);
+  Data rising = constant;
+  Data far = constant;
+  for (std::size_t i = 0; i < 3000; ++i) {
+    auto& raw = constant.predictors[0].raw;
+    if (i < 1100) raw[i] = 2.5;
+    rising.predictors[0].raw[i] *= std::exp(0.01 * static_cast<double>(i));
+    if (i >= 1100) far.predictors[0].raw[i] += 5e4;
+  }
+  for (const Data* data : {&constant, &rising, &far}) check_definition(*data, test::folds_of(*data, 3, 2));
+}
+
+TEST_CASE("design: Gram matrices of columns of extreme size are those of the columns", "[design][property]") {
+  Data data = test::example_data(41, 2500, false);
+  data.predictors[0].menu = {form(Kind::identity)};
+  for (const std::size_t n_zero : {0u, 1100u}) {
+    std::fill_n(data.predictors[0].raw.begin(), n_zero, 0.0);
+    const Folds folds = test::folds_of(data, 3);
+    const auto plain = design::build_grams(data, folds, 1);
+    for (const double scale : {0x1p-700, 0x1p-530, 0x1p-500, 0x1p500, 0x1p700}) {
+      Data scaled = data;
+      for (double& value : scaled.predictors[0].raw) value *= scale;
+      const auto set = design::build_grams(scaled, folds, 1);
+      REQUIRE(set.ok());
+      for (std::size_t i = 0; i < set->all.size(); ++i) CHECK(set->all[i] == Approx(plain->all[i]).margin(1e-9));
+    }
+  }
+}
+
+TEST_CASE("design: a column that differs from a constant by roundings alone has zeros", "[design][unit]") {
+  Data data = test::example_data(43, 2500, false);
+  data.predictors[0].menu = {form(Kind::identity)};
+  for (std::size_t i = 0; i < 2500; ++i) data.predictors[0].raw[i] = 1.0 + static_cast<double>(i % 3) * 0x1p-52;
+  const auto set = design::build_grams(data, test::folds_of(data, 3), 1);
+  REQUIRE(set.ok());
+  CHECK(set->all[0] == 0.0);
+}
+
+TEST_CASE("design: a form undefined beyond the first rows is reported by row", "[design][unit]") {
+  Data data = test::example_data(42, 2500, false);
+  data.predictors[0].raw[2100] = -1.0;
+  const auto set = design::build_grams(data, test::folds_of(data, 3), 2);
+  REQUIRE_FALSE(set.ok());
+  CHECK(set.error().where == "table row 2101, column 'area'");
 }
 
 TEST_CASE("design: Gram matrices keep their digits when one row holds nearly all the spread", "[design][property]") {

@@ -2,10 +2,13 @@
 #include "design/cross_product_kernel.hpp"
 #include "design/moments.hpp"
 #include "example.hpp"
+#include "instruction_sets.hpp"
 
 #include <catch2/catch.hpp>
 
 #include <cmath>
+#include <limits>
+#include <numeric>
 
 using namespace formsieve;
 using base::kRowChunk;
@@ -26,6 +29,28 @@ Rows random_rows(std::uint64_t seed, std::size_t n_rows, std::size_t n_columns) 
     rows.weights.push_back(std::exp(test::normal(random)));
   }
   return rows;
+}
+
+/// Columns as the kernel packs them.
+struct Packed {
+  std::size_t n_rows;
+  std::vector<double> panels, means;
+
+  double at(std::size_t row, std::size_t c) const {
+    constexpr std::size_t kWidth = design::kPanelColumns;
+    return panels[c / kWidth * n_rows * kWidth + row * kWidth + c % kWidth];
+  }
+};
+
+Packed pack(const Rows& rows, const double* weights, double total_weight) {
+  const std::size_t n_rows = rows.weights.size();
+  std::vector<double> columns;
+  for (const auto& column : rows.columns) columns.insert(columns.end(), column.begin(), column.end());
+  Packed packed{n_rows, std::vector<double>(design::panels_size(n_rows, rows.n_columns)),
+                std::vector<double>(design::padded(rows.n_columns))};
+  design::pack_centred(columns.data(), n_rows, n_rows, rows.n_columns, weights, total_weight, packed.panels.data(),
+                       packed.means.data());
+  return packed;
 }
 
 /// Moments of rows [first, last) through the block kernel.
@@ -64,32 +89,68 @@ void check_moments(const design::Moments& moments, const Rows& rows, bool weight
 
 }  // namespace
 
-TEST_CASE("design: cross-products are plain sums over the rows, to the bit", "[design][property]") {
-  for (const std::size_t n_columns : {1u, 3u, 4u, 5u, 9u, 12u}) {
-    for (const std::size_t n_rows : {1u, 2u, 7u, 100u}) {
-      const Rows rows = random_rows(n_columns, n_rows, n_columns);
-      std::vector<double> columns;
-      for (const auto& column : rows.columns) columns.insert(columns.end(), column.begin(), column.end());
-      std::vector<double> panels(design::panels_size(n_rows, n_columns));
-      std::vector<double> out(n_columns * n_columns);
-      design::pack(columns.data(), n_rows, n_rows, n_columns, panels.data());
-      design::cross_products(panels.data(), n_rows, n_columns, out.data());
-      for (std::size_t a = 0; a < n_columns; ++a) {
-        for (std::size_t b = 0; b < n_columns; ++b) {
-          double sum = 0.0;
-          for (std::size_t i = 0; i < n_rows; ++i) sum += rows.columns[a][i] * rows.columns[b][i];
-          CHECK(out[a + b * n_columns] == sum);
+TEST_CASE("design: packing centres, weights and pads", "[design][property]") {
+  test::for_each_instruction_set([] {
+    for (const std::size_t n_columns : {1u, 7u, 8u, 19u}) {
+      for (const std::size_t n_rows : {1u, 2u, 7u, 8u, 9u, 100u}) {
+        for (const bool weighted : {false, true}) {
+          const Rows rows = random_rows(n_columns, n_rows, n_columns);
+          const std::vector<double> weights = weighted ? rows.weights : std::vector<double>(n_rows, 1.0);
+          const Packed packed = pack(rows, weighted ? rows.weights.data() : nullptr, base::sum(weights));
+          for (std::size_t c = 0; c < design::padded(n_columns); ++c) {
+            long double mean = 0.0L;
+            for (std::size_t i = 0; c < n_columns && i < n_rows; ++i)
+              mean += static_cast<long double>(weights[i]) * rows.columns[c][i];
+            mean /= std::accumulate(weights.begin(), weights.end(), 0.0L);
+            CHECK(packed.means[c] == Approx(static_cast<double>(mean)).epsilon(1e-15));
+            for (std::size_t i = 0; i < n_rows; ++i) {
+              const long double value =
+                  c < n_columns ? std::sqrt(static_cast<long double>(weights[i])) * (rows.columns[c][i] - mean) : 0.0L;
+              CHECK(packed.at(i, c) == Approx(static_cast<double>(value)).epsilon(1e-15).margin(1e-14));
+            }
+          }
         }
       }
     }
-  }
+  });
+}
+
+TEST_CASE("design: cross-products are plain sums over the rows, to the bit", "[design][property]") {
+  test::for_each_instruction_set([] {
+    // without vector registers of its own the kernel has no fused multiplication and addition
+    const bool is_fused = base::instruction_set() != "baseline";
+    for (const std::size_t n_columns : {1u, 3u, 4u, 5u, 8u, 9u, 12u, 17u, 24u, 31u, 50u}) {
+      for (const std::size_t n_rows : {1u, 2u, 7u, 100u, 128u, 129u, 300u}) {
+        const Rows rows = random_rows(n_columns, n_rows, n_columns);
+        const Packed packed = pack(rows, nullptr, static_cast<double>(n_rows));
+        const std::size_t stride = design::padded(n_columns);
+        std::vector<double> out(stride * stride, std::numeric_limits<double>::quiet_NaN());
+        design::cross_products(packed.panels.data(), n_rows, n_columns, out.data());
+        std::size_t n_different = 0;
+        for (std::size_t a = 0; a < n_columns; ++a) {
+          for (std::size_t b = 0; b <= a; ++b) {
+            double sum = 0.0;
+            for (std::size_t i = 0; i < n_rows; ++i) {
+              const double left = packed.at(i, a);
+              const double right = packed.at(i, b);
+              sum = is_fused ? std::fma(left, right, sum) : sum + left * right;
+            }
+            n_different += out[a + b * stride] != sum;
+          }
+        }
+        CHECK(n_different == 0);
+      }
+    }
+  });
 }
 
 TEST_CASE("design: moments of a block equal plain loops", "[design][property]") {
-  for (const bool weighted : {false, true}) {
-    const Rows rows = random_rows(11, 777, 6);
-    check_moments(moments(rows, 0, 777, weighted), rows, weighted, 1e-14);
-  }
+  test::for_each_instruction_set([] {
+    for (const bool weighted : {false, true}) {
+      const Rows rows = random_rows(11, 777, 6);
+      check_moments(moments(rows, 0, 777, weighted), rows, weighted, 1e-14);
+    }
+  });
 }
 
 TEST_CASE("design: moments of parts join to those of the whole", "[design][property]") {
