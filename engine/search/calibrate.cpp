@@ -1,12 +1,13 @@
-#include "search/partial_grams.hpp"
-#include "search/subtree_walker.hpp"
-#include "search/tree.hpp"
+#include "search/parts.hpp"
+#include "search/saturating.hpp"
+#include "search/space_walker.hpp"
 #include "search/walk.hpp"
 
 #include <algorithm>
 #include <chrono>
+#include <cmath>
 #include <iterator>
-#include <limits>
+#include <vector>
 
 namespace formsieve::search {
 
@@ -15,7 +16,7 @@ namespace {
 /// Keeps the rate finite when nothing took any time.
 constexpr double kClockResolutionSeconds = 1e-9;
 /// Candidates of one response in a sampled subtree: a millisecond or so of work, far above the clock's resolution.
-constexpr std::uint64_t kSampleSize = 10'000;
+constexpr std::uint64_t kSampleSize = 100'000;
 
 /// Beyond this many candidates, more than a day's work, the sample is drawn from fewer predictors: candidates at the
 /// bottom of the tree, which are nearly all, cost the same, and the workspaces of a tree that no walk could visit would
@@ -41,33 +42,68 @@ double spread_point(std::uint64_t i) {
   return point;
 }
 
-/// The form, among those of predictors [first, open), in whose subtree `point` of their candidates falls; `point`
-/// becomes the place within it.
-std::size_t pick_at(const Tree& tree, std::size_t depth, std::size_t first, std::size_t open, double& point) {
-  const auto size = [&](std::size_t f) { return static_cast<double>(tree.size(depth, tree.forms()[f].position)); };
-  const std::size_t last = tree.n_forms(open) - 1;
+/// Which of several pieces of these sizes `point` of their sum falls in; `point` becomes the place within it.
+std::size_t pick_at(const std::vector<double>& sizes, double& point) {
   double total = 0.0;
-  for (std::size_t f = tree.n_forms(first); f <= last; ++f) total += size(f);
+  for (const double size : sizes) total += size;
   double place = point * total;
-  std::size_t form = tree.n_forms(first);
-  for (; form < last && place >= size(form); ++form) place -= size(form);
-  point = place / size(form);
-  return form;
+  std::size_t i = 0;
+  for (; i + 1 < sizes.size() && place >= sizes[i]; ++i) place -= sizes[i];
+  point = sizes[i] > 0.0 ? std::min(place / sizes[i], std::nextafter(1.0, 0.0)) : 0.0;
+  return i;
 }
 
-/// The first subtree of at most kSampleSize candidates on the way to the candidate that stands at `point` of the space.
-Path subtree_at(const Tree& tree, double point) {
-  Path path;
-  std::size_t open = tree.n_predictors();
-  while (tree.has_children(path.size(), open) && tree.size(path.size(), open) > kSampleSize) {
-    const std::size_t depth = path.size();
-    const std::size_t first = std::max<std::size_t>(1, tree.first_pick(depth, open));  // nothing is below predictor 0
-    if (first >= open || !tree.has_children(depth + 1, first) || tree.n_forms(first) == tree.n_forms(open)) break;
-    const std::size_t form = pick_at(tree, depth + 1, first, open, point);
-    path.push_back(form);
-    open = tree.forms()[form].position;
+/// Goes down in the kernel until the subtree is small.
+void add_lanes(const PairShape& shape, double point, std::vector<std::size_t>& lanes) {
+  std::size_t open = shape.n_predictors();
+  while (lanes.size() + 3 <= shape.most_picks && open > 2) {
+    const std::size_t picks_left = shape.most_picks - lanes.size();
+    if (shape.size(picks_left, open) <= kSampleSize) return;
+    std::vector<double> sizes;
+    std::vector<std::size_t> choices;
+    for (std::size_t p = 2; p < open; ++p) {
+      for (std::size_t lane = shape.first_lane[p]; lane < shape.first_lane[p + 1]; ++lane) {
+        sizes.push_back(static_cast<double>(shape.size(picks_left - 1, p)));
+        choices.push_back(lane);
+      }
+    }
+    lanes.push_back(choices[pick_at(sizes, point)]);
+    open = shape.predictor_of_lane[lanes.back()];
   }
-  return path;
+}
+
+/// The first small subtree on the way to the candidate that stands at `point` of the space.
+Part subtree_at(const OuterTree& tree, double point) {
+  Part part;
+  for (;;) {
+    part.with_outer = tree.size(part.outer) <= kSampleSize;
+    if (part.with_outer) return part;
+    std::vector<double> sizes;
+    std::vector<std::size_t> choices;
+    const bool is_candidate = tree.is_candidate(part.outer);
+    const PairShape shape = tree.shape(tree.open_simple(part.outer), tree.most_terms() - part.outer.size());
+    if (is_candidate) {
+      sizes.push_back(static_cast<double>(shape.size(shape.most_picks, shape.n_predictors())));
+      choices.push_back(0);
+    }
+    if (tree.may_pick(part.outer)) {
+      for (std::size_t form = tree.first_form(tree.first_group(part.outer));
+           form < tree.first_form(tree.open_groups(part.outer) - 1) ||
+           form < tree.end_form(tree.open_groups(part.outer) - 1);
+           ++form) {
+        OuterPath child = part.outer;
+        child.push_back(form);
+        sizes.push_back(static_cast<double>(tree.size(child)));
+        choices.push_back(form);
+      }
+    }
+    const std::size_t i = pick_at(sizes, point);
+    if (is_candidate && i == 0) {
+      add_lanes(shape, point, part.lanes);
+      return part;
+    }
+    part.outer.push_back(choices[i]);
+  }
 }
 
 }  // namespace
@@ -77,29 +113,23 @@ double calibrate(const Space& space, const base::GramSet& grams, const WalkOptio
   const auto seconds_since = [](Clock::time_point then) {
     return std::chrono::duration<double>(Clock::now() - then).count();
   };
-  const Tree tree(reduced(space));
-  if (tree.size(0, tree.n_predictors()) == 0) return 0.0;
-  const Root root(tree, grams, options.smallest_pivot_rel);
+  const Space sampled = reduced(space);
   WalkOptions quiet = options;
   quiet.progress = nullptr;
-  SubtreeWalker walker(tree, root, quiet, std::numeric_limits<std::uint64_t>::max());
+  const WalkSetup setup(sampled, grams, quiet, 0, std::min(kMostResponses, space.n_responses));
+  if (setup.tree.size({}) == 0) return 0.0;
+  SpaceWalker walker(setup);
   const Clock::time_point start = Clock::now();
   double walked_seconds = 0.0;
-  double n_inseparable = 0.0;
   std::uint64_t i = 0;
   do {
-    const Path path = subtree_at(tree, spread_point(i++));
-    if (!walker.enter(path)) {
-      const std::size_t open = tree.forms()[path.back()].position;
-      n_inseparable += static_cast<double>(tree.n_responses()) * static_cast<double>(tree.size(path.size(), open));
-      continue;
-    }
+    const Part part = subtree_at(setup.tree, spread_point(i++));
     const Clock::time_point entered = Clock::now();
-    walker.walk();
+    walker.walk(part, kCountless);
     walked_seconds += seconds_since(entered);
   } while (seconds_since(start) < seconds && !options.stop.stop_requested());
-  n_inseparable += static_cast<double>(walker.n_inseparable());
-  return (static_cast<double>(walker.n_scored()) + n_inseparable) / std::max(walked_seconds, kClockResolutionSeconds);
+  const double n_done = static_cast<double>(walker.n_scored()) + static_cast<double>(walker.n_inseparable());
+  return n_done / std::max(walked_seconds, kClockResolutionSeconds);
 }
 
 }  // namespace formsieve::search

@@ -1,10 +1,8 @@
 #include "search/walk.hpp"
 
 #include "base/parallel.hpp"
-#include "search/partial_grams.hpp"
-#include "search/subtree_walker.hpp"
-#include "search/tasks.hpp"
-#include "search/tree.hpp"
+#include "search/parts.hpp"
+#include "search/space_walker.hpp"
 
 #include <algorithm>
 #include <atomic>
@@ -16,46 +14,55 @@ namespace formsieve::search {
 
 namespace {
 
+/// Spaces from here on are not walked: their counts would overflow.
+constexpr std::uint64_t kMostCandidates = std::uint64_t{1} << 63;
+
 /// Lends a walker to each part that is being walked: as many walkers as parts at one time, hence at most one a thread.
 class Workers {
  public:
-  Workers(const Tree& tree, const Root& root, const WalkOptions& options)
-      : tree_(tree), root_(root), options_(options) {}
+  Workers(const WalkSetup& setup, std::uint64_t largest, std::size_t n_parts)
+      : setup_(setup), largest_(largest), weights_(n_parts) {}
 
-  void walk(const Path& path) {
-    if (options_.stop.stop_requested()) {
+  void walk(std::size_t i, const Part& part) {
+    if (setup_.options.stop.stop_requested()) {
       stopped_ = true;
       return;
     }
-    SubtreeWalker* const walker = take();
-    if (walker->enter(path)) walker->walk();
+    SpaceWalker* const walker = take();
+    weights_[i] = walker->walk(part, largest_);
     const std::scoped_lock lock(mutex_);
     idle_.push_back(walker);
   }
 
-  const std::vector<std::unique_ptr<SubtreeWalker>>& all() const { return all_; }
+  const std::vector<std::unique_ptr<SpaceWalker>>& all() const { return all_; }
+  const std::vector<WeightLogs>& weights() const { return weights_; }
   /// True when a part was left out because a stop was requested.
   bool stopped() const { return stopped_; }
 
  private:
-  SubtreeWalker* take() {
-    const std::scoped_lock lock(mutex_);
-    if (idle_.empty()) {
-      all_.push_back(std::make_unique<SubtreeWalker>(tree_, root_, options_, largest_subtree(tree_)));
-      return all_.back().get();
+  SpaceWalker* take() {
+    {
+      const std::scoped_lock lock(mutex_);
+      if (!idle_.empty()) {
+        SpaceWalker* const walker = idle_.back();
+        idle_.pop_back();
+        return walker;
+      }
     }
-    SubtreeWalker* const walker = idle_.back();
-    idle_.pop_back();
-    return walker;
+    // made by the thread that needs it, so that its memory is near
+    auto made = std::make_unique<SpaceWalker>(setup_);
+    const std::scoped_lock lock(mutex_);
+    all_.push_back(std::move(made));
+    return all_.back().get();
   }
 
-  const Tree& tree_;
-  const Root& root_;
-  const WalkOptions& options_;
+  const WalkSetup& setup_;
+  std::uint64_t largest_;
+  std::vector<WeightLogs> weights_;
   std::atomic<bool> stopped_ = false;
   std::mutex mutex_;
-  std::vector<std::unique_ptr<SubtreeWalker>> all_;
-  std::vector<SubtreeWalker*> idle_;
+  std::vector<std::unique_ptr<SpaceWalker>> all_;
+  std::vector<SpaceWalker*> idle_;
 };
 
 Scored scored(const Listed& listed, const Space& space, std::size_t response, double response_scale) {
@@ -82,30 +89,43 @@ std::vector<Listed> merged(const Workers& workers, std::size_t rule, std::size_t
   return all;
 }
 
-}  // namespace
+/// Walks the space for some of its responses and adds what was found to the result.
+void walk_responses(const Space& space, const base::GramSet& grams, const WalkOptions& options, std::size_t first,
+                    std::size_t n, WalkResult& result) {
+  const WalkSetup setup(space, grams, options, first, n);
+  const std::uint64_t largest = largest_subtree(setup.tree);
+  const std::vector<Part> parts = split(setup.tree, largest);
+  Workers workers(setup, largest, parts.size());
+  base::parallel_for(parts.size(), options.threads, [&](std::size_t i) { workers.walk(i, parts[i]); });
 
-WalkResult walk(const Space& space, const base::GramSet& grams, const WalkOptions& options) {
-  assert(space.n_responses == grams.n_responses);
-  assert(count(space) < Tree::kMostCandidates);
-  const Tree tree(space);
-  const Root root(tree, grams, options.smallest_pivot_rel);
-  const std::vector<Path> parts = split(tree, largest_subtree(tree));
-  Workers workers(tree, root, options);
-  base::parallel_for(parts.size(), options.threads, [&](std::size_t i) { workers.walk(parts[i]); });
-
-  WalkResult result;
-  result.complete = !workers.stopped();
+  result.complete = result.complete && !workers.stopped();
   for (const auto& walker : workers.all()) {
     result.n_scored += walker->n_scored();
     result.n_inseparable += walker->n_inseparable();
     result.complete = result.complete && !walker->stopped();
   }
-  for (std::size_t rule = 0; rule < options.rules.size(); ++rule) {
-    auto& lists = result.lists.emplace_back(space.n_responses);
-    for (std::size_t r = 0; r < space.n_responses; ++r)
+  for (std::size_t rule = 0; rule < options.rules.size(); ++rule)
+    for (std::size_t r = 0; r < n; ++r)
       for (const Listed& listed : merged(workers, rule, r, options.rules[rule].keep))
-        lists[r].push_back(scored(listed, space, r, grams.response_scale[r]));
-  }
+        result.lists[rule][first + r].push_back(scored(listed, space, first + r, grams.response_scale[first + r]));
+  if (!setup.summary.wanted) return;
+  BestStandings best(setup.cells, n);
+  for (const auto& walker : workers.all()) best.lower(walker->standings());
+  const auto scale = std::span(grams.response_scale).subspan(first, n);
+  for (auto& summary : summarise(space, setup.cells, best, workers.weights(), scale, grams.n_rows))
+    result.summary.responses.push_back(std::move(summary));
+  for (const double unit : scale) result.summary.unit_sse.push_back(unit * unit);
+}
+
+}  // namespace
+
+WalkResult walk(const Space& space, const base::GramSet& grams, const WalkOptions& options) {
+  assert(space.n_responses == grams.n_responses);
+  assert(count(space) < kMostCandidates);
+  WalkResult result;
+  result.lists.assign(options.rules.size(), std::vector<std::vector<Scored>>(space.n_responses));
+  for (std::size_t first = 0; first < space.n_responses; first += kMostResponses)
+    walk_responses(space, grams, options, first, std::min(kMostResponses, space.n_responses - first), result);
   return result;
 }
 

@@ -1,12 +1,14 @@
-#include "search/pivot_rows.hpp"
+#include "plain/pivot_rows.hpp"
 
-#include "search/elimination_kernel.hpp"
-#include "search/independent.hpp"
+#include "plain/elimination_kernel.hpp"
+#include "plain/independent.hpp"
 
 #include <algorithm>
 #include <limits>
 
-namespace formsieve::search {
+namespace formsieve::plain {
+
+using namespace search;
 
 PivotRows::PivotRows(std::size_t most_open_columns, std::size_t n_responses, std::size_t most_pivots)
     : n_responses_(n_responses) {
@@ -121,4 +123,4 @@ void PivotRows::apply_validation(const Tree& tree, std::size_t first_row, const 
   }
 }
 
-}  // namespace formsieve::search
+}  // namespace formsieve::plain

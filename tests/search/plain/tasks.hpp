@@ -1,13 +1,15 @@
 // The fixed split of a walk into independent parts.
 #pragma once
 
-#include "search/subtree_walker.hpp"
-#include "search/tree.hpp"
+#include "plain/subtree_walker.hpp"
+#include "plain/tree.hpp"
 
 #include <cstdint>
 #include <vector>
 
-namespace formsieve::search {
+namespace formsieve::plain {
+
+using namespace search;
 
 /// The subtree size beyond which a node is a part of its own: a small share of the space, so that the parts are many
 /// enough for any machine, and never so small that reaching a node costs more than what is below it.
@@ -17,4 +19,4 @@ std::uint64_t largest_subtree(const Tree& tree);
 /// belongs to another, they are the whole space. Depends on the space alone.
 std::vector<Path> split(const Tree& tree, std::uint64_t largest_subtree);
 
-}  // namespace formsieve::search
+}  // namespace formsieve::plain

@@ -2,10 +2,10 @@
 #pragma once
 
 #include "search/best_list.hpp"
-#include "search/elimination_kernel.hpp"
-#include "search/partial_grams.hpp"
-#include "search/pivot_rows.hpp"
-#include "search/tree.hpp"
+#include "plain/elimination_kernel.hpp"
+#include "plain/partial_grams.hpp"
+#include "plain/pivot_rows.hpp"
+#include "plain/tree.hpp"
 #include "search/walk.hpp"
 
 #include <cstddef>
@@ -13,7 +13,9 @@
 #include <span>
 #include <vector>
 
-namespace formsieve::search {
+namespace formsieve::plain {
+
+using namespace search;
 
 /// A node, by the forms picked on the way to it (indices into Tree::forms).
 using Path = std::vector<std::size_t>;
@@ -86,4 +88,4 @@ class SubtreeWalker {
   bool stopped_ = false;
 };
 
-}  // namespace formsieve::search
+}  // namespace formsieve::plain

@@ -1,4 +1,4 @@
-#include "search/subtree_walker.hpp"
+#include "plain/subtree_walker.hpp"
 
 #include <algorithm>
 #include <cassert>
@@ -6,7 +6,9 @@
 #include <functional>
 #include <limits>
 
-namespace formsieve::search {
+namespace formsieve::plain {
+
+using namespace search;
 
 namespace {
 
@@ -234,4 +236,4 @@ void SubtreeWalker::report_progress() {
   n_unreported_ = 0;
 }
 
-}  // namespace formsieve::search
+}  // namespace formsieve::plain

@@ -1,11 +1,13 @@
-#include "search/elimination_kernel.hpp"
+#include "plain/elimination_kernel.hpp"
 
-#include "search/independent.hpp"
+#include "plain/independent.hpp"
 
 #include <algorithm>
 #include <limits>
 
-namespace formsieve::search {
+namespace formsieve::plain {
+
+using namespace search;
 
 void clear(const ColumnScores& scores, std::size_t n_responses) {
   std::fill(scores.margin + scores.first, scores.margin + scores.last, std::numeric_limits<double>::infinity());
@@ -169,4 +171,4 @@ void eliminate_all_rows(const Tree& tree, std::size_t c, std::size_t first_row, 
   }
 }
 
-}  // namespace formsieve::search
+}  // namespace formsieve::plain

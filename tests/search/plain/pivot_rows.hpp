@@ -2,13 +2,15 @@
 // each other, and then applied to whatever is open.
 #pragma once
 
-#include "search/partial_grams.hpp"
-#include "search/tree.hpp"
+#include "plain/partial_grams.hpp"
+#include "plain/tree.hpp"
 
 #include <cstddef>
 #include <vector>
 
-namespace formsieve::search {
+namespace formsieve::plain {
+
+using namespace search;
 
 /// The pivot rows of one form in one fold. A row holds the entries with the first n_open columns, the responses, and
 /// the form's own columns. Notation as in elimination_kernel.hpp.
@@ -43,4 +45,4 @@ class PivotRows {
   std::vector<double> m_, t_;  ///< their multipliers
 };
 
-}  // namespace formsieve::search
+}  // namespace formsieve::plain

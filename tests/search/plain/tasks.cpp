@@ -1,8 +1,10 @@
-#include "search/tasks.hpp"
+#include "plain/tasks.hpp"
 
 #include <algorithm>
 
-namespace formsieve::search {
+namespace formsieve::plain {
+
+using namespace search;
 
 namespace {
 
@@ -40,4 +42,4 @@ std::vector<Path> split(const Tree& tree, std::uint64_t largest_subtree) {
   return parts;
 }
 
-}  // namespace formsieve::search
+}  // namespace formsieve::plain

@@ -6,12 +6,14 @@
 // and an elimination, with t = V_c· − ½ V_cc m, is the update A −= m A_c·, V −= m t + t m (outer products).
 #pragma once
 
-#include "search/partial_grams.hpp"
+#include "plain/partial_grams.hpp"
 
 #include <cstddef>
 #include <vector>
 
-namespace formsieve::search {
+namespace formsieve::plain {
+
+using namespace search;
 
 /// Whether a pivot is large enough to be divided by. That of a column without spread is not: zero exceeds no share of
 /// zero.
@@ -48,4 +50,4 @@ void eliminate_fold(const Tree& tree, std::size_t c, std::size_t first_row, std:
 void eliminate_all_rows(const Tree& tree, std::size_t c, std::size_t first_row, std::size_t n_open, const Half& parent,
                         const Half& child, Multipliers& multipliers);
 
-}  // namespace formsieve::search
+}  // namespace formsieve::plain

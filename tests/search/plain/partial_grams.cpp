@@ -1,9 +1,11 @@
-#include "search/partial_grams.hpp"
+#include "plain/partial_grams.hpp"
 
 #include <limits>
 #include <span>
 
-namespace formsieve::search {
+namespace formsieve::plain {
+
+using namespace search;
 
 namespace {
 
@@ -57,4 +59,4 @@ Root::Root(const Tree& tree, const base::GramSet& set, double smallest_pivot_rel
   }
 }
 
-}  // namespace formsieve::search
+}  // namespace formsieve::plain

@@ -3,12 +3,14 @@
 #pragma once
 
 #include "base/gram.hpp"
-#include "search/tree.hpp"
+#include "plain/tree.hpp"
 
 #include <cstddef>
 #include <vector>
 
-namespace formsieve::search {
+namespace formsieve::plain {
+
+using namespace search;
 
 /// One symmetric matrix, open columns and responses, without the entries that no candidate needs: those between two
 /// responses and most between two forms of the same predictor (Tree::row_length). A view.
@@ -55,4 +57,4 @@ struct Root {
   std::vector<std::vector<double>> smallest_pivot;
 };
 
-}  // namespace formsieve::search
+}  // namespace formsieve::plain

@@ -1,11 +1,13 @@
-#include "search/tree.hpp"
+#include "plain/tree.hpp"
 
 #include <algorithm>
 #include <functional>
 #include <numeric>
 #include <tuple>
 
-namespace formsieve::search {
+namespace formsieve::plain {
+
+using namespace search;
 
 namespace {
 
@@ -107,4 +109,4 @@ std::uint64_t Tree::size(std::size_t depth, std::size_t open) const {
   return total;
 }
 
-}  // namespace formsieve::search
+}  // namespace formsieve::plain

@@ -14,7 +14,9 @@
 #include <span>
 #include <vector>
 
-namespace formsieve::search {
+namespace formsieve::plain {
+
+using namespace search;
 
 /// One form of one predictor, as the walk meets it.
 struct TreeForm {
@@ -92,4 +94,4 @@ class Tree {
 std::uint64_t saturating_add(std::uint64_t a, std::uint64_t b);
 std::uint64_t saturating_multiply(std::uint64_t a, std::uint64_t b);
 
-}  // namespace formsieve::search
+}  // namespace formsieve::plain
