@@ -8,6 +8,7 @@
 
 #include <formsieve/base.hpp>
 
+#include <cstdlib>
 #include <exception>
 #include <new>
 #include <string>
@@ -26,11 +27,27 @@ const CLI::App& command_in_hand(const CLI::App& program) {
   return parsed.empty() ? program : *parsed.front();
 }
 
+std::string version_text() {
+  return std::string("formsieve ") + version() + "\ninstruction set: " + base::instruction_set();
+}
+
+/// The variable FORMSIEVE_INSTRUCTIONS makes the kernels run with a lesser instruction set, as on a lesser processor.
+Status take_instruction_set() {
+  const char* name = std::getenv("FORMSIEVE_INSTRUCTIONS");
+  if (name == nullptr || *name == '\0') return {};
+  Status status = base::force_instruction_set(name);
+  if (status) return status;
+  Error error = status.error();
+  error.where = "environment variable FORMSIEVE_INSTRUCTIONS";
+  return error;
+}
+
 int run(int argc, char** argv) {
+  if (const Status status = take_instruction_set(); !status) return refuse(status.error());
   CLI::App program("searches the functional forms of a regression and defends a shortlist", "formsieve");
   program.formatter(std::make_shared<ProgramHelp>());
   program.set_help_flag("--help,-h", "this page");
-  program.set_version_flag("--version", std::string("formsieve ") + version());
+  program.set_version_flag("--version", version_text());
   program.require_subcommand(1);
   Action chosen;
   add_survey_command(program, chosen);
@@ -49,7 +66,7 @@ int run(int argc, char** argv) {
   } catch (const CLI::CallForHelp&) {
     return write_result(command_in_hand(program).help());
   } catch (const CLI::CallForVersion&) {
-    return write_result(std::string("formsieve ") + version() + "\n");
+    return write_result(version_text() + "\n");
   } catch (const CLI::ParseError& complaint) {
     return refuse(restated(complaint, command_in_hand(program)));
   }

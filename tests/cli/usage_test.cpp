@@ -8,11 +8,24 @@
 
 using namespace formsieve::cli::testing;
 
-TEST_CASE("cli: the version is printed on standard output", "[cli][unit]") {
+TEST_CASE("cli: the version is printed on standard output, with the instruction set", "[cli][unit]") {
   const Outcome outcome = run_formsieve({"--version"});
   CHECK(outcome.exit_code == 0);
-  CHECK(outcome.out == std::string("formsieve ") + formsieve::version() + "\n");
+  CHECK(outcome.out == std::string("formsieve ") + formsieve::version() +
+                           "\ninstruction set: " + formsieve::base::instruction_set() + "\n");
   CHECK(outcome.err.empty());
+}
+
+TEST_CASE("cli: a variable forces an instruction set, and a wrong one is refused", "[cli][unit]") {
+  Setting setting;
+  setting.environment = {"FORMSIEVE_INSTRUCTIONS=baseline"};
+  CHECK(has(run_formsieve({"--version"}, setting).out, "instruction set: baseline\n"));
+  setting.environment = {"FORMSIEVE_INSTRUCTIONS=fast"};
+  const Outcome outcome = run_formsieve({"--version"}, setting);
+  CHECK(outcome.exit_code == 2);
+  CHECK(outcome.out.empty());
+  CHECK(has(outcome.err, "'fast'"));
+  CHECK(has(outcome.err, "FORMSIEVE_INSTRUCTIONS"));
 }
 
 TEST_CASE("cli: every help page fits a screen of 24 lines and 80 columns and shows an example", "[cli][unit]") {
