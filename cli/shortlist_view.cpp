@@ -2,6 +2,7 @@
 
 #include "numbers.hpp"
 #include "page.hpp"
+#include "summary_view.hpp"
 #include "text_table.hpp"
 #include "words.hpp"
 
@@ -253,6 +254,7 @@ std::string shortlist_page(const judge::Shortlist& shortlist, const std::string&
     ranking(page, shortlist);
     equation_of(page, *recommended(shortlist));
     named_lines(page, shortlist);
+    summary_tables(page, shortlist, *recommended(shortlist));
   }
   sentences(page, "What the ranking shows", shortlist.remarks);
   sentences(page, "How far the search went", extent(shortlist));

@@ -3,7 +3,10 @@
 
 #include <formsieve/judge.hpp>
 
+#include "report/json_reader.hpp"
+
 #include <array>
+#include <string>
 #include <string_view>
 #include <utility>
 
@@ -14,5 +17,10 @@ inline constexpr std::array<std::pair<judge::Criterion, std::string_view>, 4> kC
      {judge::Criterion::aic, "aic"},
      {judge::Criterion::aicc, "aicc"},
      {judge::Criterion::bic, "bic"}}};
+
+std::string criterion_text(judge::Criterion criterion);
+
+/// `when_absent` where the key is not there. Trouble: another name.
+judge::Criterion read_criterion(const Node& node, judge::Criterion when_absent);
 
 }  // namespace formsieve::report

@@ -28,6 +28,14 @@ Json text_or_null(const std::string& text);
 /// A number, or text beyond 2^53.
 Json count_json(std::uint64_t count);
 
+/// The items of a list, each as `writer` puts it.
+template <class Items, class Writer>
+Json list_json(const Items& items, Writer&& writer) {
+  Json list = Json::array();
+  for (const auto& item : items) list.push_back(writer(item));
+  return list;
+}
+
 /// { "form", "parameter", "reflect", "shift" }, and "levels", "pooled" for level indicators.
 Json form_json(const forms::Form& form);
 

@@ -5,8 +5,7 @@
 #include "report/criterion_name.hpp"
 #include "report/json_text.hpp"
 #include "report/schema.hpp"
-
-#include <algorithm>
+#include "report/summary_json.hpp"
 
 namespace formsieve::report {
 
@@ -159,13 +158,6 @@ Json range_json(const judge::ValidRange& range) {
   return json;
 }
 
-template <class Items, class Writer>
-Json list_json(const Items& items, Writer&& writer) {
-  Json list = Json::array();
-  for (const auto& item : items) list.push_back(writer(item));
-  return list;
-}
-
 Json candidate_json(const judge::Candidate& candidate) {
   Json json;
   json["rank"] = count_json(candidate.rank);
@@ -194,11 +186,6 @@ Json candidate_json(const judge::Candidate& candidate) {
   return json;
 }
 
-std::string criterion_text(judge::Criterion criterion) {
-  const auto named = [&](const auto& entry) { return entry.first == criterion; };
-  return std::string(std::find_if(kCriterionNames.begin(), kCriterionNames.end(), named)->second);
-}
-
 }  // namespace
 
 std::string shortlist_json(const judge::Shortlist& shortlist) {
@@ -215,6 +202,7 @@ std::string shortlist_json(const judge::Shortlist& shortlist) {
   json["menus"] = list_json(shortlist.menus, menu_json);
   json["picks"] = picks_json(shortlist.candidates);
   json["shortlist"] = list_json(shortlist.candidates, candidate_json);
+  json.update(summary_json(shortlist.summary, shortlist.responses));
   json["remarks"] = shortlist.remarks;
   json["cautions"] = shortlist.cautions;
   return json_text(json);

@@ -3,10 +3,11 @@
 #include <formsieve/report.hpp>
 
 #include "report/criterion_name.hpp"
+#include "report/form_reader.hpp"
 #include "report/json_reader.hpp"
 #include "report/schema.hpp"
+#include "report/summary_reader.hpp"
 
-#include <algorithm>
 #include <limits>
 #include <utility>
 
@@ -15,46 +16,6 @@ namespace formsieve::report {
 namespace {
 
 constexpr double kInfinity = std::numeric_limits<double>::infinity();
-
-/// A form whose parameters do not fit its kind could be neither printed nor evaluated.
-bool is_complete(const forms::Form& form) {
-  constexpr std::size_t kFewestKnots = 3;
-  const std::size_t n = form.parameters.size();
-  switch (form.kind) {
-    case forms::Kind::power:
-    case forms::Kind::box_cox:
-    case forms::Kind::yeo_johnson:
-      return n == 1;
-    case forms::Kind::fractional_polynomial:
-      return n == 2;
-    case forms::Kind::spline:
-      return n >= kFewestKnots;
-    case forms::Kind::levels:
-      return n == 0 && form.levels.size() >= 2;
-    default:
-      return n == 0;
-  }
-}
-
-forms::Form read_form(const Node& node) {
-  forms::Form form;
-  const Node name = node.at("form");
-  const std::string word = name.text();
-  const auto kind = forms::kind_from_name(word);
-  if (kind) form.kind = *kind;
-  if (!kind && name.present()) name.report("is '" + word + "', which is not a form");
-  const Node parameter = node.at("parameter");
-  if (parameter.is_list())
-    for (const Node& item : parameter.items()) form.parameters.push_back(item.number());
-  else if (const auto value = parameter.optional_number())
-    form.parameters = {*value};
-  form.reflect = node.at("reflect").optional_number();
-  form.shift = node.at("shift").number();
-  form.levels = node.get("levels").texts();
-  form.pooled = node.get("pooled").texts();
-  if (kind && !is_complete(form)) name.report("is '" + word + "', which does not go with its parameters or levels");
-  return form;
-}
 
 judge::DataSummary read_data(const Node& node) {
   judge::DataSummary data;
@@ -217,15 +178,6 @@ judge::Candidate read_candidate(const Node& node, const std::string& response_co
   return candidate;
 }
 
-judge::Criterion read_criterion(const Node& node) {
-  if (!node.present()) return judge::Criterion::cv_rmse;
-  const std::string word = node.text();
-  for (const auto& [criterion, name] : kCriterionNames)
-    if (word == name) return criterion;
-  node.report("is '" + word + "', and must be cv_rmse, aic, aicc or bic");
-  return judge::Criterion::cv_rmse;
-}
-
 /// A file of another layout must be told apart before its keys are looked for.
 void check_schema(const Node& root) {
   const Node schema = root.at("schema");
@@ -243,11 +195,12 @@ judge::Shortlist read_all(const Node& root) {
   shortlist.data = read_data(root.at("data"));
   shortlist.space = read_space(root.at("space"));
   shortlist.folds = read_folds(root.at("folds"));
-  shortlist.criterion = read_criterion(root.get("criterion"));
+  shortlist.criterion = read_criterion(root.get("criterion"), judge::Criterion::cv_rmse);
   if (const Node near_tie = root.get("near_tie"); near_tie.present()) shortlist.near_tie = near_tie.number();
   for (const Node& form : root.get("response_forms").items()) shortlist.responses.push_back(read_form(form));
   shortlist.response_notes = root.get("response_notes").texts();
   for (const Node& menu : root.get("menus").items()) shortlist.menus.push_back(read_menu(menu));
+  shortlist.summary = read_summary(root, shortlist.responses.size());
   for (const Node& item : root.at("shortlist").items())
     shortlist.candidates.push_back(read_candidate(item, shortlist.data.response));
   shortlist.remarks = root.get("remarks").texts();

@@ -152,6 +152,42 @@ judge::Candidate candidate(std::size_t rank, double rmse, double aic) {
   return one;
 }
 
+// One set of candidates: its error under each response form beside the best, its distance from the lowest AIC.
+judge::Standing standing(std::optional<double> loss_y, std::optional<double> loss_ln, std::optional<double> loss_root) {
+  judge::Standing made;
+  for (const auto& loss : {loss_y, loss_ln, loss_root}) {
+    judge::Reach reach;
+    if (loss) {
+      reach.cv_rmse_form = 0.2 * (1.0 + *loss);
+      reach.cv_loss_rel = loss;
+      reach.criterion_loss = 1000.0 * *loss;
+    }
+    made.by_response.push_back(reach);
+  }
+  return made;
+}
+
+judge::SpaceSummary summary() {
+  judge::SpaceSummary made;
+  made.responses.resize(3);
+  judge::PredictorProfile fills;
+  fills.column = "fill_percent";
+  fills.weight_share = 0.9812;
+  fills.choices = {{form(forms::Kind::identity), standing(0.001, 0.0123, 0.002)},
+                   {form(forms::Kind::sqrt, 101.0), standing(0.0, 0.0, 0.0)},
+                   {std::nullopt, standing(0.3, 0.055, 0.2)}};
+  judge::PredictorProfile areas;
+  areas.column = "floor_area";
+  areas.weight_share = 1.0;
+  areas.choices = {{form(forms::Kind::identity), standing(0.0, 0.41, 0.1)},
+                   {form(forms::Kind::sqrt), standing(0.02, 0.031, 0.0)},
+                   {form(forms::Kind::ln), standing(0.04, 0.0, 0.02)},
+                   {std::nullopt, standing(3.0, 2.2, 2.0)}};
+  made.predictors = {fills, areas};
+  made.by_terms = {{0, standing(3.1, 2.3, 2.1)}, {1, standing(0.4, 0.055, 0.2)}, {2, standing(0.0, 0.0, 0.0)}};
+  return made;
+}
+
 }  // namespace
 
 survey::Survey survey() {
@@ -187,6 +223,8 @@ judge::Shortlist shortlist() {
   last.cv.rmse.reset();
   last.cv.n_undefined = 3;
   made.candidates = {first, second, third, last};
+  made.responses = {form(forms::Kind::identity), form(forms::Kind::ln), form(forms::Kind::sqrt)};
+  made.summary = summary();
   made.remarks = {"The best by CV RMSE and the lowest AIC differ in the form of floor_area."};
   made.cautions = {"The winner's error is the smallest of 5,859,375 and therefore too small."};
   return made;

@@ -71,7 +71,7 @@ TEST_CASE("cli: a search that was stopped says how far it came", "[cli][unit]") 
 
 TEST_CASE("cli: the criterion of the plan decides which difference is shown", "[cli][unit]") {
   judge::Shortlist shortlist = samples::shortlist();
-  shortlist.criterion = judge::Criterion::bic;
+  shortlist.criterion = shortlist.summary.criterion = judge::Criterion::bic;
   const std::string page = shortlist_page(shortlist, "a.run", plain_terminal(80));
   CHECK(has(page, "ΔBIC"));
   CHECK_FALSE(has(page, "ΔAIC"));

@@ -40,8 +40,12 @@ class Maker {
   judge::ValidRange range();
   judge::PredictorMenu menu();
   Candidate candidate();
+  judge::SpaceSummary summary(std::size_t n_responses);
 
  private:
+  judge::Reach reach() { return {maybe(), maybe(), maybe(), maybe()}; }
+  judge::Standing standing(std::size_t n_responses);
+  judge::ScoreDistribution scores();
   std::mt19937_64 random_;
 };
 
@@ -151,6 +155,34 @@ Candidate Maker::candidate() {
   return c;
 }
 
+judge::Standing Maker::standing(std::size_t n_responses) {
+  judge::Standing standing{{}, maybe(), maybe(), maybe()};
+  for (std::size_t r = 0; r < n_responses; ++r) standing.by_response.push_back(reach());
+  return standing;
+}
+
+judge::ScoreDistribution Maker::scores() {
+  judge::ScoreDistribution scores;
+  scores.counts = several([&] { return static_cast<std::uint64_t>(count()); });
+  if (scores.counts.empty()) return scores;
+  for (std::size_t i = 0; i < scores.counts.size(); ++i) scores.edges.push_back(number());
+  scores.edges.push_back(coin() ? std::numeric_limits<double>::infinity() : number());
+  return scores;
+}
+
+judge::SpaceSummary Maker::summary(std::size_t n_responses) {
+  judge::SpaceSummary summary;
+  if (n_responses == 0) return summary;
+  summary.criterion = static_cast<judge::Criterion>(below(4));
+  for (std::size_t r = 0; r < n_responses; ++r) summary.responses.push_back({reach(), maybe(), scores()});
+  const auto choice = [&] {
+    return judge::FormStanding{coin() ? std::optional<forms::Form>(form()) : std::nullopt, standing(n_responses)};
+  };
+  summary.predictors = several([&] { return judge::PredictorProfile{text(), coin(), several(choice), maybe()}; });
+  summary.by_terms = several([&] { return judge::TermsStanding{count(), standing(n_responses)}; });
+  return summary;
+}
+
 /// Prints fields one after another, each with its length, so that no two shortlists print alike.
 class Printer {
  public:
@@ -200,6 +232,29 @@ class Printer {
   Printer& operator<<(const judge::PredictorMenu& m) {
     return *this << m.column << m.always << m.forms << m.labels << m.notes;
   }
+  Printer& operator<<(const judge::Reach& r) {
+    return *this << r.cv_rmse_form << r.cv_loss_rel << r.criterion << r.criterion_loss;
+  }
+  Printer& operator<<(const judge::Standing& s) {
+    return *this << s.by_response << s.criterion << s.criterion_loss << s.weight_share;
+  }
+  Printer& operator<<(const judge::FormStanding& f) {
+    *this << f.form.has_value();
+    if (f.form) *this << *f.form;
+    return *this << f.standing;
+  }
+  Printer& operator<<(const judge::PredictorProfile& p) {
+    return *this << p.column << p.always << p.choices << p.weight_share;
+  }
+  Printer& operator<<(const judge::TermsStanding& t) {
+    return *this << static_cast<std::uint64_t>(t.n_terms) << t.standing;
+  }
+  Printer& operator<<(const judge::ResponseProfile& r) {
+    return *this << r.best << r.weight_share << r.scores.edges << r.scores.counts;
+  }
+  Printer& operator<<(const judge::SpaceSummary& s) {
+    return *this << static_cast<std::uint64_t>(s.criterion) << s.responses << s.predictors << s.by_terms;
+  }
   Printer& operator<<(const Candidate& c);
   std::string text() const { return text_; }
 
@@ -239,11 +294,48 @@ Shortlist made_shortlist(std::uint64_t seed) {
   s.responses = make.several([&] { return make.form(); });
   s.response_notes = make.texts();
   s.menus = make.several([&] { return make.menu(); });
+  s.summary = make.summary(make.coin() ? s.responses.size() : 0);
   s.candidates = make.several([&] { return make.candidate(); });
   s.remarks = make.texts();
   s.cautions = make.texts();
   return s;
 }
+
+namespace {
+
+judge::Standing plain_standing(double loss) {
+  judge::Standing standing;
+  for (const double rmse : {80.0, 0.25}) {
+    judge::Reach reach;
+    reach.cv_rmse_form = rmse * (1.0 + loss);
+    reach.cv_loss_rel = loss;
+    reach.criterion = 600.5 + 100.0 * loss;
+    reach.criterion_loss = 100.0 * loss;
+    standing.by_response.push_back(reach);
+  }
+  standing.criterion = 600.5 + 100.0 * loss;
+  standing.criterion_loss = 100.0 * loss;
+  standing.weight_share = 0.5;
+  return standing;
+}
+
+/// For the two response forms and the first predictor of plain_shortlist().
+judge::SpaceSummary plain_summary() {
+  judge::SpaceSummary summary;
+  const judge::Standing best = plain_standing(0.0);
+  summary.responses = {{best.by_response[0], 0.25, {{0.0, 100.0, 200.0}, {3, 5}}},
+                       {best.by_response[1], 0.75, {{0.5, std::numeric_limits<double>::infinity()}, {8}}}};
+  forms::Form ln;
+  ln.kind = forms::Kind::ln;
+  judge::Standing nothing;
+  nothing.by_response.resize(2);
+  summary.predictors = {
+      {"floor_area", false, {{forms::Form{}, plain_standing(0.5)}, {ln, best}, {std::nullopt, nothing}}, 0.875}};
+  summary.by_terms = {{0, plain_standing(2.0)}, {1, best}};
+  return summary;
+}
+
+}  // namespace
 
 Shortlist plain_shortlist() {
   Shortlist s;
@@ -259,6 +351,7 @@ Shortlist plain_shortlist() {
   s.responses = {forms::Form{}, ln};
   s.menus = {{"floor_area", false, {forms::Form{}, ln}, {"floor_area", "ln(floor_area)"}, {}},
              {"fill, percent", false, {forms::Form{}, reflected}, {"fill, percent", "√(101 − fill, percent)"}, {}}};
+  s.summary = plain_summary();
   Candidate c;
   c.rank = 1;
   c.number = "834211";
@@ -295,7 +388,7 @@ std::string print_out(const Shortlist& s) {
       << s.space.set_aside_require << s.space.pool_formed << s.space.pool_margin;
   out << s.folds.count << s.folds.repeats << s.folds.seed << s.folds.kind;
   out << static_cast<std::uint64_t>(s.criterion) << s.near_tie << s.responses << s.response_notes << s.menus
-      << s.candidates << s.remarks << s.cautions;
+      << s.summary << s.candidates << s.remarks << s.cautions;
   return out.text();
 }
 

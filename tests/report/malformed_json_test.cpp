@@ -142,3 +142,45 @@ TEST_CASE("report: shortlist never crashes on arbitrary bytes", "[report][proper
        {std::string(300'000, '['), "{\"formsieve\":" + std::string(300'000, '[') + std::string(300'000, ']') + "}"})
     CHECK_FALSE(report::read_shortlist_json(deep, "x").ok());
 }
+
+TEST_CASE("report: shortlist whose summary does not fit its response forms is refused", "[report][unit]") {
+  const json whole = json::parse(report::shortlist_json(test::plain_shortlist()));
+  const auto message = [&](const char* pointer, const json& value) {
+    json changed = whole;
+    changed.at(json::json_pointer(pointer)) = value;
+    return refused(changed.dump()).message;
+  };
+  CHECK(message("/response_profile", json::array()) ==
+        "'response_profile' has 0 entries, and must have one for each of 2 response forms");
+  CHECK(message("/by_terms/1/by_response", json::array()) ==
+        "'by_terms[1].by_response' has 0 entries, and must have one for each of 2 response forms");
+  CHECK(message("/score_distribution/0/candidates", json::array({3})) ==
+        "'score_distribution[0].cv_rmse_form_scale' has 3 entries, and must have one more than 'candidates'");
+  CHECK_THAT(message("/form_profile/0/choices/1/form", "lin"), Catch::Contains("not a form"));
+}
+
+TEST_CASE("report: shortlist names the key when one of a summary is missing or wrong", "[report][unit]") {
+  const json whole = json::parse(report::shortlist_json(test::plain_shortlist()));
+  for (const char* top : {"response_profile", "form_profile", "by_terms", "score_distribution"}) {
+    std::vector<std::pair<json::json_pointer, std::string>> paths;
+    all_paths(whole.at(top), json::json_pointer("/" + std::string(top)), top, paths);
+    REQUIRE(paths.size() >= 4);
+    for (const auto& [pointer, path] : paths) {
+      INFO(path);
+      // the forms there repeat "response_forms" for the reader of the file
+      const std::string key = pointer.back();
+      if (path.starts_with("response_profile") &&
+          (key == "form" || key == "parameter" || key == "reflect" || key == "shift"))
+        continue;
+      json missing = whole;
+      missing.at(pointer.parent_pointer()).erase(pointer.back());
+      CHECK(refused(missing.dump()).message == "'" + path + "' is missing");
+      json wrong = whole;
+      wrong.at(pointer) = wrong.at(pointer).is_boolean() ? json(3) : json(true);
+      CHECK_THAT(refused(wrong.dump()).message, Catch::StartsWith("'" + path + "'"));
+    }
+  }
+  json missing = whole;
+  missing.erase("by_terms");
+  CHECK(refused(missing.dump()).message == "'by_terms' is missing");
+}

@@ -144,3 +144,40 @@ TEST_CASE("report: shortlist seeds beyond 2^53 are text, smaller ones numbers", 
   s.folds.seed = 20261201;
   CHECK(ordered_json::parse(report::shortlist_json(s)).at("folds").at("seed") == 20261201);
 }
+
+TEST_CASE("report: shortlist says what each form costs, number by number", "[report][golden]") {
+  const auto written = ordered_json::parse(report::shortlist_json(test::plain_shortlist()));
+  CHECK(written.at("summary_criterion") == "aic");
+  const auto& response = written.at("response_profile").at(1);
+  CHECK(response.at("form") == "ln");
+  CHECK(response.at("weight_share") == 0.75);
+  CHECK(response.at("cv_rmse_form_scale") == 0.25);
+  const auto& predictor = written.at("form_profile").at(0);
+  CHECK(predictor.at("column") == "floor_area");
+  CHECK(predictor.at("weight_share") == 0.875);
+  const auto& untransformed = predictor.at("choices").at(0);
+  CHECK(untransformed.at("form") == "identity");
+  CHECK(untransformed.at("criterion") == 650.5);
+  CHECK(untransformed.at("criterion_loss") == 50.0);
+  CHECK(untransformed.at("weight_share") == 0.5);
+  CHECK(untransformed.at("by_response").at(0) ==
+        ordered_json{{"cv_rmse_form_scale", 120.0}, {"cv_loss", 0.5}, {"criterion", 650.5}, {"criterion_loss", 50.0}});
+  const auto& left_out = predictor.at("choices").at(2);
+  CHECK(left_out.at("form").is_null());
+  CHECK(left_out.at("by_response").at(1).at("cv_loss").is_null());
+  CHECK(written.at("by_terms").at(0).at("terms") == 0);
+  CHECK(written.at("by_terms").at(0).at("by_response").at(1).at("cv_loss") == 2.0);
+  CHECK(written.at("score_distribution").at(0) ==
+        ordered_json{{"cv_rmse_form_scale", {0.0, 100.0, 200.0}}, {"candidates", {3, 5}}});
+  CHECK(written.at("score_distribution").at(1).at("cv_rmse_form_scale").at(1).is_null());
+}
+
+TEST_CASE("report: shortlist without a summary has no keys of one and reads back without it", "[report][unit]") {
+  judge::Shortlist s = test::plain_shortlist();
+  s.summary = {};
+  const std::string text = report::shortlist_json(s);
+  const auto written = ordered_json::parse(text);
+  for (const char* key : {"summary_criterion", "response_profile", "form_profile", "by_terms", "score_distribution"})
+    CHECK_FALSE(written.contains(key));
+  CHECK(read_back(text).summary.empty());
+}

@@ -108,6 +108,63 @@ struct PredictorMenu {
   std::vector<std::string> notes;  ///< struck and merged forms with their reasons
 };
 
+/// How far the best of a set of candidates of one response form gets. Unset where none of the set was scored, or where
+/// the score does not exist (an exact fit, a likelihood without a density).
+struct Reach {
+  std::optional<double> cv_rmse_form;    ///< lowest cross-validated RMSE, response form's scale
+  std::optional<double> cv_loss_rel;     ///< that over the lowest of all candidates of the response form, less 1
+  std::optional<double> criterion;       ///< lowest of the information criterion
+  std::optional<double> criterion_loss;  ///< that less the lowest of all candidates under any response form
+};
+
+/// The same set under every response form, and over all of them.
+struct Standing {
+  std::vector<Reach> by_response;  ///< [response forms]
+  std::optional<double> criterion, criterion_loss;
+  std::optional<double> weight_share;  ///< 0 … 1, of the summed exp(−criterion/2) of all candidates (Akaike 1979)
+};
+
+/// One form of a predictor, or leaving it out.
+struct FormStanding {
+  std::optional<forms::Form> form;  ///< unset: left out
+  Standing standing;
+};
+
+struct PredictorProfile {
+  std::string column;
+  bool always = false;                 ///< absence was not a choice
+  std::vector<FormStanding> choices;   ///< in the order of the menu, left out last unless `always`
+  std::optional<double> weight_share;  ///< of the candidates that have the predictor
+};
+
+struct TermsStanding {
+  std::size_t n_terms = 0;  ///< predictors present
+  Standing standing;
+};
+
+/// Candidates by cross-validated RMSE on the response form's scale.
+struct ScoreDistribution {
+  std::vector<double> edges;  ///< [counts + 1] rising; the first may be 0 and the last +infinity
+  std::vector<std::uint64_t> counts;
+};
+
+struct ResponseProfile {
+  Reach best;
+  std::optional<double> weight_share;
+  ScoreDistribution scores;
+};
+
+/// What the screen says of all the candidates that it scored, exact over them. Empty when it was not made. Figures are
+/// rounded to nine digits, losses and shares to fewer, so that they are the same on every machine.
+struct SpaceSummary {
+  Criterion criterion = Criterion::aic;      ///< AICc or BIC where the plan ranks by it
+  std::vector<ResponseProfile> responses;    ///< in the order of Shortlist::responses
+  std::vector<PredictorProfile> predictors;  ///< in plan order
+  std::vector<TermsStanding> by_terms;       ///< rising, numbers of terms that were scored
+
+  bool empty() const noexcept { return responses.empty(); }
+};
+
 struct Shortlist {
   std::string formsieve;  ///< version that wrote it
   DataSummary data;
@@ -118,6 +175,7 @@ struct Shortlist {
   std::vector<forms::Form> responses;
   std::vector<std::string> response_notes;
   std::vector<PredictorMenu> menus;
+  SpaceSummary summary;
   std::vector<Candidate> candidates;  ///< the first `rank.shortlist` by rank, then named lines that lie further down
   std::vector<std::string> remarks;   ///< sentences about the whole result (picks that differ, folds reduced, …)
   std::vector<std::string> cautions;  ///< said once per result
