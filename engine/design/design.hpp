@@ -93,4 +93,17 @@ Result<Folds> make_folds(std::span<const std::size_t> table_rows, const FoldRequ
 /// is the same on every row, a weight that is not a positive number.
 Result<base::GramSet> build_grams(const Data& data, const Folds& folds, unsigned threads);
 
+/// What a set of Gram matrices is made from, as far as memory is concerned.
+struct GramSize {
+  std::size_t n_rows = 0;
+  std::size_t order = 0;  ///< design columns and response forms
+  std::size_t folds = 0, repeats = 1;
+  bool weighted = false;
+};
+/// Bytes of the matrices that build_grams returns: (1 + 2 · folds · repeats) · order² numbers.
+double gram_bytes(const GramSize& size);
+/// Bytes that build_grams takes beyond those matrices at its widest moment, within a few per cent: the sums of all
+/// parts of one repeat, the sums of the folds, and the blocks of rows of each thread.
+double gram_building_bytes(const GramSize& size, unsigned threads);
+
 }  // namespace formsieve::design

@@ -39,12 +39,15 @@ struct Part {
   std::vector<std::uint32_t> rows;
 };
 
+std::size_t rows_in_part(std::size_t n_rows) {
+  return base::kRowChunk * std::max(kFewestChunks, n_rows / base::kRowChunk / kMostParts);
+}
+
 /// The rows of each fold cut into parts, by the rows and folds alone.
 std::vector<Part> cut(const std::vector<std::uint32_t>& fold_of, std::size_t n_folds) {
   std::vector<std::vector<std::uint32_t>> rows(n_folds);
   for (std::size_t i = 0; i < fold_of.size(); ++i) rows[fold_of[i]].push_back(static_cast<std::uint32_t>(i));
-  const std::size_t n_chunks = fold_of.size() / base::kRowChunk;
-  const std::size_t part_size = base::kRowChunk * std::max(kFewestChunks, n_chunks / kMostParts);
+  const std::size_t part_size = rows_in_part(fold_of.size());
   std::vector<Part> parts;
   for (std::size_t fold = 0; fold < n_folds; ++fold) {
     const auto& all = rows[fold];
@@ -244,6 +247,20 @@ class FoldSums {
 };
 
 }  // namespace
+
+double gram_bytes(const GramSize& size) {
+  const double order = static_cast<double>(size.order);
+  return (1.0 + 2.0 * static_cast<double>(size.folds * size.repeats)) * order * order * sizeof(double);
+}
+
+double gram_building_bytes(const GramSize& size, unsigned threads) {
+  const double order = static_cast<double>(size.order);
+  const double n_parts = static_cast<double>(size.folds + size.n_rows / rows_in_part(size.n_rows));
+  const double sums = n_parts * (size.weighted ? 2.0 : 1.0);
+  const double joined_after = static_cast<double>(size.folds) + 3.0;
+  const double blocks = threads * (2.0 * base::kRowChunk + order) * order;
+  return ((sums + joined_after) * order * order + blocks) * sizeof(double);
+}
 
 Result<base::GramSet> build_grams(const Data& data, const Folds& folds, unsigned threads) {
   auto sums = FoldSums::start(data, folds, threads);
