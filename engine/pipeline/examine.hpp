@@ -14,6 +14,12 @@
 
 namespace formsieve::pipeline {
 
+/// What the own-scale likelihood has beside the residual sum of squares (design.md, "Own-scale likelihood").
+struct LikelihoodConstants {
+  std::vector<double> log_jacobian;  ///< [response forms] Σ ln|g′(y_i)|
+  double half_log_weights = 0.0;     ///< ½ Σ ln w_i
+};
+
 /// What ranking needs to know of one pooled candidate.
 struct Examined {
   search::Choice choice;
@@ -35,6 +41,9 @@ class Examiner {
   /// Fills in the rest of a scored candidate: coefficients with standard errors, R², checks, back-transformation,
   /// ranges, equation, cautions.
   Status complete(const search::Choice& choice, judge::Candidate& candidate) const;
+
+  /// What turns residual sums of squares into own-scale likelihoods.
+  LikelihoodConstants likelihood_constants() const { return {log_jacobian_, half_log_weights_}; }
 
  private:
   struct Prediction;

@@ -12,6 +12,7 @@
 #include "pipeline/outputs.hpp"
 #include "pipeline/pool.hpp"
 #include "pipeline/prepare.hpp"
+#include "pipeline/profile.hpp"
 #include "search/walk.hpp"
 
 #include <spdlog/spdlog.h>
@@ -132,6 +133,7 @@ Status Search::open_outputs() {
 search::WalkOptions Search::walk_options() const {
   search::WalkOptions options;
   options.rules = rules_;
+  options.summary_penalty = summary_penalty(*prepared_, criterion_of(plan_.rank.by));
   options.threads = options_.threads;
   return options;
 }
@@ -247,6 +249,8 @@ void Search::describe() {
   shortlist_.responses = prepared_->data.response_forms;
   shortlist_.response_notes = prepared_->response_notes;
   shortlist_.menus = prepared_->menus;
+  shortlist_.summary =
+      space_summary(walked_.summary, *prepared_, shortlist_.criterion, examiner_->likelihood_constants());
   auto& space = shortlist_.space;
   space.scored = std::to_string(walked_.n_scored);
   space.inseparable = walked_.n_inseparable.str();

@@ -1,0 +1,27 @@
+// The whole space in figures: from the walk's by-products to the result types of judge.
+#pragma once
+
+#include <formsieve/judge.hpp>
+
+#include "pipeline/examine.hpp"
+#include "pipeline/prepare.hpp"
+#include "search/walk.hpp"
+
+#include <vector>
+
+namespace formsieve::pipeline {
+
+/// AIC, or the plan's criterion when that is a sibling of it.
+judge::Criterion summary_criterion(judge::Criterion ranked_by);
+
+/// Penalty of that criterion by number of design columns without the intercept, 0 … the most that a candidate of the
+/// space can have; for search::WalkOptions::summary_penalty.
+std::vector<double> summary_penalty(const Prepared& prepared, judge::Criterion ranked_by);
+
+/// The form profile, the best of each number of terms, the shares of weight and the distribution of scores. `summary`
+/// was made with summary_penalty(); an empty one gives an empty result. Criteria are those of the examination, so that
+/// the two can be compared. Cost: nothing depends on rows or candidates.
+judge::SpaceSummary space_summary(const search::Summary& summary, const Prepared& prepared, judge::Criterion ranked_by,
+                                  const LikelihoodConstants& constants);
+
+}  // namespace formsieve::pipeline
