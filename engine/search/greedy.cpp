@@ -3,6 +3,7 @@
 #include <algorithm>
 #include <cmath>
 #include <limits>
+#include <utility>
 
 namespace formsieve::search {
 
@@ -74,8 +75,9 @@ std::vector<Option> options_of(const OuterTree& tree) {
 
 }  // namespace
 
-double greedy_penalised_rss(const OuterTree& tree, const OuterGrams& root, std::size_t response,
-                            const std::vector<double>& factor, double smallest_pivot_rel) {
+Greedy forward_selection(const OuterTree& tree, const OuterGrams& root, std::size_t response,
+                         const std::vector<double>& factor, double smallest_pivot_rel) {
+  std::vector<std::size_t> selected;
   Forward model(root, response, smallest_pivot_rel);
   std::vector<Option> options = options_of(tree);
   std::size_t n_columns = 0;
@@ -86,8 +88,7 @@ double greedy_penalised_rss(const OuterTree& tree, const OuterGrams& root, std::
     const Option* pick = nullptr;
     for (const Option& option : options) {
       if (forced && !option.always) continue;
-      const double score =
-          model.rss_with(option.first, option.n_columns) * factor[n_columns + option.n_columns];
+      const double score = model.rss_with(option.first, option.n_columns) * factor[n_columns + option.n_columns];
       if (score < found) {
         found = score;
         pick = &option;
@@ -98,9 +99,10 @@ double greedy_penalised_rss(const OuterTree& tree, const OuterGrams& root, std::
     n_columns += pick->n_columns;
     if (terms + 1 >= tree.n_always()) best = std::min(best, found);
     const std::size_t predictor = pick->predictor;
+    selected.push_back(predictor);
     std::erase_if(options, [&](const Option& option) { return option.predictor == predictor; });
   }
-  return best;
+  return {best, std::move(selected)};
 }
 
 }  // namespace formsieve::search

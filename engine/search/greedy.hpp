@@ -1,4 +1,4 @@
-// A good candidate by penalised RSS, found quickly: the unit of the Akaike weights.
+// A good candidate by penalised RSS, found quickly: the unit of the Akaike weights, and which predictors matter.
 #pragma once
 
 #include "search/outer_grams.hpp"
@@ -9,9 +9,14 @@
 
 namespace formsieve::search {
 
-/// The smallest RSS · factor[k] met by forward selection: at each step the form that lowers it most. Not the best of the
-/// space, but near it. `factor`: [most columns + 1]; infinite entries are passed over. Cost: a few Gram eliminations.
-double greedy_penalised_rss(const OuterTree& tree, const OuterGrams& root, std::size_t response,
-                            const std::vector<double>& factor, double smallest_pivot_rel);
+struct Greedy {
+  double penalised_rss;                 ///< the smallest RSS · factor[k] met; infinite when there is none
+  std::vector<std::size_t> predictors;  ///< in the order of selection, as long as each lowered it
+};
+
+/// Forward selection: at each step the form that lowers RSS · factor[k] most. Not the best of the space, but near it.
+/// `factor`: [most columns + 1]; infinite entries are passed over. Cost: a few Gram eliminations.
+Greedy forward_selection(const OuterTree& tree, const OuterGrams& root, std::size_t response,
+                         const std::vector<double>& factor, double smallest_pivot_rel);
 
 }  // namespace formsieve::search

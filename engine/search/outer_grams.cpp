@@ -18,7 +18,9 @@ double OuterGrams::cv_sse(std::size_t response) const {
   return sum;
 }
 
-double OuterGrams::rss(std::size_t response) const { return training(n_folds_)[(n_columns_ + response) * (order() + 1)]; }
+double OuterGrams::rss(std::size_t response) const {
+  return training(n_folds_)[(n_columns_ + response) * (order() + 1)];
+}
 
 OuterGrams outer_root(const OuterTree& tree, const base::GramSet& grams, std::size_t first_response,
                       std::size_t n_responses) {
@@ -27,7 +29,8 @@ OuterGrams outer_root(const OuterTree& tree, const base::GramSet& grams, std::si
   for (std::size_t r = 0; r < n_responses; ++r) from.push_back(grams.n_columns + first_response + r);
   const auto copy = [&](const std::vector<double>& matrix, double* out) {
     for (std::size_t i = 0; i < from.size(); ++i)
-      for (std::size_t j = 0; j < from.size(); ++j) out[i * from.size() + j] = matrix[from[i] * grams.order() + from[j]];
+      for (std::size_t j = 0; j < from.size(); ++j)
+        out[i * from.size() + j] = matrix[from[i] * grams.order() + from[j]];
   };
   for (std::size_t f = 0; f < grams.n_folds; ++f) {
     copy(grams.training[f], root.training(f));

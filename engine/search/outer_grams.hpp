@@ -9,8 +9,8 @@
 
 namespace formsieve::search {
 
-/// Dense symmetric matrices of every fold, and of all rows after them, in the order of OuterTree::gram_column() with the
-/// responses after the columns. A node uses the columns that are still open and the responses; the rest is stale.
+/// Dense symmetric matrices of every fold, and of all rows after them, in the order of OuterTree::gram_column() with
+/// the responses after the columns. A node uses the columns that are still open and the responses; the rest is stale.
 class OuterGrams {
  public:
   OuterGrams(std::size_t n_columns, std::size_t n_responses, std::size_t n_folds);

@@ -33,8 +33,7 @@ std::size_t sum_of_largest(std::vector<std::size_t> widths, std::size_t most) {
 
 template <class Key>
 std::vector<std::size_t> sorted(std::vector<std::size_t> predictors, const Key& key) {
-  std::stable_sort(predictors.begin(), predictors.end(),
-                   [&](std::size_t a, std::size_t b) { return key(a) < key(b); });
+  std::stable_sort(predictors.begin(), predictors.end(), [&](std::size_t a, std::size_t b) { return key(a) < key(b); });
   return predictors;
 }
 
@@ -48,7 +47,7 @@ void multiply(std::vector<std::uint64_t>& counts, std::uint64_t absent, std::uin
 
 }  // namespace
 
-OuterTree::OuterTree(const Space& space)
+OuterTree::OuterTree(const Space& space, const std::vector<std::size_t>& strong)
     : n_responses_(space.n_responses),
       n_predictors_(space.predictors.size()),
       n_simple_(space.predictors.size(), 0),
@@ -74,7 +73,8 @@ OuterTree::OuterTree(const Space& space)
 
   // at the bottom those with most forms, so that few nodes hold many candidates, as long as they fill one vector
   const auto forms_falling = [&](std::size_t j) {
-    return std::tuple(n_simple_[j] > kLanes, -static_cast<std::ptrdiff_t>(n_simple_[j]));
+    const auto rank = std::find(strong.begin(), strong.end(), j);
+    return std::tuple(-(rank - strong.begin()), n_simple_[j] > kLanes, -static_cast<std::ptrdiff_t>(n_simple_[j]));
   };
   for (const std::size_t j : sorted(simple, forms_falling)) {
     SimplePredictor entry{j, {}, gram_column_.size()};
@@ -132,9 +132,8 @@ std::uint64_t OuterTree::size(std::span<const std::size_t> path) const {
 std::vector<std::size_t> OuterTree::open_simple(std::span<const std::size_t> path) const {
   std::vector<std::size_t> open;
   for (std::size_t s = 0; s < simple_.size(); ++s) {
-    const bool taken = std::any_of(path.begin(), path.end(), [&](std::size_t form) {
-      return forms_[form].predictor == simple_[s].predictor;
-    });
+    const bool taken = std::any_of(path.begin(), path.end(),
+                                   [&](std::size_t form) { return forms_[form].predictor == simple_[s].predictor; });
     if (!taken) open.push_back(s);
   }
   return open;

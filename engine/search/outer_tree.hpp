@@ -2,8 +2,8 @@
 //
 // A candidate is a set of forms. Its forms of predictors that are always in, and its forms of several columns, are
 // picked first, one by one, in the outer tree; below every outer node the pair kernel takes all sets of single-column
-// forms of the other predictors. A predictor with both kinds of forms takes part in both: where the outer tree has picked
-// one of its wide forms, the kernel leaves it out.
+// forms of the other predictors. A predictor with both kinds of forms takes part in both: where the outer tree has
+// picked one of its wide forms, the kernel leaves it out.
 #pragma once
 
 #include "search/pair_kernel.hpp"
@@ -37,7 +37,10 @@ using OuterPath = std::vector<std::size_t>;
 
 class OuterTree {
  public:
-  explicit OuterTree(const Space& space);
+  /// `strong`: predictors (in plan order, strongest first) that the kernel picks first, so that what stays open to the
+  /// bottom are those that matter least: there the best with any form, and without, are close to each other, and a
+  /// node is seldom better than what is known.
+  explicit OuterTree(const Space& space, const std::vector<std::size_t>& strong = {});
 
   std::size_t n_responses() const { return n_responses_; }
   std::size_t n_predictors() const { return n_predictors_; }

@@ -64,14 +64,26 @@ std::size_t lane_cell(const PairWork& w, std::size_t r, std::size_t lane) {
   return r * padded(w.shape->n_lanes()) + lane;
 }
 
+/// 1 / d, within two units of the last place.
+HWY_INLINE Vector reciprocal(Vector d) {
+#if HWY_TARGET == HWY_AVX3
+  // 14 bits, then one step of third order: the divider would take twice as long
+  const Vector x{_mm512_rcp14_pd(d.raw)};
+  const Vector e = hn::NegMulAdd(d, x, all(1.0));
+  return hn::MulAdd(x, hn::MulAdd(e, e, e), x);
+#else
+  return hn::Div(all(1.0), d);
+#endif
+}
+
 // ---- what one vector of scores means -------------------------------------------------------------------------------
 
 /// The candidates of one vector: the path, a row's lane, and the lanes from `first_lane` on.
 struct Place {
-  std::size_t level;   ///< lanes on the path
-  std::size_t row;     ///< PairSink::kNone for single columns
-  std::size_t picks;   ///< of the candidate
-  std::size_t node;    ///< whose tally they belong to
+  std::size_t level;  ///< lanes on the path
+  std::size_t row;    ///< PairSink::kNone for single columns
+  std::size_t picks;  ///< of the candidate
+  std::size_t node;   ///< whose tally they belong to
   std::size_t first_lane;
 };
 
@@ -87,18 +99,33 @@ HWY_NOINLINE void rescale_weights(PairWork& w, std::size_t r, double log_weight)
   scale(w.tally.weight_column + column_cell(w, r, 0), shape.n_lanes() * kCell);
   scale(w.tally.weight_lane + lane_cell(w, r, 0), padded(shape.n_lanes()));
   scale(w.tally.weight_picks + picks_cell(w, r, 0), (shape.most_picks + 1) * kCell);
-  for (std::size_t level = 0; level <= shape.most_picks; ++level) scale(w.tally.weight_node + node_cell(w, level, r), kCell);
+  for (std::size_t level = 0; level <= shape.most_picks; ++level)
+    scale(w.tally.weight_node + node_cell(w, level, r), kCell);
+}
+
+/// ln x. Where weights matter on a narrow range about 1, as with many rows, a short series of
+/// 2 artanh((x − 1)/(x + 1)) keeps all the digits that half_n · ln x needs.
+HWY_INLINE Vector logarithm(const PairWork& w, Vector x) {
+  constexpr double kNarrow = 1.3;
+  const bool narrow = w.weight_range < kNarrow && hn::AllTrue(kTag, hn::Gt(x, all(1.0 / kNarrow)));
+  if (!narrow) return hn::Log(kTag, x);
+  const Vector s = hn::Div(hn::Sub(x, all(1.0)), hn::Add(x, all(1.0)));
+  const Vector q = hn::Mul(s, s);
+  Vector series = all(2.0 / 11.0);
+  for (const double term : {2.0 / 9.0, 2.0 / 7.0, 2.0 / 5.0, 2.0 / 3.0, 2.0}) series = hn::MulAdd(series, q, all(term));
+  return hn::Mul(s, series);
 }
 
 HWY_NOINLINE void add_weights(PairWork& w, const Place& at, std::size_t r, Vector penalised) {
   const auto wanted = hn::Le(penalised, all(w.weight_limit[r]));
   const Vector floor = all(2.0 * kExactFit * w.half_n);
   const auto log_weight = [&] {
-    const Vector x = hn::Div(hn::Max(penalised, floor), all(w.weight_unit[r]));
-    return hn::IfThenElse(wanted, hn::Mul(all(-w.half_n), hn::Log(kTag, x)), all(-kInfinity));
+    // lanes beyond the limit are of no interest, and may be infinite
+    const Vector x = hn::Div(hn::Max(hn::Min(penalised, all(w.weight_limit[r])), floor), all(w.weight_unit[r]));
+    return hn::Mul(all(-w.half_n), logarithm(w, x));
   };
   Vector logs = log_weight();
-  if (!hn::AllFalse(kTag, hn::Gt(logs, all(kLargestLogWeight)))) {
+  if (HWY_UNLIKELY(!hn::AllFalse(kTag, hn::Gt(logs, all(kLargestLogWeight))))) {
     HWY_ALIGN double lanes[kLanes];
     store(logs, lanes);
     rescale_weights(w, r, *std::max_element(lanes, lanes + kWidth));
@@ -127,61 +154,117 @@ HWY_INLINE unsigned bits_of(Mask mask) {
   hn::StoreMaskBits(kTag, mask, bits);
   return bits[0];
 }
+HWY_INLINE auto mask_of(unsigned bits) {
+  const uint8_t bytes[8] = {static_cast<uint8_t>(bits)};
+  return hn::LoadMaskBits(kTag, bytes);
+}
 
-HWY_INLINE void count_in_histogram(std::uint64_t* histogram, Vector cv, unsigned lanes) {
+/// Counts the lanes by bin, two at a time: one step of a table of pairs of bins, which close_histogram() adds up. Lanes
+/// that are no candidates are infinite, hence in the last bin.
+HWY_INLINE void count_in_histogram(PairWork& w, std::size_t r, Vector cv) {
+  std::uint32_t* const pairs = w.tally.histogram_pairs + r * Summary::kBins * Summary::kBins;
   const hn::RebindToSigned<Tag> integers;
-  // eight bins to an octave: exponent and the first three bits of the fraction, from 2^−40 on
-  const auto bin = hn::Sub(hn::ShiftRight<49>(hn::BitCast(integers, cv)), hn::Set(integers, (1023 - 40) * 8));
+  // four bins to an octave: exponent and the first two bits of the fraction
+  const auto bin = hn::Sub(hn::ShiftRight<50>(hn::BitCast(integers, cv)), hn::Set(integers, w.tally.first_bin[r]));
   const auto within = hn::Min(hn::Max(bin, hn::Zero(integers)), hn::Set(integers, Summary::kBins - 1));
   HWY_ALIGN std::int64_t bins[kLanes];
   hn::StoreU(within, integers, bins);
-  for (; lanes != 0; lanes &= lanes - 1) ++histogram[bins[__builtin_ctz(lanes)]];
+  if constexpr (kWidth == 1) {
+    ++pairs[static_cast<std::size_t>(bins[0]) * Summary::kBins + Summary::kBins - 1];
+  } else {
+    for (std::size_t i = 0; i < kWidth; i += 2)
+      ++pairs[static_cast<std::size_t>(bins[i]) * Summary::kBins + static_cast<std::size_t>(bins[i + 1])];
+  }
 }
 
-/// Takes the scores of one vector: lists, tallies, counts. `inside` has a bit for each lane that is a candidate.
-/// What is inseparable or outside comes back as infinity.
-template <int R, bool kTally>
-HWY_INLINE void account(PairWork& w, const Place& at, unsigned inside, Vector smallest, Vector (&cv)[R],
-                        Vector (&rss)[R], double factor, Vector (&penalised)[R]) {
-  const Vector infinite = all(kInfinity);
-  unsigned valid = inside;
-  // true also for what is not a number
-  unsigned bad = ~bits_of(hn::Gt(smallest, all(w.smallest_pivot))) & inside;
-  for (int r = 0; r < R; ++r) {
-    cv[r] = hn::Max(cv[r], hn::Zero(kTag));
-    rss[r] = hn::Max(rss[r], hn::Zero(kTag));
-  }
-  if (HWY_UNLIKELY(bad != 0)) {
-    w.n_inseparable += static_cast<std::uint64_t>(__builtin_popcount(bad)) * R;
-    valid &= ~bad;
-  }
-  w.n_scored += static_cast<std::uint64_t>(__builtin_popcount(valid)) * R;
-  constexpr unsigned kAll = (1U << kWidth) - 1;
-  if (valid != kAll) {
-    uint8_t bits[8] = {static_cast<uint8_t>(valid)};
-    const auto keep = hn::LoadMaskBits(kTag, bits);
-    for (int r = 0; r < R; ++r) {
-      cv[r] = hn::IfThenElse(keep, cv[r], infinite);
-      rss[r] = hn::IfThenElse(keep, rss[r], infinite);
-    }
-  }
-  const std::size_t k = w.outer_columns + at.picks;
-  for (int r = 0; r < R; ++r) {
-    const auto hits = hn::Or(hn::Le(cv[r], all(w.limit_cv[r])), hn::Le(rss[r], all(w.limit_rss[k * R + r])));
-    if (HWY_UNLIKELY(!hn::AllFalse(kTag, hits))) {
-      const unsigned mask = bits_of(hits) & valid;
-      if (mask != 0) offer(w, at, static_cast<std::size_t>(r), mask, cv[r], rss[r]);
-    }
-  }
-  if constexpr (kTally) {
-    for (int r = 0; r < R; ++r) {
-      penalised[r] = hn::Mul(rss[r], all(factor));
-      if (HWY_UNLIKELY(!hn::AllFalse(kTag, hn::Le(penalised[r], all(w.weight_limit[r])))))
-        add_weights(w, at, static_cast<std::size_t>(r), penalised[r]);
-      count_in_histogram(w.tally.histogram + static_cast<std::size_t>(r) * Summary::kBins, cv[r], valid);
+/// Adds the pairs counted so far up; the table would overflow some time.
+HWY_NOINLINE void add_pairs_of_bins(PairWork& w) {
+  if (!w.tally.wanted) return;
+  constexpr std::size_t n = Summary::kBins;
+  for (std::size_t r = 0; r < w.n_responses; ++r) {
+    std::uint32_t* const pairs = w.tally.histogram_pairs + r * n * n;
+    std::uint64_t* const bins = w.tally.histogram + r * n;
+    for (std::size_t i = 0; i < n; ++i) {
+      for (std::size_t j = 0; j < n; ++j) {
+        bins[i] += pairs[i * n + j];
+        bins[j] += pairs[i * n + j];
+        pairs[i * n + j] = 0;
+      }
     }
   }
 }
+
+/// The scores of the pairs of one row predictor (or of the single columns) at a node, before they are taken: vectors of
+/// held-out SSE and RSS, lanes that are no candidates infinite.
+template <int R>
+struct Batch {
+  Place at;              ///< of the first vector
+  double factor;         ///< penalised RSS = RSS · factor
+  std::size_t n_rows;    ///< vectors stand row by row …
+  std::size_t n_blocks;  ///< … and block by block of kWidth lanes
+  const double* cv[R];
+  const double* rss[R];
+  std::size_t row_stride, block_stride;  ///< between vectors, in numbers
+  Vector least_cv[R], least_rss[R];      ///< minima over the vectors
+};
+
+/// Shows the lists what they may want and adds the weights that matter.
+template <int R, bool kTally>
+HWY_INLINE void take(PairWork& w, const Batch<R>& batch) {
+  const std::size_t k = w.outer_columns + batch.at.picks;
+  for (std::size_t r = 0; r < R; ++r) {
+    const auto each = [&](const auto& body) {
+      Place at = batch.at;
+      for (std::size_t i = 0; i < batch.n_rows; ++i) {
+        if (at.row != PairSink::kNone) at.row = batch.at.row + i;
+        for (std::size_t b = 0; b < batch.n_blocks; ++b) {
+          at.first_lane = batch.at.first_lane + b * kWidth;
+          const std::size_t offset = i * batch.row_stride + b * batch.block_stride;
+          body(at, load(batch.cv[r] + offset), load(batch.rss[r] + offset));
+        }
+      }
+    };
+    const auto wanted = [&](Vector cv, Vector rss) {
+      return hn::Or(hn::Le(cv, all(w.limit_cv[r])), hn::Le(rss, all(w.limit_rss[k * R + r])));
+    };
+    if (HWY_UNLIKELY(!hn::AllFalse(kTag, wanted(batch.least_cv[r], batch.least_rss[r])))) {
+      each([&](const Place& at, Vector cv, Vector rss) {
+        // infinite lanes are no candidates, even while a list takes anything
+        const auto hits = hn::And(wanted(cv, rss), hn::Lt(cv, all(kInfinity)));
+        if (!hn::AllFalse(kTag, hits)) offer(w, at, r, bits_of(hits), cv, rss);
+      });
+    }
+    if constexpr (kTally) {
+      const auto weighs = [&](Vector rss) { return hn::Le(hn::Mul(rss, all(batch.factor)), all(w.weight_limit[r])); };
+      if (HWY_UNLIKELY(!hn::AllFalse(kTag, weighs(batch.least_rss[r])))) {
+        each([&](const Place& at, Vector, Vector rss) {
+          if (!hn::AllFalse(kTag, weighs(rss))) add_weights(w, at, r, hn::Mul(rss, all(batch.factor)));
+        });
+      }
+    }
+  }
+}
+
+/// Counts the lanes of a vector whose smallest pivot is too small, and makes their scores infinite.
+template <int R>
+HWY_NOINLINE void set_aside(PairWork& w, unsigned inside, Vector smallest, Vector (&cv)[R], Vector (&rss)[R]) {
+  // not "<=": also what is not a number
+  const auto good = hn::Gt(smallest, all(w.smallest_pivot));
+  const unsigned bad = ~bits_of(good) & inside;
+  const auto n_bad = static_cast<std::uint64_t>(__builtin_popcount(bad)) * R;
+  w.n_inseparable += n_bad;
+  w.n_scored -= n_bad;
+  for (int r = 0; r < R; ++r) {
+    cv[r] = hn::IfThenElse(good, cv[r], all(kInfinity));
+    rss[r] = hn::IfThenElse(good, rss[r], all(kInfinity));
+  }
+}
+
+HWY_INLINE bool all_separable(const PairWork& w, Vector smallest) {
+  return hn::AllTrue(kTag, hn::Gt(smallest, all(w.smallest_pivot)));
+}
+
+HWY_INLINE Vector at_least_zero(Vector v) { return hn::Max(v, hn::Zero(kTag)); }
 
 // ---- bringing in a column ------------------------------------------------------------------------------------------
 
@@ -244,11 +327,10 @@ HWY_INLINE void add_pair(Vector ra, Vector ua, Vector inverse_a, Vector v_a, con
   const Vector d = hn::NegMulAdd(m, ra, a_b);
   const Vector v = hn::MulAdd(m, hn::MulSub(m, v_a, ua), v_b);
   smallest = hn::Min(smallest, d);
-  Vector inverse = d;
-  if constexpr (R > 1) inverse = hn::Div(all(1.0), d);
+  const Vector inverse = reciprocal(d);
   for (std::size_t r = 0; r < R; ++r) {
     const Vector b = hn::NegMulAdd(my_a(r), ra, ya_b[r]);
-    const Vector beta = R > 1 ? hn::Mul(b, inverse) : hn::Div(b, d);
+    const Vector beta = hn::Mul(b, inverse);
     const Vector u = hn::NegMulAdd(m, hy_a(r), hn::NegMulAdd(my_a(r), ua, yu_b[r]));
     sum[r] = hn::MulAdd(beta, hn::MulSub(beta, v, u), sum[r]);
   }
@@ -260,8 +342,7 @@ HWY_INLINE void pair_rss(Vector ra, Vector inverse_a, const RowOf& my_a, Vector 
                          Vector& smallest, Vector (&rss)[R]) {
   const Vector d = hn::NegMulAdd(hn::Mul(ra, inverse_a), ra, a_b);
   smallest = hn::Min(smallest, d);
-  Vector inverse = d;
-  if constexpr (R > 1) inverse = hn::Div(all(1.0), d);
+  const Vector inverse = reciprocal(d);
   for (std::size_t r = 0; r < R; ++r) {
     const Vector b = hn::NegMulAdd(my_a(r), ra, ya_b[r]);
     rss[r] = hn::NegMulAdd(R > 1 ? hn::Mul(b, inverse) : hn::Div(b, d), b, rss[r]);
@@ -296,45 +377,65 @@ void clear_node(PairWork& w, std::size_t level, std::size_t open) {
   for (std::size_t r = 0; r < R; ++r) store(hn::Zero(kTag), t.weight_node + node_cell(w, level, r));
 }
 
-/// The pairs of one row predictor, by lane in row_best: every other open predictor below it is absent from those in
-/// whose lanes it does not stand.
-template <int R>
-void close_row_predictor(PairWork& w, std::size_t level, std::size_t predictor, std::size_t picks) {
+/// Lowers a cell; true when that changed it.
+HWY_INLINE bool lowers(double* cell, Vector v) {
+  const Vector old = load(cell);
+  store(hn::Min(old, v), cell);
+  return !hn::AllFalse(kTag, hn::Lt(v, old));
+}
+
+double least(const double* cell) { return *std::min_element(cell, cell + kWidth); }
+
+/// Sets the gates anew: what the pairs of each row predictor, or the two last predictors, must beat to lower a cell.
+HWY_NOINLINE void renew_gates(PairWork& w, int x, std::size_t r) {
   const PairShape& shape = *w.shape;
   PairTally& t = w.tally;
-  const std::size_t n = shape.first_lane[predictor];
-  for (int x = 0; x < 2; ++x) {
-    for (std::size_t r = 0; r < R; ++r) {
-      const double* lanes = t.row_best[x] + lane_cell(w, r, 0);
-      Vector best = all(kInfinity);
-      for (std::size_t b = 0; b < n; b += kWidth) {
-        const Vector v = load(lanes + b);
-        lower(t.best_lane[x] + lane_cell(w, r, b), v);
-        best = hn::Min(best, v);
-      }
-      lower(t.best_group[x] + group_cell(w, level, predictor, r), best);
-      lower(t.best_picks[x] + picks_cell(w, r, picks), best);
-      if (predictor < 2) continue;
-      double first = kInfinity;
-      double second = kInfinity;
-      std::size_t first_at = 0;
-      for (std::size_t p = 0; p < predictor; ++p) {
-        double own = kInfinity;
-        for (std::size_t b = shape.first_lane[p]; b < shape.first_lane[p + 1]; ++b) own = std::min(own, lanes[b]);
-        if (own < first) {
-          second = first;
-          first = own;
-          first_at = p;
-        } else {
-          second = std::min(second, own);
-        }
-      }
-      for (std::size_t p = 0; p < predictor; ++p) {
-        double& cell = t.best_absent[x][absent_cell(w, r, p)];
-        cell = std::min(cell, p == first_at ? second : first);
-      }
+  double below = 0.0;  // the worst of the cells of lower predictors
+  for (std::size_t p = 0; p < shape.n_predictors(); ++p) {
+    double own = 0.0;
+    for (std::size_t i = 0; i < shape.n_columns[p + 1] - shape.n_columns[p]; ++i) {
+      const std::size_t lane = shape.first_lane[p] + i;
+      const double column = least(t.best_column[x] + column_cell(w, r, lane));
+      own = std::max(own, std::min(column, t.best_lane[x][lane_cell(w, r, lane)]));
+    }
+    t.gate_rows[x][r * shape.n_predictors() + p] = std::max(below, own);
+    if (p == 1) t.gate_last[x][r] = std::max(below, own);
+    if (p == 0) below = own;
+    // absence of a lower predictor counts for rows above it only where another is in the lanes
+    below = std::max({below, own, least(t.best_absent[x] + absent_cell(w, r, p))});
+  }
+}
+
+/// What the pairs of one row predictor, by lane in row_best, say of the forms below it and of their absence: every
+/// other predictor below is absent from those in whose lanes it does not stand. True when a cell was lowered.
+bool lower_lanes(PairWork& w, int x, std::size_t r, std::size_t predictor) {
+  const PairShape& shape = *w.shape;
+  PairTally& t = w.tally;
+  const double* const lanes = t.row_best[x] + lane_cell(w, r, 0);
+  bool lowered = false;
+  for (std::size_t b = 0; b < shape.first_lane[predictor]; b += kWidth)
+    lowered |= lowers(t.best_lane[x] + lane_cell(w, r, b), load(lanes + b));
+  double first = kInfinity;
+  double second = kInfinity;
+  std::size_t first_at = 0;
+  for (std::size_t p = 0; p < predictor; ++p) {
+    double own = kInfinity;
+    for (std::size_t b = shape.first_lane[p]; b < shape.first_lane[p + 1]; ++b) own = std::min(own, lanes[b]);
+    if (own < first) {
+      second = first;
+      first = own;
+      first_at = p;
+    } else {
+      second = std::min(second, own);
     }
   }
+  for (std::size_t p = 0; p < predictor; ++p) {
+    double& cell = t.best_absent[x][absent_cell(w, r, p)];
+    const double without = p == first_at ? second : first;
+    lowered |= without < cell;
+    cell = std::min(cell, without);
+  }
+  return lowered;
 }
 
 /// Everything at and below a node whose highest further predictor is lower than p lacks p.
@@ -367,6 +468,24 @@ HWY_INLINE void pass_up(PairWork& w, std::size_t level, std::size_t lane, std::s
     increase(t.weight_column + column_cell(w, r, lane), weight);
     increase(t.weight_node + node_cell(w, level, r), weight);
   }
+}
+
+/// The best of the forms of the two last predictors, from the scores of a node that may lower some of them.
+HWY_NOINLINE void lower_last_columns(PairWork& w, int x, std::size_t r, const double* scores, double factor,
+                                     std::size_t n_rows, std::size_t n_blocks) {
+  PairTally& t = w.tally;
+  const std::size_t first_row = w.shape->first_lane[1];
+  bool lowered = false;
+  for (std::size_t i = 0; i < n_rows; ++i) {
+    Vector row = all(kInfinity);
+    for (std::size_t b = 0; b < n_blocks; ++b) {
+      const Vector v = hn::Mul(load(scores + (i * n_blocks + b) * kWidth), all(factor));
+      lowered |= lowers(t.best_lane[x] + lane_cell(w, r, b * kWidth), v);
+      row = hn::Min(row, v);
+    }
+    lowered |= lowers(t.best_column[x] + column_cell(w, r, first_row + i), row);
+  }
+  if (lowered) renew_gates(w, x, r);
 }
 
 // ---- the child whose two open predictors are the last: everything in registers --------------------------------------
@@ -409,7 +528,7 @@ HWY_NOINLINE void last_pairs(PairWork& w, std::size_t level, std::size_t lane) {
       store(row.h(pivot), h + i);
       store(row.v, v + i);
       lower(row_smallest + i, row.a);
-      const Vector inverse_i = hn::Div(all(1.0), row.a);
+      const Vector inverse_i = reciprocal(row.a);
       store(inverse_i, inverse + i);
       for (int r = 0; r < R; ++r) {
         const Derived derived = derive(row.ya[r], row.yu[r], row.v, inverse_i);
@@ -424,12 +543,13 @@ HWY_NOINLINE void last_pairs(PairWork& w, std::size_t level, std::size_t lane) {
       const Open<R> last(pivot, fold, at, static_cast<std::size_t>(b) * kWidth);
       HWY_UNROLL(8)
       for (int i = 0; i < kRows; ++i) {
-        const double* const row = rows + 2 * row_length * static_cast<std::size_t>(i) + static_cast<std::size_t>(b) * kWidth;
+        const double* const row =
+            rows + 2 * row_length * static_cast<std::size_t>(i) + static_cast<std::size_t>(b) * kWidth;
         const Vector m_i = all(m[i]);
         const Vector ra = hn::NegMulAdd(m_i, last.a_pivot, load(row));
         const Vector ua = hn::NegMulAdd(all(h[i]), last.m, hn::NegMulAdd(m_i, last.u_pivot, load(row + row_length)));
-        add_pair<R>(ra, ua, all(inverse[i]), all(v[i]), RowValues{my[0] + i, kRowLanes}, RowValues{hy[0] + i, kRowLanes},
-                    last.a, last.v, last.ya, last.yu, smallest[i][b], sum[i][b]);
+        add_pair<R>(ra, ua, all(inverse[i]), all(v[i]), RowValues{my[0] + i, kRowLanes},
+                    RowValues{hy[0] + i, kRowLanes}, last.a, last.v, last.ya, last.yu, smallest[i][b], sum[i][b]);
       }
     }
   }
@@ -444,7 +564,7 @@ HWY_NOINLINE void last_pairs(PairWork& w, std::size_t level, std::size_t lane) {
     const Vector a_pivot = load(pivot_row + first_row + i);
     const Vector m_i = hn::Mul(a_pivot, pivot_inverse);
     const Vector a = hn::NegMulAdd(m_i, a_pivot, load(everything + at.a() + first_row + i));
-    const Vector inverse_i = hn::Div(all(1.0), a);
+    const Vector inverse_i = reciprocal(a);
     store(m_i, m + i);
     store(inverse_i, inverse + i);
     lower(row_smallest + i, a);
@@ -458,63 +578,101 @@ HWY_NOINLINE void last_pairs(PairWork& w, std::size_t level, std::size_t lane) {
   }
 
   const std::size_t picks = level + 3;
-  const double factor = kTally ? w.summary_factor[w.outer_columns + picks] : 1.0;
   const std::size_t of_first = shape.n_columns[1];
-  PairTally& t = w.tally;
   w.path[level] = lane;
-  if constexpr (kTally)
-    for (std::size_t r = 0; r < R; ++r) store(hn::Zero(kTag), t.weight_node + node_cell(w, level + 1, r));
-  Vector node_best[2][R];
-  for (int r = 0; r < R; ++r) node_best[0][r] = node_best[1][r] = all(kInfinity);
+  w.n_scored += kRows * of_first * R;
+  HWY_ALIGN double cv_scores[R][kRows][kBlocks][kWidth];
+  HWY_ALIGN double rss_scores[R][kRows][kBlocks][kWidth];
+  Vector least_cv[kBlocks][R];
+  Vector least_rss[kBlocks][R];
   for (int b = 0; b < kBlocks; ++b) {
     const std::size_t first_lane = static_cast<std::size_t>(b) * kWidth;
-    const unsigned inside = first_bits(of_first - first_lane);
     const Vector a_pivot = load(pivot_row + first_lane);
     const Vector a_b = hn::NegMulAdd(hn::Mul(a_pivot, pivot_inverse), a_pivot, load(everything + at.a() + first_lane));
     Vector ya_b[R];
-    Vector lane_best[2][R];
     for (int r = 0; r < R; ++r) {
       ya_b[r] = hn::NegMulAdd(pivot_my[r], a_pivot, load(everything + at.ya(static_cast<std::size_t>(r)) + first_lane));
-      lane_best[0][r] = lane_best[1][r] = all(kInfinity);
+      least_cv[b][r] = least_rss[b][r] = all(kInfinity);
     }
+    const Vector padding = load(w.padding + first_lane);
+    Vector least = all(kInfinity);
     for (int i = 0; i < kRows; ++i) {
       const double* const row = everything + rows_at + 2 * row_length * static_cast<std::size_t>(i) + first_lane;
       const Vector ra = hn::NegMulAdd(all(m[i]), a_pivot, load(row));
       Vector cv[R];
       Vector rss[R];
-      Vector penalised[R];
       for (int r = 0; r < R; ++r) {
-        cv[r] = hn::Add(sum[i][b][r], all(base[r][i]));
-        rss[r] = all(base_rss[r][i]);
+        cv[r] = hn::Add(sum[i][b][r], hn::Add(padding, all(base[r][i])));
+        rss[r] = hn::Add(padding, all(base_rss[r][i]));
       }
-      Vector least = hn::Min(smallest[i][b], all(row_smallest[i]));
-      pair_rss<R>(ra, all(inverse[i]), RowValues{my[0] + i, kRowLanes}, a_b, ya_b, least, rss);
-      const std::size_t row_lane = first_row + static_cast<std::size_t>(i);
-      account<R, kTally>(w, {level + 1, row_lane, picks, level + 1, first_lane}, inside, least, cv, rss, factor,
-                         penalised);
-      if constexpr (kTally) {
-        for (int r = 0; r < R; ++r) {
-          lower(t.best_column[0] + column_cell(w, static_cast<std::size_t>(r), row_lane), cv[r]);
-          lower(t.best_column[1] + column_cell(w, static_cast<std::size_t>(r), row_lane), penalised[r]);
-          lane_best[0][r] = hn::Min(lane_best[0][r], cv[r]);
-          lane_best[1][r] = hn::Min(lane_best[1][r], penalised[r]);
-        }
+      smallest[i][b] = hn::Min(smallest[i][b], all(row_smallest[i]));
+      pair_rss<R>(ra, all(inverse[i]), RowValues{my[0] + i, kRowLanes}, a_b, ya_b, smallest[i][b], rss);
+      least = hn::Min(least, smallest[i][b]);
+      for (int r = 0; r < R; ++r) {
+        cv[r] = at_least_zero(cv[r]);
+        rss[r] = at_least_zero(rss[r]);
+        store(cv[r], cv_scores[r][i][b]);
+        store(rss[r], rss_scores[r][i][b]);
+        least_cv[b][r] = hn::Min(least_cv[b][r], cv[r]);
+        least_rss[b][r] = hn::Min(least_rss[b][r], rss[r]);
       }
     }
-    if constexpr (kTally) {
-      for (int r = 0; r < R; ++r)
-        for (int x = 0; x < 2; ++x) {
-          lower(t.best_lane[x] + lane_cell(w, static_cast<std::size_t>(r), first_lane), lane_best[x][r]);
-          node_best[x][r] = hn::Min(node_best[x][r], lane_best[x][r]);
+    if (HWY_UNLIKELY(!all_separable(w, least))) {
+      for (int r = 0; r < R; ++r) least_cv[b][r] = least_rss[b][r] = all(kInfinity);
+      for (int i = 0; i < kRows; ++i) {
+        Vector cv[R];
+        Vector rss[R];
+        for (int r = 0; r < R; ++r) {
+          cv[r] = load(cv_scores[r][i][b]);
+          rss[r] = load(rss_scores[r][i][b]);
         }
+        set_aside<R>(w, first_bits(of_first - first_lane), smallest[i][b], cv, rss);
+        for (int r = 0; r < R; ++r) {
+          store(cv[r], cv_scores[r][i][b]);
+          store(rss[r], rss_scores[r][i][b]);
+          least_cv[b][r] = hn::Min(least_cv[b][r], cv[r]);
+          least_rss[b][r] = hn::Min(least_rss[b][r], rss[r]);
+        }
+      }
     }
   }
+  Batch<R> batch{{level + 1, first_row, picks, level + 1, 0},
+                 kTally ? w.summary_factor[w.outer_columns + picks] : 1.0,
+                 kRows,
+                 kBlocks,
+                 {},
+                 {},
+                 kBlocks * kWidth,
+                 kWidth,
+                 {},
+                 {}};
+  for (int r = 0; r < R; ++r) {
+    batch.cv[r] = cv_scores[r][0][0];
+    batch.rss[r] = rss_scores[r][0][0];
+    batch.least_cv[r] = least_cv[0][r];
+    batch.least_rss[r] = least_rss[0][r];
+    for (int b = 1; b < kBlocks; ++b) {
+      batch.least_cv[r] = hn::Min(batch.least_cv[r], least_cv[b][r]);
+      batch.least_rss[r] = hn::Min(batch.least_rss[r], least_rss[b][r]);
+    }
+  }
+  if constexpr (kTally)
+    for (std::size_t r = 0; r < R; ++r) store(hn::Zero(kTag), w.tally.weight_node + node_cell(w, level + 1, r));
+  take<R, kTally>(w, batch);
   if constexpr (kTally) {
-    for (std::size_t r = 0; r < R; ++r)
+    PairTally& t = w.tally;
+    for (std::size_t r = 0; r < R; ++r) {
+      for (int i = 0; i < kRows; ++i)
+        for (int b = 0; b < kBlocks; ++b) count_in_histogram(w, r, load(cv_scores[r][i][b]));
+      const Vector node_best[2] = {batch.least_cv[r], hn::Mul(batch.least_rss[r], all(batch.factor))};
       for (int x = 0; x < 2; ++x) {
-        store(node_best[x][r], t.best_node[x] + node_cell(w, level + 1, r));
-        lower(t.best_picks[x] + picks_cell(w, r, picks), node_best[x][r]);
+        store(node_best[x], t.best_node[x] + node_cell(w, level + 1, r));
+        lower(t.best_picks[x] + picks_cell(w, r, picks), node_best[x]);
+        if (HWY_UNLIKELY(!hn::AllFalse(kTag, hn::Lt(node_best[x], all(t.gate_last[x][r])))))
+          lower_last_columns(w, x, r, x == 0 ? cv_scores[r][0][0] : rss_scores[r][0][0], x == 0 ? 1.0 : batch.factor,
+                             kRows, kBlocks);
       }
+    }
     pass_up<R>(w, level, lane, shape.predictor_of_lane[lane]);
   }
 }
@@ -524,7 +682,7 @@ HWY_NOINLINE void last_pairs(PairWork& w, std::size_t level, std::size_t lane) {
 /// Columns from the second predictor on may be rows or be picked: their inverses, multipliers and bases.
 template <int R>
 HWY_INLINE void derive_columns(double* fold, const FoldOffsets& at, std::size_t lane, Vector a, double* base_cv) {
-  const Vector inverse = hn::Div(all(1.0), a);
+  const Vector inverse = reciprocal(a);
   store(inverse, fold + at.inverse() + lane);
   const Vector v = load(fold + at.v() + lane);
   for (std::size_t r = 0; r < R; ++r) {
@@ -537,7 +695,7 @@ HWY_INLINE void derive_columns(double* fold, const FoldOffsets& at, std::size_t 
 
 template <int R>
 HWY_INLINE void derive_all_rows(double* everything, const FoldOffsets& at, std::size_t lane, double* base_rss) {
-  const Vector inverse = hn::Div(all(1.0), load(everything + at.a() + lane));
+  const Vector inverse = reciprocal(load(everything + at.a() + lane));
   store(inverse, everything + at.inverse() + lane);
   for (std::size_t r = 0; r < R; ++r) {
     const Vector ya = load(everything + at.ya(r) + lane);
@@ -623,10 +781,8 @@ void bring_in_rows(PairWork& w, const PairLevel& parent, const PairLevel& child,
         Vector sum[R];
         for (std::size_t r = 0; r < R; ++r) sum[r] = kFirst ? hn::Zero(kTag) : load(cell + r * plane);
         Vector smallest = kFirst ? all(kInfinity) : load(cell + R * plane);
-        add_pair<R>(
-            ra, ua, all(out[to.inverse() + a]), all(out[to.v() + a]),
-            RowValues{out + to.my(0) + a, to.stride}, RowValues{out + to.hy(0) + a, to.stride}, a_b, v_b, ya_b, yu_b,
-            smallest, sum);
+        add_pair<R>(ra, ua, all(out[to.inverse() + a]), all(out[to.v() + a]), RowValues{out + to.my(0) + a, to.stride},
+                    RowValues{out + to.hy(0) + a, to.stride}, a_b, v_b, ya_b, yu_b, smallest, sum);
         for (std::size_t r = 0; r < R; ++r) store(sum[r], cell + r * plane);
         store(smallest, cell + R * plane);
       }
@@ -669,8 +825,30 @@ void bring_in_all_rows(PairWork& w, const PairLevel& parent, const PairLevel& ch
   }
 }
 
-/// Takes the pairs of a node row by row. `row_of(a, b)` gives the node's row of all rows, `scores(a, b, …)` the sums over
-/// the folds without the base.
+/// The pairs of one row predictor that may lower a cell: by column of the row and by lane.
+template <int R>
+HWY_NOINLINE void lower_columns(PairWork& w, int x, std::size_t r, std::size_t predictor, const Batch<R>& batch) {
+  PairTally& t = w.tally;
+  bool lowered = false;
+  const double* const scores = x == 0 ? batch.cv[r] : batch.rss[r];
+  const double factor = x == 0 ? 1.0 : batch.factor;
+  double* const lanes = t.row_best[x] + lane_cell(w, r, 0);
+  for (std::size_t b = 0; b < batch.n_blocks; ++b) store(all(kInfinity), lanes + b * kWidth);
+  for (std::size_t i = 0; i < batch.n_rows; ++i) {
+    Vector row = all(kInfinity);
+    for (std::size_t b = 0; b < batch.n_blocks; ++b) {
+      const Vector v = hn::Mul(load(scores + i * batch.row_stride + b * kWidth), all(factor));
+      lower(lanes + b * kWidth, v);
+      row = hn::Min(row, v);
+    }
+    lowered |= lowers(t.best_column[x] + column_cell(w, r, batch.at.row + i), row);
+  }
+  lowered |= lower_lanes(w, x, r, predictor);
+  if (lowered) renew_gates(w, x, r);
+}
+
+/// Takes the pairs of a node, one row predictor after another. `row_of(a, b)` gives the node's row of all rows,
+/// `scores(a, b, …)` the sums over the folds without the base. What has been scored stays in the scratch.
 template <int R, bool kTally, class RowOf, class Scores>
 void take_pairs(PairWork& w, const PairLevel& node, std::size_t level, std::size_t open, const RowOf& row_of,
                 const Scores& scores) {
@@ -678,41 +856,73 @@ void take_pairs(PairWork& w, const PairLevel& node, std::size_t level, std::size
   const FoldOffsets at{node.stride, R};
   const double* const everything = node.all_rows;
   const std::size_t picks = level + 2;
+  const std::size_t plane = shape.row_offset.back() / 2;
+  double* const cv_plane = w.pair_scores;
+  double* const rss_plane = w.pair_scores + (R + 1) * plane;
   const double factor = kTally ? w.summary_factor[w.outer_columns + picks] : 1.0;
-  PairTally& t = w.tally;
   for (std::size_t p = 1; p < open; ++p) {
     const std::size_t n = shape.first_lane[p];
-    if constexpr (kTally)
-      for (std::size_t b = 0; b < n; b += kWidth)
-        for (std::size_t r = 0; r < R; ++r)
-          for (int x = 0; x < 2; ++x) store(all(kInfinity), t.row_best[x] + lane_cell(w, r, b));
-    for (std::size_t a = n; a < shape.first_lane[p + 1]; ++a) {
+    const std::size_t n_forms = shape.first_lane[p + 1] - n;
+    w.n_scored += n_forms * shape.n_columns[p] * R;
+    const std::size_t first = shape.row_offset[n] / 2;
+    Batch<R> batch{
+        {level, n, picks, level, 0}, factor, n_forms, (n + kWidth - 1) / kWidth, {}, {}, padded(n), kWidth, {}, {}};
+    for (std::size_t r = 0; r < R; ++r) {
+      batch.cv[r] = cv_plane + r * plane + first;
+      batch.rss[r] = rss_plane + r * plane + first;
+      batch.least_cv[r] = batch.least_rss[r] = all(kInfinity);
+    }
+    for (std::size_t a = n; a < n + n_forms; ++a) {
       for (std::size_t b = 0; b < n; b += kWidth) {
         Vector cv[R];
         Vector rss[R];
-        Vector penalised[R];
         Vector ya_b[R];
         Vector least = all(node.smallest[a]);
         scores(a, b, cv, least);
+        // lanes of the row's own predictor, and padding, are no pairs
+        const unsigned inside = b + kWidth > n ? first_bits(n - b) : first_bits(kWidth);
+        const Vector padding = load(w.padding + b);
         for (std::size_t r = 0; r < R; ++r) {
-          cv[r] = hn::Add(cv[r], all(node.base_cv[r * at.stride + a]));
-          rss[r] = all(node.base_rss[r * at.stride + a]);
+          cv[r] = hn::Add(cv[r], hn::Add(padding, all(node.base_cv[r * at.stride + a])));
+          rss[r] = hn::Add(padding, all(node.base_rss[r * at.stride + a]));
           ya_b[r] = load(everything + at.ya(r) + b);
         }
         pair_rss<R>(row_of(a, b), all(everything[at.inverse() + a]), RowValues{everything + at.my(0) + a, at.stride},
                     load(everything + at.a() + b), ya_b, least, rss);
-        account<R, kTally>(w, {level, a, picks, level, b}, inside_bits(shape, p, b), least, cv, rss, factor, penalised);
-        if constexpr (kTally) {
+        if (HWY_UNLIKELY(inside != first_bits(kWidth))) {
+          const auto keep = hn::FirstN(kTag, n - b);
+          least = hn::IfThenElse(keep, least, all(kInfinity));
           for (std::size_t r = 0; r < R; ++r) {
-            lower(t.best_column[0] + column_cell(w, r, a), cv[r]);
-            lower(t.best_column[1] + column_cell(w, r, a), penalised[r]);
-            lower(t.row_best[0] + lane_cell(w, r, b), cv[r]);
-            lower(t.row_best[1] + lane_cell(w, r, b), penalised[r]);
+            cv[r] = hn::IfThenElse(keep, cv[r], all(kInfinity));
+            rss[r] = hn::IfThenElse(keep, rss[r], all(kInfinity));
           }
+        }
+        for (std::size_t r = 0; r < R; ++r) {
+          cv[r] = at_least_zero(cv[r]);
+          rss[r] = at_least_zero(rss[r]);
+        }
+        if (HWY_UNLIKELY(!all_separable(w, least))) set_aside<R>(w, inside_bits(shape, p, b), least, cv, rss);
+        for (std::size_t r = 0; r < R; ++r) {
+          store(cv[r], cv_plane + r * plane + shape.row_offset[a] / 2 + b);
+          store(rss[r], rss_plane + r * plane + shape.row_offset[a] / 2 + b);
+          batch.least_cv[r] = hn::Min(batch.least_cv[r], cv[r]);
+          batch.least_rss[r] = hn::Min(batch.least_rss[r], rss[r]);
+          if constexpr (kTally) count_in_histogram(w, r, cv[r]);
         }
       }
     }
-    if constexpr (kTally) close_row_predictor<R>(w, level, p, picks);
+    take<R, kTally>(w, batch);
+    if constexpr (kTally) {
+      for (int x = 0; x < 2; ++x) {
+        for (std::size_t r = 0; r < R; ++r) {
+          const Vector best = x == 0 ? batch.least_cv[r] : hn::Mul(batch.least_rss[r], all(factor));
+          lower(w.tally.best_group[x] + group_cell(w, level, p, r), best);
+          lower(w.tally.best_picks[x] + picks_cell(w, r, picks), best);
+          const double gate = w.tally.gate_rows[x][r * shape.n_predictors() + p];
+          if (!hn::AllFalse(kTag, hn::Lt(best, all(gate)))) lower_columns<R>(w, x, r, p, batch);
+        }
+      }
+    }
   }
 }
 
@@ -836,6 +1046,7 @@ struct Walk {
 
   void tick() {
     if (w.n_scored - w.n_reported < kTickCandidates) return;
+    add_pairs_of_bins(w);
     if (w.sink->tick(w.n_scored - w.n_reported)) w.stopped = true;
     w.n_reported = w.n_scored;
   }
@@ -845,24 +1056,45 @@ template <int R, bool kTally>
 void score_singles_of(PairWork& w) {
   const PairShape& shape = *w.shape;
   const PairLevel& root = w.levels[0];
-  const double factor = kTally ? w.summary_factor[w.outer_columns + 1] : 1.0;
   PairTally& t = w.tally;
+  w.n_scored += shape.columns(shape.n_predictors()) * R;
   for (std::size_t p = 0; p < shape.n_predictors(); ++p) {
     for (std::size_t b = shape.first_lane[p] / kWidth * kWidth; b < shape.first_lane[p + 1]; b += kWidth) {
       const std::size_t first = std::max(b, shape.first_lane[p]);
-      unsigned inside = inside_bits(shape, p + 1, b);
-      if (first > b) inside &= ~first_bits(first - b);
+      const unsigned inside = inside_bits(shape, p + 1, b) & ~first_bits(first - b);
+      const auto keep = mask_of(inside);
       Vector cv[R];
       Vector rss[R];
-      Vector penalised[R];
       for (std::size_t r = 0; r < R; ++r) {
-        cv[r] = load(root.base_cv + r * root.stride + b);
-        rss[r] = load(root.base_rss + r * root.stride + b);
+        cv[r] = hn::IfThenElse(keep, at_least_zero(load(root.base_cv + r * root.stride + b)), all(kInfinity));
+        rss[r] = hn::IfThenElse(keep, at_least_zero(load(root.base_rss + r * root.stride + b)), all(kInfinity));
       }
-      account<R, kTally>(w, {0, PairSink::kNone, 1, 0, b}, inside, load(root.smallest + b), cv, rss, factor, penalised);
+      set_aside<R>(w, inside, load(root.smallest + b), cv, rss);
+      HWY_ALIGN double cv_scores[R][kLanes];
+      HWY_ALIGN double rss_scores[R][kLanes];
+      Batch<R> batch{{0, PairSink::kNone, 1, 0, b},
+                     kTally ? w.summary_factor[w.outer_columns + 1] : 1.0,
+                     1,
+                     1,
+                     {},
+                     {},
+                     0,
+                     0,
+                     {},
+                     {}};
+      for (std::size_t r = 0; r < R; ++r) {
+        store(cv[r], cv_scores[r]);
+        store(rss[r], rss_scores[r]);
+        batch.cv[r] = cv_scores[r];
+        batch.rss[r] = rss_scores[r];
+        batch.least_cv[r] = cv[r];
+        batch.least_rss[r] = rss[r];
+      }
+      take<R, kTally>(w, batch);
       if constexpr (kTally) {
         for (std::size_t r = 0; r < R; ++r) {
-          const Vector best[2] = {cv[r], penalised[r]};
+          count_in_histogram(w, r, cv[r]);
+          const Vector best[2] = {cv[r], hn::Mul(rss[r], all(batch.factor))};
           for (int x = 0; x < 2; ++x) {
             lower(t.best_lane[x] + lane_cell(w, r, b), best[x]);
             lower(t.best_group[x] + group_cell(w, 0, p, r), best[x]);
@@ -920,7 +1152,8 @@ void complete_root_of(PairWork& w) {
   }
 }
 
-// ---- by number of responses and with or without tallies --------------------------------------------------------------
+// ---- by number of responses and with or without tallies
+// --------------------------------------------------------------
 
 template <class Call>
 void with_responses(std::size_t n, const Call& call) {
@@ -959,6 +1192,7 @@ void score_pairs_here(PairWork& w, std::size_t level, std::size_t open) {
   with_options(
       w, [&](auto r, auto tally) { score_stored_pairs<decltype(r)::value, decltype(tally)::value>(w, level, open); });
 }
+void count_here(PairWork& w) { add_pairs_of_bins(w); }
 void open_node_here(PairWork& w, std::size_t level, std::size_t open) {
   with_responses(w.n_responses, [&](auto r) { clear_node<decltype(r)::value>(w, level, open); });
 }
@@ -980,6 +1214,7 @@ HWY_EXPORT(complete_root_here);
 HWY_EXPORT(descend_here);
 HWY_EXPORT(score_singles_here);
 HWY_EXPORT(score_pairs_here);
+HWY_EXPORT(count_here);
 HWY_EXPORT(open_node_here);
 HWY_EXPORT(walk_children_here);
 
@@ -991,6 +1226,7 @@ void score_singles(PairWork& work) { HWY_DYNAMIC_DISPATCH(score_singles_here)(wo
 void score_pairs(PairWork& work, std::size_t level, std::size_t open) {
   HWY_DYNAMIC_DISPATCH(score_pairs_here)(work, level, open);
 }
+void add_histogram(PairWork& work) { HWY_DYNAMIC_DISPATCH(count_here)(work); }
 void open_node(PairWork& work, std::size_t level, std::size_t open) {
   HWY_DYNAMIC_DISPATCH(open_node_here)(work, level, open);
 }

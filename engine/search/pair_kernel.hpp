@@ -4,8 +4,8 @@
 // (head of walk.hpp), m = A_c· / A_cc and U = 2V, bringing in column c gives
 //     A_jj −= m_j A_cj            V_jj += m_j (m_j V_cc − U_cj)
 //     A_ij −= m_i A_cj            U_ij −= m_i U_cj + m_j (U_ci − 2 m_i V_cc)
-// and for response y, whose row is A_y·, U_y·, the same with m_y = A_yc / A_cc. The held-out sum of squared errors changes
-// by m_y (m_y V_cc − U_yc), the residual sum of squares by −m_y A_yc.
+// and for response y, whose row is A_y·, U_y·, the same with m_y = A_yc / A_cc. The held-out sum of squared errors
+// changes by m_y (m_y V_cc − U_yc), the residual sum of squares by −m_y A_yc.
 //
 // Every node scores the pairs (a, b) of its open predictors in closed form: with r = A_ab, u = U_ab, m = r / A_aa,
 //     D = A_bb − m r,   V' = V_bb + m (m V_aa − u),   β = (A_yb − m_y r) / D
@@ -42,11 +42,11 @@ struct PairShape {
   std::size_t columns(std::size_t open) const { return n_columns[open]; }
 
   std::size_t most_picks;
-  std::vector<std::size_t> first_lane;         ///< [n_predictors + 1]
-  std::vector<std::size_t> n_columns;          ///< [n_predictors + 1] columns of the first so many predictors
-  std::vector<std::size_t> predictor_of_lane;  ///< [n_lanes]; padding lanes belong to predictor 0
-  std::vector<std::size_t> row_offset;         ///< [n_lanes + 1] start of a lane's row of A; its row of U follows
-  std::vector<std::size_t> row_length;         ///< [n_lanes] lanes of lower predictors, padded
+  std::vector<std::size_t> first_lane;            ///< [n_predictors + 1]
+  std::vector<std::size_t> n_columns;             ///< [n_predictors + 1] columns of the first so many predictors
+  std::vector<std::size_t> predictor_of_lane;     ///< [n_lanes]; padding lanes belong to predictor 0
+  std::vector<std::size_t> row_offset;            ///< [n_lanes + 1] start of a lane's row of A; its row of U follows
+  std::vector<std::size_t> row_length;            ///< [n_lanes] lanes of lower predictors, padded
   std::vector<std::vector<std::uint64_t>> sizes;  ///< [most_picks + 1][n_predictors + 1]
 };
 
@@ -76,7 +76,13 @@ struct PairTally {
   double* weight_lane = nullptr;
   double* weight_picks = nullptr;
   double* weight_node = nullptr;
-  std::uint64_t* histogram = nullptr;  ///< [responses × Summary::kBins]
+  double* gate_last[2] = {};  ///< [responses] pairs of the last two predictors lower no cell from this score on …
+  double* gate_rows[2] = {};  ///< [responses × n_predictors] … nor do pairs with a row of this predictor
+  /// [responses × Summary::kBins] lanes by held-out SSE; what is no candidate counts in the last bin.
+  std::uint64_t* histogram = nullptr;
+  std::uint32_t* histogram_pairs = nullptr;  ///< [responses × Summary::kBins²] pairs of lanes by their bins
+  const std::int64_t* first_bin =
+      nullptr;  ///< [responses] bits of the first bin's lower edge, as far as bins need them
 };
 
 /// Receives the lanes of a vector of scores that a list may want. `mask` has a bit for each.
@@ -100,8 +106,10 @@ struct PairWork {
   double smallest_pivot = 0.0;    ///< relative to a column's diagonal before any elimination, which is 1 here
   PairLevel* levels = nullptr;    ///< [most levels]
   std::size_t* path = nullptr;    ///< [most_picks] lanes picked
-  double* pair_scores = nullptr;  ///< scratch: [pair vectors × (responses + 1)] sums over folds, smallest pivot
-  double* multipliers = nullptr;  ///< scratch: [2 × padded lanes]
+  double* pair_scores =
+      nullptr;  ///< scratch: [2 responses + 1][half of all rows' length]: sums over folds, smallest pivots, RSS
+  const double* padding = nullptr;    ///< [padded lanes] 0, or +∞ in padding lanes of predictor 0
+  double* multipliers = nullptr;      ///< scratch: [2 × padded lanes]
   const double* limit_cv = nullptr;   ///< [responses] a list may want scores up to here
   const double* limit_rss = nullptr;  ///< [(most columns + 1) × responses]
   PairSink* sink = nullptr;
@@ -109,7 +117,8 @@ struct PairWork {
   PairTally tally;
   const double* summary_factor = nullptr;  ///< [most columns + 1] exp(penalty / n)
   double half_n = 0.0;                     ///< n_rows / 2
-  double* weight_unit = nullptr;   ///< [responses] the penalised RSS whose weight is 1; lowered when weights grow too large
+  double* weight_unit =
+      nullptr;  ///< [responses] the penalised RSS whose weight is 1; lowered when weights grow too large
   double* weight_limit = nullptr;  ///< [responses] weights beyond this penalised RSS are left out
   double weight_range = 0.0;       ///< weight_limit / weight_unit
 
@@ -139,6 +148,8 @@ void complete_root(PairWork& work);
 void descend(PairWork& work, std::size_t level, std::size_t lane);
 /// Starts the tally of the level at which a run starts.
 void open_node(PairWork& work, std::size_t level, std::size_t open);
+/// Completes PairTally::histogram.
+void add_histogram(PairWork& work);
 /// Scores the single columns open at level 0.
 void score_singles(PairWork& work);
 /// Scores the pairs of level, whose first `open` predictors are open.

@@ -6,6 +6,7 @@
 #include <cassert>
 #include <cmath>
 #include <limits>
+#include <numeric>
 
 namespace formsieve::search {
 
@@ -68,7 +69,9 @@ PairWalker::PairWalker(const PairShape& largest, std::size_t n_folds, std::size_
       start_unit_(summary.unit),
       weight_limit_(n_responses),
       column_of_lane_(padded(largest.n_lanes())),
-      scale_(padded(largest.n_lanes())) {
+      scale_(padded(largest.n_lanes())),
+      first_bin_(summary.first_bin),
+      padding_(padded(largest.n_lanes())) {
   work_.n_folds = n_folds;
   work_.n_responses = n_responses;
   work_.smallest_pivot = smallest_pivot_rel;
@@ -76,24 +79,27 @@ PairWalker::PairWalker(const PairShape& largest, std::size_t n_folds, std::size_
   work_.half_n = 0.5 * static_cast<double>(n_rows);
   work_.tally.wanted = summary.wanted;
   work_.weight_range = summary.range;
-  std::size_t size = 2 * padded(largest.n_lanes()) + 2 * kSlack + (n_responses + 1) * (largest.row_offset.back() / 2) + kSlack;
+  std::size_t size =
+      2 * padded(largest.n_lanes()) + 2 * kSlack + (2 * n_responses + 1) * (largest.row_offset.back() / 2) + kSlack;
   for (std::size_t level = 0; level < levels_.size(); ++level)
     if (level <= largest.n_predictors()) size += level_size(largest, level, n_folds, n_responses);
   memory_.assign(size + 8 * kLanes, 0.0);
   if (summary.wanted) {
-    const std::size_t cells = n_responses * kLanes *
-                              (3 * (largest.n_lanes() + kSlack) + 3 * (largest.n_lanes() + kSlack) +
-                               2 * largest.n_predictors() + 3 * (largest.most_picks + 1) +
-                               3 * (largest.most_picks + 1) + 2 * (largest.most_picks + 1) * largest.n_predictors() + 16);
+    const std::size_t cells =
+        n_responses * kLanes *
+        (3 * (largest.n_lanes() + kSlack) + 3 * (largest.n_lanes() + kSlack) + 4 * largest.n_predictors() +
+         3 * (largest.most_picks + 1) + 3 * (largest.most_picks + 1) +
+         2 * (largest.most_picks + 1) * largest.n_predictors() + 24);
     tally_memory_.assign(cells, 0.0);
     histogram_.assign(n_responses * search::Summary::kBins, 0);
+    histogram_pairs_.assign(n_responses * search::Summary::kBins * search::Summary::kBins, 0);
   }
 }
 
 void PairWalker::lay_out_levels() {
   Pieces pieces(memory_.data());
   work_.multipliers = pieces.take(2 * padded(shape_->n_lanes()) + 2 * kSlack);
-  work_.pair_scores = pieces.take((n_responses_ + 1) * (shape_->row_offset.back() / 2) + kSlack);
+  work_.pair_scores = pieces.take((2 * n_responses_ + 1) * (shape_->row_offset.back() / 2) + kSlack);
   for (std::size_t level = 0; level < n_levels(*shape_) && level <= shape_->n_predictors(); ++level) {
     PairLevel& at = levels_[level];
     at.stride = padded(shape_->first_lane[shape_->n_predictors() - level]) + kSlack;
@@ -118,26 +124,46 @@ void PairWalker::lay_out_tally() {
     tally.best_column[x] = pieces.take(columns);
     tally.best_lane[x] = pieces.take(lanes);
     tally.best_absent[x] = pieces.take(predictors);
+    tally.gate_last[x] = pieces.take(n_responses_);
+    tally.gate_rows[x] = pieces.take(n_responses_ * shape_->n_predictors());
+  }
+  run_cells_ = pieces.next();
+  for (int x = 0; x < 2; ++x) {
     tally.best_picks[x] = pieces.take(levels);
     tally.best_node[x] = pieces.take(levels);
     tally.best_group[x] = pieces.take((shape_->most_picks + 1) * predictors);
     tally.row_best[x] = pieces.take(lanes);
   }
-  tally_infinite_end_ = pieces.next();
+  weight_cells_ = pieces.next();
   tally.weight_column = pieces.take(columns);
   tally.weight_lane = pieces.take(lanes);
   tally.weight_picks = pieces.take(levels);
   tally.weight_node = pieces.take(levels);
+  tally.histogram_pairs = histogram_pairs_.data();
+  tally.first_bin = first_bin_.data();
   tally.histogram = histogram_.data();
   assert(pieces.next() <= tally_memory_.data() + tally_memory_.size());
 }
 
-void PairWalker::clear_tally() {
-  double* const start = tally_memory_.data();
-  std::fill(start, tally_infinite_end_, kInfinity);
-  std::fill(tally_infinite_end_, start + tally_memory_.size(), 0.0);
+/// The minima by column and by absence hold for all runs with the same predictors.
+void PairWalker::forget_cells() { std::fill(tally_memory_.data(), run_cells_, kInfinity); }
+
+void PairWalker::clear_run() {
+  std::fill(run_cells_, weight_cells_, kInfinity);
+  std::fill(weight_cells_, tally_memory_.data() + tally_memory_.size(), 0.0);
   unit_ = start_unit_;
   for (std::size_t r = 0; r < n_responses_; ++r) weight_limit_[r] = unit_[r] * work_.weight_range;
+}
+
+std::vector<std::uint64_t> PairWalker::histogram() const {
+  std::vector<std::uint64_t> counts = histogram_;
+  for (std::size_t r = 0; r < n_responses_ && !counts.empty(); ++r) {
+    const auto first = counts.begin() + static_cast<std::ptrdiff_t>(r * search::Summary::kBins);
+    const auto last = first + search::Summary::kBins;
+    const auto lanes = std::accumulate(first, last, std::uint64_t{0});
+    *(last - 1) -= lanes - work_.n_scored / n_responses_;
+  }
+  return counts;
 }
 
 /// One fold's A, V, A_y, U_y and rows at level 0, columns scaled to a unit diagonal before any elimination.
@@ -168,13 +194,18 @@ void PairWalker::fill(const double* a, const double* v, std::size_t order, std::
 
 void PairWalker::load(const PairShape& shape, std::span<const std::size_t> first_column, const OuterGrams& node,
                       const std::vector<std::vector<double>>& root_diagonal, std::size_t outer_columns) {
+  const bool same_shape = work_.shape == &shape;
   shape_ = &shape;
   work_.shape = shape_;
   work_.outer_columns = outer_columns;
   lay_out_levels();
-  if (work_.tally.wanted) lay_out_tally();
+  if (work_.tally.wanted && !same_shape) {
+    lay_out_tally();
+    forget_cells();
+  }
   work_.levels = levels_.data();
   work_.path = path_.data();
+  work_.padding = padding_.data();
   work_.limit_cv = limit_cv_.data();
   work_.limit_rss = limit_rss_.data();
   work_.summary_factor = factor_.data();
@@ -185,6 +216,7 @@ void PairWalker::load(const PairShape& shape, std::span<const std::size_t> first
   for (std::size_t lane = 0; lane < shape.n_lanes(); ++lane) {
     const std::size_t p = shape.predictor_of_lane[lane];
     const std::size_t form = lane - shape.first_lane[p];
+    padding_[lane] = form < shape.columns(p + 1) - shape.columns(p) ? 0.0 : kInfinity;
     column_of_lane_[lane] = form < shape.columns(p + 1) - shape.columns(p) ? first_column[p] + form : kNoColumn;
   }
   PairLevel& root = levels_[0];
@@ -218,19 +250,20 @@ std::size_t PairWalker::enter(std::span<const std::size_t> lanes) {
 void PairWalker::run(std::uint64_t largest) {
   const std::size_t open = entered_ == 0 ? shape_->n_predictors() : shape_->predictor_of_lane[path_[entered_ - 1]];
   if (work_.tally.wanted) {
-    clear_tally();
+    clear_run();
     open_node(work_, entered_, open);
   }
   if (entered_ == 0 && shape_->most_picks > 0) score_singles(work_);
   if (entered_ + 2 <= shape_->most_picks) score_pairs(work_, entered_, open);
   walk_children(work_, entered_, open, largest);
+  add_histogram(work_);
 }
 
 void PairWalker::harvest(PairHarvest& harvest) const {
   const PairTally& tally = work_.tally;
   const std::size_t n_lanes = shape_->n_lanes();
   const auto log_weight = [&](std::size_t r, double sum) { return std::log(sum) - work_.half_n * std::log(unit_[r]); };
-  const auto figures = [&](std::size_t r, double* const (&best)[2], const double* weight, std::size_t cell) {
+  const auto figures = [&](std::size_t r, double* const(&best)[2], const double* weight, std::size_t cell) {
     const double own = weight == nullptr ? 0.0 : sum_of(weight + cell);
     return PairHarvest::Figures{{least_of(best[0] + cell), least_of(best[1] + cell)}, log_weight(r, own)};
   };

@@ -28,9 +28,10 @@ class PairWalker {
  public:
   struct Summary {
     bool wanted = false;
-    std::vector<double> factor;       ///< [most columns + 1] exp(penalty / n)
-    std::vector<double> unit;         ///< [responses] the penalised RSS whose weight is 1 at first
-    double range = 0.0;               ///< weights beyond range × unit are left out
+    std::vector<double> factor;           ///< [most columns + 1] exp(penalty / n)
+    std::vector<double> unit;             ///< [responses] the penalised RSS whose weight is 1 at first
+    double range = 0.0;                   ///< weights beyond range × unit are left out
+    std::vector<std::int64_t> first_bin;  ///< [responses] see search::first_bin
   };
 
   /// `largest` has every simple predictor and as many picks as any run.
@@ -51,7 +52,8 @@ class PairWalker {
   std::uint64_t n_scored() const { return work_.n_scored; }
   std::uint64_t n_inseparable() const { return work_.n_inseparable; }
   bool stopped() const { return work_.stopped; }
-  const std::vector<std::uint64_t>& histogram() const { return histogram_; }
+  /// [response × Summary::kBins] candidates of all runs.
+  std::vector<std::uint64_t> histogram() const;
   const PairShape& shape() const { return *shape_; }
   /// Lanes picked on the way to the node whose candidates are being offered.
   const std::vector<std::size_t>& path() const { return path_; }
@@ -64,7 +66,8 @@ class PairWalker {
  private:
   void lay_out_levels();
   void lay_out_tally();
-  void clear_tally();
+  void forget_cells();
+  void clear_run();
   void fill(const double* a, const double* v, std::size_t order, std::span<const std::size_t> column,
             std::span<const double> scale, double* out) const;
 
@@ -77,9 +80,13 @@ class PairWalker {
   std::size_t entered_ = 0, valid_levels_ = 0;
   std::vector<double> limit_cv_, limit_rss_, factor_, unit_, start_unit_, weight_limit_;
   std::vector<std::uint64_t> histogram_;
+  std::vector<std::uint32_t> histogram_pairs_;
+  std::vector<std::int64_t> first_bin_;
+  std::vector<double> padding_;
   std::vector<std::size_t> column_of_lane_;
   std::vector<double> scale_;
-  double* tally_infinite_end_ = nullptr;
+  double* run_cells_ = nullptr;     ///< in tally_memory_: from here on of one run only …
+  double* weight_cells_ = nullptr;  ///< … and from here on sums
 };
 
 }  // namespace formsieve::search

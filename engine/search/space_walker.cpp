@@ -34,13 +34,28 @@ PairShape largest_shape(const OuterTree& tree) {
   return tree.shape(all, tree.most_terms() - std::min(tree.most_terms(), tree.n_always()));
 }
 
+/// A predictor is strong when forward selection gains more than this with it, in units of AIC.
+constexpr double kStrongGain = 10.0;
+
+/// Predictors that matter, strongest first, judged on the first of the responses.
+std::vector<std::size_t> strong_predictors(const Space& space, const base::GramSet& grams, const WalkOptions& options,
+                                           std::size_t first_response) {
+  const OuterTree tree(space);
+  if (!tree.possible()) return {};
+  std::vector<double> penalty;
+  for (std::size_t k = 0; k <= tree.most_columns(); ++k) penalty.push_back(kStrongGain * static_cast<double>(k));
+  return forward_selection(tree, outer_root(tree, grams, first_response, 1), 0, factors(penalty, grams.n_rows),
+                           options.smallest_pivot_rel)
+      .predictors;
+}
+
 }  // namespace
 
 WalkSetup::WalkSetup(const Space& space_, const base::GramSet& grams, const WalkOptions& options_,
                      std::size_t first_response, std::size_t n_responses)
     : space(space_),
       options(options_),
-      tree(space_),
+      tree(space_, strong_predictors(space_, grams, options_, first_response)),
       root(outer_root(tree, grams, first_response, n_responses)),
       smallest(smallest_pivots(root, options_.smallest_pivot_rel)),
       root_diagonal(smallest_pivots(root, 1.0)),
@@ -52,10 +67,13 @@ WalkSetup::WalkSetup(const Space& space_, const base::GramSet& grams, const Walk
   summary.factor = factors(options.summary_penalty, n_rows);
   // what is left out weighs, candidate by candidate, at most this share of the unit's weight
   const double n_candidates = static_cast<double>(tree.size({}));
-  summary.range = std::exp(2.0 * std::log(n_candidates / search::Summary::kNegligibleWeight) / static_cast<double>(n_rows));
+  summary.range =
+      std::exp(2.0 * std::log(n_candidates / search::Summary::kNegligibleWeight) / static_cast<double>(n_rows));
   for (std::size_t r = 0; r < n_responses; ++r) {
-    const double found = greedy_penalised_rss(tree, root, r, summary.factor, options.smallest_pivot_rel);
+    const double found = forward_selection(tree, root, r, summary.factor, options.smallest_pivot_rel).penalised_rss;
     const double tiny = std::numeric_limits<double>::min() / std::numeric_limits<double>::epsilon();
+    unit_exponent.push_back(search::unit_exponent(root.cv_sse(r)));
+    summary.first_bin.push_back(first_bin(unit_exponent.back()));
     summary.unit.push_back(std::isfinite(found) ? std::max(found, tiny) : root.rss(r));
   }
 }
@@ -165,11 +183,13 @@ void SpaceWalker::score_own() {
     if (!setup_.summary.wanted) continue;
     const double penalised = rss * setup_.summary.factor[n_columns_];
     const double floor = 1e-28 * static_cast<double>(setup_.n_rows);
-    PairHarvest::Figures figures{{cv, penalised}, -0.5 * static_cast<double>(setup_.n_rows) * std::log(std::max(penalised, floor))};
+    PairHarvest::Figures figures{{cv, penalised},
+                                 -0.5 * static_cast<double>(setup_.n_rows) * std::log(std::max(penalised, floor))};
     add_everywhere(r, figures, {});
-    for (const std::size_t s : kernel().simple) add(r, setup_.cells.choice(setup_.tree.simple()[s].predictor, 0), figures);
+    for (const std::size_t s : kernel().simple)
+      add(r, setup_.cells.choice(setup_.tree.simple()[s].predictor, 0), figures);
     add(r, setup_.cells.terms(path_.size()), figures);
-    ++best_.histogram[r * search::Summary::kBins + histogram_bin(cv)];
+    ++best_.histogram[r * search::Summary::kBins + histogram_bin(cv, setup_.summary.first_bin[r])];
   }
   n_outer_scored_ += grams.n_responses();
   if (n_scored() - n_reported_ >= kProgressBatch) tick(0);
@@ -256,8 +276,8 @@ void SpaceWalker::add_run(std::span<const std::size_t> lanes) {
     for (std::size_t p = 0; p < shape.n_predictors(); ++p) {
       const SimplePredictor& simple = setup_.tree.simple()[below.simple[p]];
       const auto cell = [&](std::size_t choice) { return setup_.cells.choice(simple.predictor, choice); };
-      const bool picked = std::any_of(lanes.begin(), lanes.end(),
-                                      [&](std::size_t lane) { return shape.predictor_of_lane[lane] == p; });
+      const bool picked =
+          std::any_of(lanes.begin(), lanes.end(), [&](std::size_t lane) { return shape.predictor_of_lane[lane] == p; });
       if (picked) continue;
       add(r, cell(0), p < open ? harvest_.absent[r][p] : harvest_.all[r]);
       if (p >= open) continue;
@@ -271,8 +291,9 @@ void SpaceWalker::add_run(std::span<const std::size_t> lanes) {
 
 BestStandings SpaceWalker::standings() const {
   BestStandings all = best_;
-  if (setup_.summary.wanted)
-    for (std::size_t i = 0; i < all.histogram.size(); ++i) all.histogram[i] += pairs_.histogram()[i];
+  if (!setup_.summary.wanted) return all;
+  const auto of_pairs = pairs_.histogram();
+  for (std::size_t i = 0; i < all.histogram.size(); ++i) all.histogram[i] += of_pairs[i];
   return all;
 }
 

@@ -32,6 +32,7 @@ struct WalkSetup {
   std::size_t n_rows;
   StandingCells cells;
   PairWalker::Summary summary;
+  std::vector<int> unit_exponent;  ///< [responses] of Summary::unit_sse, where a summary is wanted
 };
 
 /// Walks parts one after another. What it has found after a set of parts does not depend on their order.

@@ -7,9 +7,12 @@
 namespace formsieve::search {
 
 namespace {
-/// Exponent of the first bin's octave, and bins to an octave; the kernel counts alike.
-constexpr int kFirstOctave = -40;
-constexpr std::size_t kBinsToOctave = 8;
+/// The first bin's octave relative to the unit, and bins to an octave; the kernel counts alike.
+constexpr int kFirstOctave = -14;
+constexpr std::size_t kBinsToOctave = 4;
+/// All bits of the fraction but the first two.
+constexpr int kLowBits = 50;
+constexpr int kExponentBias = 1023;
 }  // namespace
 
 double Summary::edge(std::size_t i) {
@@ -17,10 +20,16 @@ double Summary::edge(std::size_t i) {
   return std::ldexp(fraction, kFirstOctave + static_cast<int>(i / kBinsToOctave));
 }
 
-std::size_t histogram_bin(double cv_sse) {
-  constexpr int kFractionBits = 49;  // all but the first three of 52
-  const auto bin = static_cast<std::int64_t>(std::bit_cast<std::uint64_t>(cv_sse) >> kFractionBits) -
-                   (1023 + kFirstOctave) * static_cast<std::int64_t>(kBinsToOctave);
+int unit_exponent(double empty_cv_sse) {
+  return empty_cv_sse > 0.0 ? static_cast<int>(std::ceil(std::log2(empty_cv_sse))) : 0;
+}
+
+std::int64_t first_bin(int exponent) {
+  return (kExponentBias + exponent + kFirstOctave) * static_cast<std::int64_t>(kBinsToOctave);
+}
+
+std::size_t histogram_bin(double cv_sse, std::int64_t first) {
+  const auto bin = static_cast<std::int64_t>(std::bit_cast<std::uint64_t>(cv_sse) >> kLowBits) - first;
   return static_cast<std::size_t>(std::clamp<std::int64_t>(bin, 0, Summary::kBins - 1));
 }
 
@@ -34,7 +43,9 @@ void LogSum::add(double log_term) {
   }
 }
 
-double LogSum::value() const { return sum_ == 0.0 ? -std::numeric_limits<double>::infinity() : largest_ + std::log(sum_); }
+double LogSum::value() const {
+  return sum_ == 0.0 ? -std::numeric_limits<double>::infinity() : largest_ + std::log(sum_);
+}
 
 StandingCells::StandingCells(const Space& space) : first{0} {
   for (const auto& predictor : space.predictors) first.push_back(first.back() + 1 + predictor.forms.size());

@@ -6,6 +6,7 @@
 #include "search/walk.hpp"
 
 #include <cstddef>
+#include <cstdint>
 #include <limits>
 #include <span>
 #include <vector>
@@ -51,7 +52,11 @@ std::vector<ResponseSummary> summarise(const Space& space, const StandingCells& 
                                        std::span<const WeightLogs> weights, std::span<const double> scale,
                                        std::size_t n_rows);
 
+/// The unit of Summary::edge as an exponent of two: the next power of two from the empty candidate's held-out SSE on.
+int unit_exponent(double empty_cv_sse);
+/// The first bin's lower edge as the kernel compares it: the leading bits of the number.
+std::int64_t first_bin(int unit_exponent);
 /// The bin of a held-out SSE, as the kernel counts it.
-std::size_t histogram_bin(double cv_sse);
+std::size_t histogram_bin(double cv_sse, std::int64_t first_bin);
 
 }  // namespace formsieve::search

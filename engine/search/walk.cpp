@@ -7,6 +7,7 @@
 #include <algorithm>
 #include <atomic>
 #include <cassert>
+#include <cmath>
 #include <memory>
 #include <mutex>
 
@@ -114,7 +115,8 @@ void walk_responses(const Space& space, const base::GramSet& grams, const WalkOp
   const auto scale = std::span(grams.response_scale).subspan(first, n);
   for (auto& summary : summarise(space, setup.cells, best, workers.weights(), scale, grams.n_rows))
     result.summary.responses.push_back(std::move(summary));
-  for (const double unit : scale) result.summary.unit_sse.push_back(unit * unit);
+  for (std::size_t r = 0; r < n; ++r)
+    result.summary.unit_sse.push_back(std::ldexp(scale[r] * scale[r], setup.unit_exponent[r]));
 }
 
 }  // namespace

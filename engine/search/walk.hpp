@@ -54,13 +54,15 @@ struct ResponseSummary {
 /// The whole space in figures. Empty `responses` when it was not asked for.
 struct Summary {
   static constexpr double kNegligibleWeight = 1e-6;
-  /// Bins of the histogram: eight to an octave, the first holding everything below edge(1), the last everything from
+  /// Bins of the histogram: four to an octave, the first holding everything below edge(1), the last everything from
   /// edge(kBins − 1).
-  static constexpr std::size_t kBins = 512;
+  static constexpr std::size_t kBins = 64;
 
   std::vector<ResponseSummary> responses;
-  std::vector<double> unit_sse;  ///< [response] the unit of edge(): response_scale²
-  /// Lower edge of bin i in units of unit_sse: 2^(i div 8 − 40) · (1 + (i mod 8)/8).
+  /// [response] the unit of edge(): the empty candidate's held-out SSE, rounded up to a power of two times
+  /// response_scale².
+  std::vector<double> unit_sse;
+  /// Lower edge of bin i in units of unit_sse: 2^(i div 4 − 14) · (1 + (i mod 4)/4).
   static double edge(std::size_t i);
 };
 

@@ -41,7 +41,8 @@ TEST_CASE("search: a walker allocates nothing while it walks", "[search][unit]")
   search::WalkOptions options = test::keep_all(problem.space, 2.0);
   options.rules[0].keep = 20;
   options.summary_penalty.assign(30, 0.0);
-  for (std::size_t k = 0; k < options.summary_penalty.size(); ++k) options.summary_penalty[k] = 2.0 * static_cast<double>(k);
+  for (std::size_t k = 0; k < options.summary_penalty.size(); ++k)
+    options.summary_penalty[k] = 2.0 * static_cast<double>(k);
   const search::WalkSetup setup(problem.space, grams, options, 0, 2);
   search::SpaceWalker walker(setup);
   const search::Part whole{{}, {}, true};

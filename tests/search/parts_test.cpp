@@ -98,7 +98,9 @@ TEST_CASE("search: counts saturate instead of overflowing", "[search][unit]") {
 }
 
 TEST_CASE("search: the parts are different and hold every candidate once", "[search][unit]") {
-  Space space = test::make_problem(1, 4, {{{1, 1}}, {{1, 2}}, {{1, 1, 1}}, {{1, 3}, true}, {{1, 1}}, {{1}}, {{1, 1}}}, 1, 2).space;
+  Space space =
+      test::make_problem(1, 4, {{{1, 1}}, {{1, 2}}, {{1, 1, 1}}, {{1, 3}, true}, {{1, 1}}, {{1}}, {{1, 1}}}, 1, 2)
+          .space;
   for (const std::size_t max_terms : {2u, 4u, 7u}) {
     space.max_terms = max_terms;
     const OuterTree tree(space);

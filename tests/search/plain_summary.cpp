@@ -42,9 +42,9 @@ Standing standing(const std::vector<Penalised>& candidates, std::size_t n_rows, 
   return result;
 }
 
-/// Lower edge of a bin: eight equal steps to an octave, beginning at 2^−40.
+/// Lower edge of a bin: four equal steps to an octave, beginning at 2^−14.
 double plain_edge(std::size_t bin) {
-  return std::pow(2.0, static_cast<double>(bin / 8) - 40.0) * (1.0 + static_cast<double>(bin % 8) / 8.0);
+  return std::pow(2.0, static_cast<double>(bin / 4) - 14.0) * (1.0 + static_cast<double>(bin % 4) / 4.0);
 }
 
 std::size_t bin_of(double sse_in_units) {
@@ -95,7 +95,11 @@ Summary plain_summary(const search::Space& space, const base::GramSet& grams, co
       const double cost = penalty.at(scored.n_columns);
       candidates.push_back({&scored, std::isinf(cost) ? cost : scored.rss * std::exp(cost / n)});
     }
-    summary.unit_sse.push_back(grams.response_scale[r] * grams.response_scale[r]);
+    double empty_sse = 0.0;
+    const std::size_t own = (grams.n_columns + r) * (grams.order() + 1);
+    for (const auto& validation : grams.validation) empty_sse += validation[own];
+    const double octave = std::exp2(std::ceil(std::log2(empty_sse)));
+    summary.unit_sse.push_back(octave * grams.response_scale[r] * grams.response_scale[r]);
     summary.responses.push_back(of_response(space, candidates, grams.n_rows, summary.unit_sse.back()));
   }
   return summary;
