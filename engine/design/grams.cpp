@@ -3,13 +3,11 @@
 #include "base/sums.hpp"
 #include "design/design.hpp"
 #include "design/moments.hpp"
+#include "design/parts.hpp"
 #include "design/standardise.hpp"
 
 #include <algorithm>
 #include <cassert>
-#include <memory>
-#include <mutex>
-#include <numeric>
 #include <optional>
 #include <utility>
 
@@ -21,82 +19,11 @@ namespace {
 /// the mean of all rows: its spread there is then 1e-7 of its distance from the rows held out, and the roundings of the
 /// standardised values are more than 1e-9 of it.
 constexpr double kConstantInFold_rel = 1e-14;
-/// Parts of the sum over rows of one repeat, at most about this many: bounds the memory that their sums take.
-constexpr std::size_t kMostParts = 256;
-/// Chunks of rows in one part, at least: so that joining sums costs little beside making them.
-constexpr std::size_t kFewestChunks = 4;
 
 /// Sums over the rows of one fold.
 struct FoldMoments {
   Moments weighted;
   Moments plain;  ///< without weights; empty when there are none, since then it would be the same
-};
-
-/// A run of rows of one fold, summed in one piece.
-struct Part {
-  std::size_t fold;
-  std::size_t number;  ///< within the fold
-  std::vector<std::uint32_t> rows;
-};
-
-std::size_t rows_in_part(std::size_t n_rows) {
-  return base::kRowChunk * std::max(kFewestChunks, n_rows / base::kRowChunk / kMostParts);
-}
-
-/// The rows of each fold cut into parts, by the rows and folds alone.
-std::vector<Part> cut(const std::vector<std::uint32_t>& fold_of, std::size_t n_folds) {
-  std::vector<std::vector<std::uint32_t>> rows(n_folds);
-  for (std::size_t i = 0; i < fold_of.size(); ++i) rows[fold_of[i]].push_back(static_cast<std::uint32_t>(i));
-  const std::size_t part_size = rows_in_part(fold_of.size());
-  std::vector<Part> parts;
-  for (std::size_t fold = 0; fold < n_folds; ++fold) {
-    const auto& all = rows[fold];
-    for (std::size_t first = 0; first < all.size(); first += part_size) {
-      const std::size_t last = std::min(first + part_size, all.size());
-      parts.push_back(
-          {fold,
-           first / part_size,
-           {all.begin() + static_cast<std::ptrdiff_t>(first), all.begin() + static_cast<std::ptrdiff_t>(last)}});
-    }
-  }
-  return parts;
-}
-
-/// The parts in the order in which to sum them: those of the same number lie in about the same rows of the table, whose
-/// values are then still in a cache.
-std::vector<std::size_t> working_order(const std::vector<Part>& parts) {
-  std::vector<std::size_t> order(parts.size());
-  std::iota(order.begin(), order.end(), std::size_t{0});
-  std::stable_sort(order.begin(), order.end(),
-                   [&](std::size_t a, std::size_t b) { return parts[a].number < parts[b].number; });
-  return order;
-}
-
-/// What the sums of one part need: kept for the next part, since fresh memory costs as much as the sums.
-struct PartWorkspace {
-  std::vector<double> values;
-  std::vector<double> weights;
-  BlockWorkspace block;
-};
-
-/// Workspaces that the parts take in turn, as many as there are parts at the same time.
-class PartWorkspaces {
- public:
-  std::unique_ptr<PartWorkspace> take() {
-    const std::lock_guard lock(mutex_);
-    if (idle_.empty()) return std::make_unique<PartWorkspace>();
-    auto workspace = std::move(idle_.back());
-    idle_.pop_back();
-    return workspace;
-  }
-  void give_back(std::unique_ptr<PartWorkspace> workspace) {
-    const std::lock_guard lock(mutex_);
-    idle_.push_back(std::move(workspace));
-  }
-
- private:
-  std::mutex mutex_;
-  std::vector<std::unique_ptr<PartWorkspace>> idle_;
 };
 
 FoldMoments sum_rows(const Data& data, const StandardColumns& columns, const std::vector<std::uint32_t>& rows,

@@ -1,0 +1,26 @@
+// A few good candidates of one response form without visiting the space: descent by single changes.
+#pragma once
+
+#include "base/gram.hpp"
+#include "search/space.hpp"
+
+#include <cstddef>
+#include <vector>
+
+namespace formsieve::search {
+
+struct DescentOptions {
+  std::size_t keep = 25;        ///< candidates returned at most
+  std::size_t most_moves = 40;  ///< changes made at most, each after a look at every single change
+  unsigned threads = 0;         ///< 0: all that the process may use
+};
+
+/// Starts from the predictors that are always in, each in its first form, and as long as that lowers the held-out sum
+/// of squares (the form's scale, all folds) makes the best single change: a predictor enters, leaves or takes another
+/// form. Returns the best of all candidates looked at, best first, ties by candidate number; empty where none is
+/// separable. The same for any number of threads. Cost: O(folds · k³) per candidate of k columns, and a move looks at
+/// every form of the space once.
+std::vector<Choice> descend(const Space& space, const base::GramSet& grams, std::size_t response,
+                            const DescentOptions& options);
+
+}  // namespace formsieve::search
