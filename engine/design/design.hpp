@@ -96,11 +96,15 @@ Result<base::GramSet> build_grams(const Data& data, const Folds& folds, unsigned
 /// What a set of Gram matrices is made from, as far as memory is concerned.
 struct GramSize {
   std::size_t n_rows = 0;
-  std::size_t order = 0;  ///< design columns and response forms
+  std::size_t n_columns = 0, n_responses = 1;
   std::size_t folds = 0, repeats = 1;
   bool weighted = false;
+  std::size_t n_own_units = 0;  ///< responses with held-out matrices in own units
+
+  std::size_t order() const { return n_columns + n_responses; }
 };
-/// Bytes of the matrices that build_grams returns: (1 + 2 · folds · repeats) · order² numbers.
+/// Bytes of the matrices: (1 + 2 · folds · repeats) · order² numbers, and folds · repeats · (n_columns + 2)² for each
+/// response in own units.
 double gram_bytes(const GramSize& size);
 /// Bytes that build_grams takes beyond those matrices at its widest moment, within a few per cent: the sums of all
 /// parts of one repeat, the sums of the folds, and the blocks of rows of each thread.

@@ -176,12 +176,15 @@ class FoldSums {
 }  // namespace
 
 double gram_bytes(const GramSize& size) {
-  const double order = static_cast<double>(size.order);
-  return (1.0 + 2.0 * static_cast<double>(size.folds * size.repeats)) * order * order * sizeof(double);
+  const double order = static_cast<double>(size.order());
+  const double own_order = static_cast<double>(size.n_columns + 2);
+  const double n_folds = static_cast<double>(size.folds * size.repeats);
+  const double own = static_cast<double>(size.n_own_units) * n_folds * own_order * own_order;
+  return ((1.0 + 2.0 * n_folds) * order * order + own) * sizeof(double);
 }
 
 double gram_building_bytes(const GramSize& size, unsigned threads) {
-  const double order = static_cast<double>(size.order);
+  const double order = static_cast<double>(size.order());
   const double n_parts = static_cast<double>(size.folds + size.n_rows / rows_in_part(size.n_rows));
   const double sums = n_parts * (size.weighted ? 2.0 : 1.0);
   const double joined_after = static_cast<double>(size.folds) + 3.0;

@@ -26,7 +26,6 @@ constexpr double kMostLevels = 4.0;
 /// What the need depends on.
 struct Shape {
   design::GramSize grams;
-  std::size_t n_responses = 1;
   std::size_t most_terms = 1;
   double widest_candidate = 0.0;  ///< columns
   std::size_t pool = 0;
@@ -36,9 +35,16 @@ struct Shape {
 Shape shape_of(const Prepared& prepared, const run::Plan& plan, unsigned threads) {
   Shape shape;
   const design::Layout layout = design::layout(prepared.data);
-  shape.n_responses = prepared.data.response_forms.size();
-  shape.grams = {prepared.data.n_rows, layout.n_columns + shape.n_responses, prepared.folds.count,
-                 std::max<std::size_t>(prepared.folds.repeats, 1), !prepared.data.weights.empty()};
+  const auto& responses = prepared.data.response_forms;
+  shape.grams.n_rows = prepared.data.n_rows;
+  shape.grams.n_columns = layout.n_columns;
+  shape.grams.n_responses = responses.size();
+  shape.grams.folds = prepared.folds.count;
+  shape.grams.repeats = std::max<std::size_t>(prepared.folds.repeats, 1);
+  shape.grams.weighted = !prepared.data.weights.empty();
+  // the scale of the identity is own units already
+  shape.grams.n_own_units = static_cast<std::size_t>(std::count_if(
+      responses.begin(), responses.end(), [](const forms::Form& form) { return form.kind != forms::Kind::identity; }));
   shape.most_terms = std::min(plan.search.max_terms.value_or(layout.block.size()), layout.block.size());
   std::vector<std::size_t> widest;
   for (const auto& forms : layout.block) {
@@ -54,15 +60,13 @@ Shape shape_of(const Prepared& prepared, const run::Plan& plan, unsigned threads
 
 MemoryNeed need_of(const Shape& shape) {
   MemoryNeed need;
-  const double order = static_cast<double>(shape.grams.order);
-  const double n_folds = static_cast<double>(shape.grams.folds * shape.grams.repeats);
   const double pool = static_cast<double>(shape.pool);
   const double rows = static_cast<double>(shape.grams.n_rows);
   const double levels = std::clamp(static_cast<double>(shape.most_terms) / 3.0, 1.0, kMostLevels);
   need.grams = design::gram_bytes(shape.grams);
   need.building = design::gram_building_bytes(shape.grams, shape.threads);
-  need.walk = shape.threads * levels * (1.0 + 2.0 * n_folds) * order * order * sizeof(double);
-  need.pool = pool * (kLists * static_cast<double>(shape.n_responses) * kPooledBytes + kExaminedBytes);
+  need.walk = shape.threads * levels * need.grams;
+  need.pool = pool * (kLists * static_cast<double>(shape.grams.n_responses) * kPooledBytes + kExaminedBytes);
   need.examining = shape.threads * rows * (kFitCopies * (1.0 + shape.widest_candidate) + kFitColumns) * sizeof(double);
   return need;
 }
@@ -112,7 +116,7 @@ Advice advice_for(const Shape& shape, const run::Plan& plan, double available) {
   };
   const auto with_columns = [&](std::size_t columns) {
     Shape other = shape;
-    other.grams.order = columns + shape.n_responses;
+    other.grams.n_columns = columns;
     return fits(other, available);
   };
   const bool may_choose_folds = !plan.data.fold;
@@ -121,7 +125,7 @@ Advice advice_for(const Shape& shape, const run::Plan& plan, double available) {
   const std::string once = shape.grams.repeats > 1 ? " with search.repeats = 1" : "";
   if (const auto folds = largest_fitting(3, shape.grams.folds - 1, with_folds); folds && may_choose_folds)
     return {"search.folds", "search.folds = " + std::to_string(*folds) + once + " fits"};
-  const std::size_t columns = shape.grams.order - shape.n_responses;
+  const std::size_t columns = shape.grams.n_columns;
   if (const auto fewer = largest_fitting(1, columns - 1, with_columns))
     return {"forms.default", "forms that make at most " + std::to_string(*fewer) + " columns instead of " +
                                  std::to_string(columns) + " fit"};
@@ -145,7 +149,7 @@ Status check_memory(const Prepared& prepared, const run::Plan& plan, unsigned th
   const std::string message = "the search would need about " + size_words(need.peak()) +
                               " of memory beyond the table, and " + size_words(static_cast<double>(*available)) +
                               " are free: the matrices of " + std::to_string(shape.grams.folds * shape.grams.repeats) +
-                              " folds by " + std::to_string(shape.grams.order) + " columns and responses take " +
+                              " folds by " + std::to_string(shape.grams.order()) + " columns and responses take " +
                               size_words(need.grams) + ", their construction " + size_words(need.building) +
                               ", the walk " + size_words(need.walk) + ", the pool " + size_words(need.pool) +
                               ", examining " + size_words(need.examining);

@@ -1,5 +1,6 @@
 // What a search will need of memory, and the refusal of one that would not fit.
 #include "base/memory.hpp"
+#include "design/own_units.hpp"
 #include "pipeline/memory.hpp"
 #include "support.hpp"
 
@@ -41,11 +42,21 @@ std::uint64_t peak(const run::Plan& plan) {
 TEST_CASE("pipeline: the memory of the Gram matrices is what they take", "[pipeline][unit]") {
   const run::Plan plan = demo_plan(5, 3);
   const pipeline::Prepared prepared = prepared_for(plan);
-  const auto grams = design::build_grams(prepared.data, prepared.folds, 1);
+  auto grams = design::build_grams(prepared.data, prepared.folds, 1);
   REQUIRE(grams);
+  std::vector<design::Pilot> pilots;
+  const std::vector<double> ones(prepared.data.n_rows, 1.0);
+  for (std::size_t r = 0; r < prepared.data.response_forms.size(); ++r)
+    if (prepared.data.response_forms[r].kind != forms::Kind::identity)
+      pilots.push_back({r, {ones, ones, ones}, {ones, ones, ones}});
+  REQUIRE_FALSE(pilots.empty());
+  const auto own = design::build_own_units_grams(prepared.data, prepared.folds, pilots, 1);
+  REQUIRE(own);
   std::size_t numbers = grams->all.size();
   for (const auto* matrices : {&grams->training, &grams->validation})
     for (const auto& matrix : *matrices) numbers += matrix.size();
+  for (const auto& one : *own)
+    for (const auto& matrix : one.validation) numbers += matrix.size();
   CHECK(pipeline::memory_need(prepared, plan, 1).grams == static_cast<double>(numbers * sizeof(double)));
 }
 
