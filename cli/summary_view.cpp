@@ -109,25 +109,29 @@ std::string others_words(const View& view, const Line& line) {
   return joined(parts, ", ");
 }
 
+bool has_weights(const std::vector<Line>& lines) {
+  return std::any_of(lines.begin(), lines.end(),
+                     [](const Line& line) { return line.predictor->weight_share.has_value(); });
+}
+
 TextTable form_table(const View& view, const std::vector<Line>& lines) {
-  TextTable table({{"predictor"},
-                   {"best as", false, 0, 1},
-                   {"left out", true, 0, 1},
-                   {"weight", true, 0, 1},
-                   {"other forms", false, kLeastOthers, 2}});
+  const bool weights = has_weights(lines);
+  std::vector<TableColumn> columns = {{"predictor"}, {"best as", false, 0, 1}, {"left out", true, 0, 1}};
+  if (weights) columns.push_back({"weight", true, 0, 1});
+  columns.push_back({"other forms", false, kLeastOthers, 2});
+  TextTable table(columns);
   for (const Line& line : lines) {
-    table.add_row({{line.predictor->column},
-                   {form_words(line.best->form)},
-                   {left_out_words(view, line)},
-                   {share_words(line.predictor->weight_share)},
-                   {others_words(view, line)}});
+    std::vector<Cell> cells = {{line.predictor->column}, {form_words(line.best->form)}, {left_out_words(view, line)}};
+    if (weights) cells.push_back({share_words(line.predictor->weight_share)});
+    cells.push_back({others_words(view, line)});
+    table.add_row(std::move(cells));
   }
   return table;
 }
 
 // "exact over all 12,000,000 candidates", or how many were scored of how many.
 std::string extent(const judge::Coverage& space) {
-  if (space.complete && space.scored == space.candidates) {
+  if (space.scored == space.candidates) {
     return "exact over all " + grouped(space.candidates) + " candidates";
   }
   return "exact among the " + grouped(space.scored) + " candidates that were scored, of " + grouped(space.candidates);
@@ -135,7 +139,7 @@ std::string extent(const judge::Coverage& space) {
 
 // Under AIC and AICc a predictor without effect has about even odds for each of its forms against one of absence.
 std::string weight_words(const View& view) {
-  std::string words = "Weight: the share of Akaike weight, by " + view.criterion +
+  std::string words = " Weight: the share of Akaike weight, by " + view.criterion +
                       ", that candidates with the predictor have under all response forms";
   if (view.shortlist.summary.criterion != judge::Criterion::bic)
     words += "; pure noise reaches 0.7 easily, having several forms to be in by and one way to be out";
@@ -163,7 +167,7 @@ void form_costs(Page& page, const View& view) {
   page.prose(
       "x is the predictor. Cost in error: the best candidate with the form, or without the predictor, beside the best "
       "of all, cross-validated on the scale of " +
-      response + "; " + extent(view.shortlist.space) + ". " + weight_words(view));
+      response + "; " + extent(view.shortlist.space) + "." + (has_weights(lines) ? weight_words(view) : ""));
 }
 
 // The numbers of terms worth a line: as far as the error falls and a little beyond.

@@ -54,15 +54,16 @@ double log_of_sum(const std::vector<double>& logs) {
 /// Turns what the walk says of sets of candidates into figures a person can compare.
 class Translator {
  public:
-  Translator(const search::Summary& summary, const Prepared& prepared, const LikelihoodConstants& constants)
-      : summary_(summary),
+  Translator(const search::WalkResult& walked, const Prepared& prepared, const LikelihoodConstants& constants)
+      : summary_(walked.summary),
+        complete_(walked.complete),
         n_rows_(static_cast<double>(prepared.data.n_rows)),
         n_held_out_(n_rows_ * static_cast<double>(prepared.folds.repeats)),
         constants_(constants) {
     std::vector<double> log_weights;
-    for (std::size_t r = 0; r < summary.responses.size(); ++r) {
-      lowest_ = std::min(lowest_, criterion(summary.responses[r].all, r));
-      log_weights.push_back(log_weight(summary.responses[r].all, r));
+    for (std::size_t r = 0; r < summary_.responses.size(); ++r) {
+      lowest_ = std::min(lowest_, criterion(summary_.responses[r].all, r));
+      log_weights.push_back(log_weight(summary_.responses[r].all, r));
     }
     log_whole_ = log_of_sum(log_weights);
   }
@@ -80,6 +81,7 @@ class Translator {
   bool has_density(std::size_t response) const { return std::isfinite(constants_.log_jacobian[response]); }
 
   const search::Summary& summary_;
+  bool complete_;
   double n_rows_;
   double n_held_out_;
   const LikelihoodConstants& constants_;
@@ -114,7 +116,7 @@ judge::Reach Translator::reach(const search::Standing& standing, std::size_t res
 }
 
 std::optional<double> Translator::share(const std::vector<double>& log_weights) const {
-  if (!std::isfinite(log_whole_)) return std::nullopt;
+  if (!complete_ || !std::isfinite(log_whole_)) return std::nullopt;
   return to_step(std::min(1.0, std::exp(log_of_sum(log_weights) - log_whole_)), kShareStep);
 }
 
@@ -211,12 +213,13 @@ std::vector<double> summary_penalty(const Prepared& prepared, Criterion ranked_b
   return penalty;
 }
 
-judge::SpaceSummary space_summary(const search::Summary& summary, const Prepared& prepared, Criterion ranked_by,
+judge::SpaceSummary space_summary(const search::WalkResult& walked, const Prepared& prepared, Criterion ranked_by,
                                   const LikelihoodConstants& constants) {
+  const search::Summary& summary = walked.summary;
   judge::SpaceSummary result;
   result.criterion = summary_criterion(ranked_by);
   if (summary.responses.empty()) return result;
-  const Translator translator(summary, prepared, constants);
+  const Translator translator(walked, prepared, constants);
   for (std::size_t r = 0; r < summary.responses.size(); ++r) {
     const search::ResponseSummary& own = summary.responses[r];
     result.responses.push_back({translator.reach(own.all, r), translator.share({translator.log_weight(own.all, r)}),

@@ -18,10 +18,11 @@ judge::Criterion summary_criterion(judge::Criterion ranked_by);
 /// space can have; for search::WalkOptions::summary_penalty.
 std::vector<double> summary_penalty(const Prepared& prepared, judge::Criterion ranked_by);
 
-/// The form profile, the best of each number of terms, the shares of weight and the distribution of scores. `summary`
-/// was made with summary_penalty(); an empty one gives an empty result. Criteria are those of the examination, so that
-/// the two can be compared. Cost: nothing depends on rows or candidates.
-judge::SpaceSummary space_summary(const search::Summary& summary, const Prepared& prepared, judge::Criterion ranked_by,
-                                  const LikelihoodConstants& constants);
+/// The form profile, the best of each number of terms, the shares of weight and the distribution of scores, from a walk
+/// with summary_penalty(); empty when it made no summary. Criteria are those of the examination, so that the two can be
+/// compared. Shares of weight are unset after a walk that was stopped: what it had not reached may hold most of the
+/// weight. Cost: nothing depends on rows or candidates.
+judge::SpaceSummary space_summary(const search::WalkResult& walked, const Prepared& prepared,
+                                  judge::Criterion ranked_by, const LikelihoodConstants& constants);
 
 }  // namespace formsieve::pipeline

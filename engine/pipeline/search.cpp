@@ -249,8 +249,7 @@ void Search::describe() {
   shortlist_.responses = prepared_->data.response_forms;
   shortlist_.response_notes = prepared_->response_notes;
   shortlist_.menus = prepared_->menus;
-  shortlist_.summary =
-      space_summary(walked_.summary, *prepared_, shortlist_.criterion, examiner_->likelihood_constants());
+  shortlist_.summary = space_summary(walked_, *prepared_, shortlist_.criterion, examiner_->likelihood_constants());
   auto& space = shortlist_.space;
   space.scored = std::to_string(walked_.n_scored);
   space.inseparable = walked_.n_inseparable.str();

@@ -160,6 +160,8 @@ TEST_CASE("cli: search announces on standard error and prints the shortlist on s
   CHECK(widest_line(outcome.out) <= 80 + stores().path().size());  // the run folder is never broken
   CHECK(has(outcome.out, "rank  response  CV RMSE ± se"));
   CHECK(has(outcome.out, "The recommended equation"));
+  CHECK(has(outcome.out, "\nWhat each form costs, for "));
+  CHECK(has(outcome.out, "\nError by number of terms, for "));
   CHECK(has(outcome.out, "formsieve show " + stores().file("stores.run")));
 }
 

@@ -77,8 +77,8 @@ TEST_CASE("cli: a predictor that is best left out, and one that is always in, ar
   shortlist.summary.predictors.back().always = true;
   shortlist.summary.predictors.back().choices.erase(shortlist.summary.predictors.back().choices.begin());
   const std::string page = unwrapped(tables(shortlist));
-  CHECK(has(page, "kept x^1.5 always in undefined needed x^2.5 +900 % undefined x^1.5 +10 % noise left out best"));
-  CHECK(has(page, "noise left out best undefined x^1.5 +0.0 %, x^2.5 +0.2 %"));
+  CHECK(has(page, "kept x^1.5 always in needed x^2.5 +900 % x^1.5 +10 % noise left out best"));
+  CHECK(has(page, "noise left out best x^1.5 +0.0 %, x^2.5 +0.2 %"));
 }
 
 TEST_CASE("cli: costly forms and predictors that cost little are counted, not listed, when there are many",
@@ -130,6 +130,14 @@ TEST_CASE("cli: the tables fit every width from 40 columns on", "[cli][unit]") {
     CAPTURE(width);
     CHECK(widest_line(tables(shortlist, width)) <= width);
   }
+}
+
+TEST_CASE("cli: a stopped run has no column of weights", "[cli][unit]") {
+  judge::Shortlist shortlist = samples::shortlist();
+  for (judge::PredictorProfile& one : shortlist.summary.predictors) one.weight_share.reset();
+  const std::string page = tables(shortlist);
+  CHECK(has(page, "predictor     best as     left out  other forms\n"));
+  CHECK_FALSE(has(page, "eight"));
 }
 
 TEST_CASE("cli: weights of noise are warned of where they mislead", "[cli][unit]") {

@@ -49,6 +49,13 @@ run::Plan trees() {
   return plan;
 }
 
+/// A finished walk of which the summary alone is known.
+search::WalkResult walked(search::Summary summary) {
+  search::WalkResult result;
+  result.summary = std::move(summary);
+  return result;
+}
+
 /// One candidate by the examination: what the screen's figures must agree with.
 struct Entry {
   search::Choice choice;
@@ -127,8 +134,9 @@ std::size_t n_terms(const search::Choice& choice) {
 void check_against_examination(const Setting& made, Criterion ranked_by) {
   const Criterion criterion = pipeline::summary_criterion(ranked_by);
   const auto penalty = pipeline::summary_penalty(made.prepared, ranked_by);
-  const auto summary = pipeline::space_summary(plain_summary(made.prepared.space, made.grams, penalty), made.prepared,
-                                               ranked_by, pipeline::Examiner(made.prepared).likelihood_constants());
+  const auto summary =
+      pipeline::space_summary(walked(plain_summary(made.prepared.space, made.grams, penalty)), made.prepared, ranked_by,
+                              pipeline::Examiner(made.prepared).likelihood_constants());
   const std::vector<Entry> entries = examined(made, criterion);
   CHECK(summary.criterion == criterion);
   REQUIRE(summary.predictors.size() == made.prepared.data.predictors.size());
@@ -205,8 +213,8 @@ TEST_CASE("pipeline: the histogram of scores counts every candidate where it bel
   const Setting made = setting(trees());
   const auto penalty = pipeline::summary_penalty(made.prepared, Criterion::aic);
   const auto summary =
-      pipeline::space_summary(plain_summary(made.prepared.space, made.grams, penalty), made.prepared, Criterion::aic,
-                              pipeline::Examiner(made.prepared).likelihood_constants());
+      pipeline::space_summary(walked(plain_summary(made.prepared.space, made.grams, penalty)), made.prepared,
+                              Criterion::aic, pipeline::Examiner(made.prepared).likelihood_constants());
   const std::vector<Entry> entries = examined(made, Criterion::aic);
   for (std::size_t r = 0; r < summary.responses.size(); ++r) {
     std::vector<double> cv_rmse;
@@ -220,13 +228,13 @@ TEST_CASE("pipeline: the histogram ends where candidates end, and its open ends 
           "[pipeline][unit]") {
   using search::Summary;
   const Setting made = setting(trees());
-  Summary walked =
+  Summary made_up =
       plain_summary(made.prepared.space, made.grams, pipeline::summary_penalty(made.prepared, Criterion::aic));
-  for (auto& response : walked.responses) response.histogram.assign(Summary::kBins, 0);
-  walked.responses[0].histogram.assign(Summary::kBins, 3);
-  walked.responses[1].histogram[20] = 7;
-  walked.responses[1].histogram[22] = 5;
-  const auto summary = pipeline::space_summary(walked, made.prepared, Criterion::aic,
+  for (auto& response : made_up.responses) response.histogram.assign(Summary::kBins, 0);
+  made_up.responses[0].histogram.assign(Summary::kBins, 3);
+  made_up.responses[1].histogram[20] = 7;
+  made_up.responses[1].histogram[22] = 5;
+  const auto summary = pipeline::space_summary(walked(made_up), made.prepared, Criterion::aic,
                                                pipeline::Examiner(made.prepared).likelihood_constants());
   const judge::ScoreDistribution& whole = summary.responses[0].scores;
   CHECK(whole.counts == std::vector<std::uint64_t>(Summary::kBins, 3));
@@ -237,7 +245,7 @@ TEST_CASE("pipeline: the histogram ends where candidates end, and its open ends 
   REQUIRE(some.edges.size() == 4);
   // 31 trees, each held out twice
   for (std::size_t i = 0; i < some.edges.size(); ++i)
-    CHECK(some.edges[i] == Approx(std::sqrt(Summary::edge(20 + i) * walked.unit_sse[1] / 62.0)).epsilon(1e-8));
+    CHECK(some.edges[i] == Approx(std::sqrt(Summary::edge(20 + i) * made_up.unit_sse[1] / 62.0)).epsilon(1e-8));
   CHECK(summary.responses[2].scores.counts.empty());
   CHECK(summary.responses[2].scores.edges.empty());
 }
@@ -247,21 +255,21 @@ TEST_CASE("pipeline: what was not scored, fits exactly or has no density is unse
   const auto penalty = pipeline::summary_penalty(made.prepared, Criterion::aic);
   const auto constants = pipeline::Examiner(made.prepared).likelihood_constants();
   const auto translated = [&](const auto& change) {
-    search::Summary walked = plain_summary(made.prepared.space, made.grams, penalty);
+    search::WalkResult result = walked(plain_summary(made.prepared.space, made.grams, penalty));
     auto own = constants;
-    change(walked, own);
-    return pipeline::space_summary(walked, made.prepared, Criterion::aic, own);
+    change(result.summary, own);
+    return pipeline::space_summary(result, made.prepared, Criterion::aic, own);
   };
-  const auto absent = translated([](search::Summary& walked, auto&) { walked.responses[0].of_choice[0][0] = {}; });
+  const auto absent = translated([](search::Summary& summary, auto&) { summary.responses[0].of_choice[0][0] = {}; });
   const judge::FormStanding& left_out = absent.predictors[0].choices.back();
   CHECK_FALSE(left_out.standing.by_response[0].cv_rmse_form);
   CHECK_FALSE(left_out.standing.by_response[0].cv_loss_rel);
   CHECK_FALSE(left_out.standing.by_response[0].criterion);
   CHECK(left_out.standing.by_response[1].criterion);
 
-  const auto exact = translated([](search::Summary& walked, auto&) {
-    walked.responses[0].all = {0.0, 0.0, kInfinity};
-    walked.responses[0].of_choice[0][1] = {0.0, 0.0, kInfinity};
+  const auto exact = translated([](search::Summary& summary, auto&) {
+    summary.responses[0].all = {0.0, 0.0, kInfinity};
+    summary.responses[0].of_choice[0][1] = {0.0, 0.0, kInfinity};
   });
   CHECK(exact.responses[0].best.cv_rmse_form == 0.0);
   CHECK(exact.predictors[0].choices[0].standing.by_response[0].cv_loss_rel == 0.0);
@@ -275,6 +283,20 @@ TEST_CASE("pipeline: what was not scored, fits exactly or has no density is unse
   CHECK(none.responses[0].best.cv_rmse_form);
   CHECK(none.responses[1].weight_share.value() + none.responses[2].weight_share.value() == Approx(1.0).margin(2e-6));
   CHECK(pipeline::space_summary({}, made.prepared, Criterion::aic, constants).empty());
+}
+
+TEST_CASE("pipeline: a walk that was stopped gives no shares of weight", "[pipeline][unit]") {
+  const Setting made = setting(trees());
+  const auto penalty = pipeline::summary_penalty(made.prepared, Criterion::aic);
+  search::WalkResult stopped = walked(plain_summary(made.prepared.space, made.grams, penalty));
+  stopped.complete = false;
+  const auto summary = pipeline::space_summary(stopped, made.prepared, Criterion::aic,
+                                               pipeline::Examiner(made.prepared).likelihood_constants());
+  CHECK_FALSE(summary.responses[0].weight_share);
+  CHECK_FALSE(summary.predictors[0].weight_share);
+  CHECK_FALSE(summary.predictors[0].choices[0].standing.weight_share);
+  CHECK_FALSE(summary.by_terms[0].standing.weight_share);
+  CHECK(summary.predictors[0].choices[0].standing.criterion);
 }
 
 TEST_CASE("pipeline: shortlist.json holds the whole space, and its lowest AIC is that of the shortlist",

@@ -121,7 +121,8 @@ struct Reach {
 struct Standing {
   std::vector<Reach> by_response;  ///< [response forms]
   std::optional<double> criterion, criterion_loss;
-  std::optional<double> weight_share;  ///< 0 … 1, of the summed exp(−criterion/2) of all candidates (Akaike 1979)
+  /// 0 … 1, of the summed exp(−criterion/2) of all candidates (Akaike 1979); unset when the walk was stopped
+  std::optional<double> weight_share;
 };
 
 /// One form of a predictor, or leaving it out.
