@@ -1,6 +1,8 @@
 #include "pipeline/estimate.hpp"
 
 #include "base/parallel.hpp"
+#include "pipeline/pilot.hpp"
+#include "search/candidate_fit.hpp"
 
 #include <algorithm>
 #include <chrono>
@@ -20,6 +22,16 @@ constexpr std::uint64_t kSmallSpace = 100'000;
 /// Assumed rate for small spaces, only for the sentence that announces the run; slower than any machine of the last ten
 /// years.
 constexpr double kCautiousRate = 1e6;
+
+/// Candidates that the lists of a calibration keep: in its short walk longer ones would not fill, and every candidate
+/// would be taken in, which hardly happens in a long one.
+constexpr std::size_t kCalibrationKeep = 100;
+
+/// Seconds that one candidate taken into a long list costs, about what was measured on a busy machine.
+constexpr double kSecondsPerEntry = 1e-6;
+
+/// Moves of a descent: about as many as good candidates have terms, each looking at every form.
+constexpr double kDescentMoves = 10.0;
 
 /// The largest space that can be numbered in 64 bits, the limit of strategy "every".
 const search::BigCount kMostCandidates = search::BigCount(1) << 62;
@@ -44,6 +56,40 @@ double seconds_of_one(const Prepared& prepared, const Examiner& examiner) {
   return std::chrono::duration<double>(std::chrono::steady_clock::now() - start).count();
 }
 
+/// Seconds to score one candidate from its Gram matrices.
+double seconds_of_scoring(const Prepared& prepared, const base::GramSet& grams) {
+  constexpr int kTimes = 20;
+  search::CandidateFit fit;
+  std::vector<std::size_t> columns;
+  search::columns_of(prepared.space, probe(prepared.space).choice, columns);
+  const auto start = std::chrono::steady_clock::now();
+  for (int i = 0; i < kTimes; ++i) (void)search::cv_sse_of(grams, columns, 0, fit);
+  return std::chrono::duration<double>(std::chrono::steady_clock::now() - start).count() / kTimes;
+}
+
+/// Candidates that enter a list of `keep` when `candidates` come in random order: the i-th with probability keep / i.
+double entries(double candidates, double keep) {
+  if (candidates <= keep) return candidates;
+  return keep * (1.0 + std::log(candidates / keep));
+}
+
+/// Seconds of the walk's lists beyond what the calibration saw, were they filled by one thread.
+double seconds_of_lists(const search::WalkOptions& walk, double candidates_each, std::size_t n_responses) {
+  double total = 0.0;
+  for (const auto& rule : walk.rules) total += entries(candidates_each, static_cast<double>(rule.keep));
+  return total * static_cast<double>(n_responses) * kSecondsPerEntry;
+}
+
+/// What the own-units screen needs on one thread, the Gram matrices apart.
+double seconds_of_own_units(const Prepared& prepared, const base::GramSet& grams, const search::WalkOptions& walk,
+                            double candidates_each, double seconds_of_one_examined) {
+  double n_forms = 0.0;
+  for (const auto& predictor : prepared.space.predictors) n_forms += static_cast<double>(predictor.forms.size());
+  double scored = kDescentMoves * n_forms;
+  for (const auto& rule : walk.rules) scored += std::min(candidates_each, static_cast<double>(rule.keep));
+  return scored * seconds_of_scoring(prepared, grams) + static_cast<double>(kPilotCandidates) * seconds_of_one_examined;
+}
+
 /// The largest max_terms whose space fits into `most` candidates, if any is smaller than the present one.
 std::optional<std::size_t> fitting_terms(const search::Space& space, const search::BigCount& most) {
   search::BigCount total = 0;
@@ -59,7 +105,8 @@ std::optional<std::size_t> fitting_terms(const search::Space& space, const searc
 
 std::string what_to_change(const Estimate& estimate, const Prepared& prepared, double budget_seconds) {
   const double affordable =
-      std::max(1.0, estimate.candidates_per_second * std::max(1.0, budget_seconds - estimate.examine_seconds));
+      std::max(1.0, estimate.candidates_per_second *
+                        std::max(1.0, budget_seconds - estimate.own_units_seconds - estimate.examine_seconds));
   const auto most = std::min(kMostCandidates, search::BigCount(affordable));
   std::string hint;
   if (const auto terms = fitting_terms(prepared.space, most); terms && *terms > 0)
@@ -95,17 +142,26 @@ std::string duration_words(double seconds) {
 }
 
 Estimate estimate(const Prepared& prepared, const base::GramSet& grams, const search::WalkOptions& walk,
-                  const Examiner& examiner, std::size_t pool) {
+                  const Examiner& examiner, std::size_t pool, double gram_seconds) {
   Estimate result;
   result.candidates = search::count(prepared.space);
   const double threads = walk.threads == 0 ? base::available_threads() : walk.threads;
+  search::WalkOptions short_lists = walk;
+  for (auto& rule : short_lists.rules) rule.keep = std::min(rule.keep, kCalibrationKeep);
   result.candidates_per_second = kCautiousRate;
   if (result.candidates > kSmallSpace)
-    result.candidates_per_second = threads * search::calibrate(prepared.space, grams, walk, kCalibrationSeconds);
+    result.candidates_per_second = threads * search::calibrate(prepared.space, grams, short_lists, kCalibrationSeconds);
   const double candidates = result.candidates.convert_to<double>();
-  result.screen_seconds = candidates / result.candidates_per_second;
-  result.examine_seconds =
-      seconds_of_one(prepared, examiner) * std::min(candidates, static_cast<double>(pool)) / threads;
+  const std::size_t n_responses = prepared.data.response_forms.size();
+  const double candidates_each = candidates / static_cast<double>(n_responses);
+  result.screen_seconds =
+      candidates / result.candidates_per_second + seconds_of_lists(walk, candidates_each, n_responses) / threads;
+  const double one = seconds_of_one(prepared, examiner);
+  for (const auto& form : prepared.data.response_forms)
+    if (!is_linear(form))
+      result.own_units_seconds +=
+          gram_seconds + seconds_of_own_units(prepared, grams, walk, candidates_each, one) / threads;
+  result.examine_seconds = one * std::min(candidates, static_cast<double>(pool)) / threads;
   return result;
 }
 

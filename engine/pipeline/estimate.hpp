@@ -10,17 +10,20 @@
 
 namespace formsieve::pipeline {
 
-/// Seconds by calibration on this machine: a short walk over a sample of subtrees, and one candidate examined.
+/// Seconds by calibration on this machine: a short walk over a sample of subtrees, one candidate examined, and one
+/// scored from its Gram matrices alone.
 struct Estimate {
   search::BigCount candidates;
   double candidates_per_second = 0.0;  ///< with all threads
   double screen_seconds = 0.0;
+  double own_units_seconds = 0.0;  ///< pilots, their Gram matrices, and the lists scored again
   double examine_seconds = 0.0;
-  double total() const { return screen_seconds + examine_seconds; }
+  double total() const { return screen_seconds + own_units_seconds + examine_seconds; }
 };
 
+/// `gram_seconds`: what building `grams` took.
 Estimate estimate(const Prepared& prepared, const base::GramSet& grams, const search::WalkOptions& walk,
-                  const Examiner& examiner, std::size_t pool);
+                  const Examiner& examiner, std::size_t pool, double gram_seconds);
 
 /// Error (kind plan) when the estimate exceeds the budget or the space is beyond what strategy "every" can number; says
 /// what to change.

@@ -10,6 +10,7 @@
 #include "pipeline/memory.hpp"
 #include "pipeline/meter.hpp"
 #include "pipeline/outputs.hpp"
+#include "pipeline/pilot.hpp"
 #include "pipeline/pool.hpp"
 #include "pipeline/prepare.hpp"
 #include "pipeline/profile.hpp"
@@ -44,7 +45,7 @@ class Search {
   Status read_and_prepare();
   Status open_outputs();
   Status count_and_announce();
-  void screen();
+  Status screen();
   void examine();
   void keep_only_required();
   Status complete(std::vector<judge::Candidate>& candidates) const;
@@ -66,6 +67,7 @@ class Search {
   base::GramSet grams_;
   std::vector<search::PoolRule> rules_;
   search::WalkResult walked_;
+  std::vector<PoolList> lists_;
   std::vector<search::Scored> pool_;
   std::map<std::string, search::Choice> choice_by_number_;
   std::vector<judge::Candidate> candidates_;
@@ -140,12 +142,14 @@ search::WalkOptions Search::walk_options() const {
 
 Status Search::count_and_announce() {
   meter_.begin("building Gram matrices", 0.0, "rows");
+  const double gram_start = meter_.seconds();
   auto grams = design::build_grams(prepared_->data, prepared_->folds, options_.threads);
   if (!grams) return grams.error();
+  const double gram_seconds = meter_.seconds() - gram_start;
   grams_ = std::move(*grams);
   rules_ = pool_rules(*prepared_, plan_);
   examiner_.emplace(*prepared_);
-  const Estimate time = estimate(*prepared_, grams_, walk_options(), *examiner_, plan_.search.pool);
+  const Estimate time = estimate(*prepared_, grams_, walk_options(), *examiner_, plan_.search.pool, gram_seconds);
   if (auto status = check_budget(time, *prepared_, plan_); !status) return status;
 
   Announcement news;
@@ -166,16 +170,20 @@ Status Search::count_and_announce() {
   return {};
 }
 
-void Search::screen() {
+Status Search::screen() {
+  meter_.begin("building Gram matrices in own units", 0.0, "rows");
+  if (auto status = add_own_units(*prepared_, grams_, options_.threads); !status) return status.error();
   meter_.begin("screening", search::BigCount(shortlist_.space.candidates).convert_to<double>(), "candidates");
   search::WalkOptions options = walk_options();
   options.stop = meter_.token();
   options.progress = [this](std::uint64_t scored) { meter_.add(scored); };
   walked_ = search::walk(prepared_->space, grams_, options);
   meter_.end();
-  pool_ = unite(walked_, plan_.search.pool);
+  lists_ = pool_lists(*prepared_, plan_, grams_, walked_, options_.threads);
+  pool_ = unite(lists_, plan_.search.pool);
   outputs_->log().info("screened {} candidates in {:.2f} s, {} inseparable; {} pooled", walked_.n_scored,
                        meter_.seconds(), walked_.n_inseparable.str(), pool_.size());
+  return {};
 }
 
 void Search::examine() {
@@ -256,8 +264,8 @@ void Search::describe() {
   space.strategy = "every";
   space.complete = walked_.complete && examined_all_;
   space.proved = walked_.complete;
-  space.pool_formed = pool_words(*prepared_, plan_, pool_.size());
-  space.pool_margin = margin_words(*prepared_, walked_, pool_);
+  space.pool_formed = pool_words(*prepared_, plan_, grams_, walked_, pool_.size());
+  space.pool_margin = margin_words(*prepared_, lists_, walked_, pool_);
   space.seconds = meter_.seconds();
   shortlist_.remarks.insert(shortlist_.remarks.begin(), prepared_->notes.begin(), prepared_->notes.end());
   if (!space.complete)
@@ -285,7 +293,7 @@ Result<SearchOutcome> Search::run() {
   if (auto status = read_and_prepare(); !status) return status.error();
   if (auto status = open_outputs(); !status) return status.error();
   if (auto status = count_and_announce(); !status) return status.error();
-  screen();
+  if (auto status = screen(); !status) return status.error();
   examine();
   if (candidates_.empty())
     return Error{ErrorKind::data,
