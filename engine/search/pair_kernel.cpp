@@ -7,6 +7,7 @@
 #include <cmath>
 #include <limits>
 #include <type_traits>
+#include <utility>
 
 #undef HWY_TARGET_INCLUDE
 #define HWY_TARGET_INCLUDE "search/pair_kernel.cpp"
@@ -39,7 +40,10 @@ constexpr double kSmallestLogWeight = -700.0;
 HWY_INLINE Vector load(const double* p) { return hn::LoadU(kTag, p); }
 HWY_INLINE void store(Vector v, double* p) { hn::StoreU(v, kTag, p); }
 HWY_INLINE Vector all(double x) { return hn::Set(kTag, x); }
-HWY_INLINE void lower(double* cell, Vector v) { store(hn::Min(load(cell), v), cell); }
+/// The smaller one; the second where the first is not a number, as after a division by a pivot of zero. What has such a
+/// pivot is set aside by the pivot itself, so its figures must only not hide others.
+HWY_INLINE Vector smaller(Vector maybe_not_a_number, Vector number) { return hn::Min(maybe_not_a_number, number); }
+HWY_INLINE void lower(double* cell, Vector v) { store(smaller(v, load(cell)), cell); }
 HWY_INLINE void increase(double* cell, Vector v) { store(hn::Add(load(cell), v), cell); }
 
 /// Whole vectors of kLanes numbers, of which narrower instruction sets use the first kWidth only.
@@ -63,6 +67,10 @@ std::size_t picks_cell(const PairWork& w, std::size_t r, std::size_t picks) {
 std::size_t lane_cell(const PairWork& w, std::size_t r, std::size_t lane) {
   return r * padded(w.shape->n_lanes()) + lane;
 }
+
+/// What was stored before is read from memory after it: the compiler would otherwise pick single lanes out of vector
+/// registers, by permutations that take the multipliers' place, where a broadcasting load costs nothing.
+HWY_INLINE void settle(const void* memory) { asm volatile("" : : "r"(memory) : "memory"); }
 
 /// 1 / d, within two units of the last place.
 HWY_INLINE Vector reciprocal(Vector d) {
@@ -266,24 +274,39 @@ HWY_INLINE bool all_separable(const PairWork& w, Vector smallest) {
 
 HWY_INLINE Vector at_least_zero(Vector v) { return hn::Max(v, hn::Zero(kTag)); }
 
+/// Where a lane stands in a row: eight numbers of A, then eight of U, and so on.
+HWY_INLINE std::size_t in_row(std::size_t lane) {
+  if constexpr (kWidth == kLanes) return 2 * lane;  // only ever a multiple of kLanes
+  return lane / kLanes * (2 * kLanes) + lane % kLanes;
+}
+
+/// Calls body(integral_constant i) for i = 0 … N − 1, so that arrays indexed by i can live in registers.
+template <std::size_t N, class Body>
+HWY_INLINE void unrolled(const Body& body) {
+  [&]<std::size_t... kIndex>(std::index_sequence<kIndex...>) __attribute__((always_inline)) {
+    (body(std::integral_constant<std::size_t, kIndex>()), ...);
+  }
+  (std::make_index_sequence<N>());
+}
+
 // ---- bringing in a column ------------------------------------------------------------------------------------------
 
 /// The column that is brought in, in one fold.
 template <int R>
 struct Pivot {
-  HWY_INLINE Pivot(const double* fold, const FoldOffsets& at, const PairShape& shape, std::size_t lane)
-      : a_row(fold + at.rows() + shape.row_offset[lane]),
-        u_row(a_row + shape.row_length[lane]),
-        inverse(all(fold[at.inverse() + lane])),
-        v(all(fold[at.v() + lane])),
-        two_v(all(2.0 * fold[at.v() + lane])) {
+  using F = FoldFields<R>;
+  /// `rows`: of the fold.
+  HWY_INLINE Pivot(const double* fold, const double* rows, std::size_t row_offset, std::size_t lane)
+      : row(rows + row_offset),
+        inverse(all(fold[F::inverse(lane)])),
+        v(all(fold[F::v(lane)])),
+        two_v(all(2.0 * fold[F::v(lane)])) {
     for (int r = 0; r < R; ++r) {
-      my[r] = all(fold[at.my(static_cast<std::size_t>(r)) + lane]);
-      hy[r] = all(fold[at.hy(static_cast<std::size_t>(r)) + lane]);
+      my[r] = all(fold[F::my(static_cast<std::size_t>(r), lane)]);
+      hy[r] = all(fold[F::hy(static_cast<std::size_t>(r), lane)]);
     }
   }
-  const double* a_row;
-  const double* u_row;
+  const double* row;
   Vector inverse, v, two_v;
   Vector my[R], hy[R];
 };
@@ -291,15 +314,18 @@ struct Pivot {
 /// A vector of open columns after the pivot.
 template <int R>
 struct Open {
-  HWY_INLINE Open(const Pivot<R>& pivot, const double* fold, const FoldOffsets& at, std::size_t lane)
-      : a_pivot(load(pivot.a_row + lane)), u_pivot(load(pivot.u_row + lane)), m(hn::Mul(a_pivot, pivot.inverse)) {
+  using F = FoldFields<R>;
+  HWY_INLINE Open(const Pivot<R>& pivot, const double* fold, std::size_t lane)
+      : a_pivot(load(pivot.row + in_row(lane))),
+        u_pivot(load(pivot.row + in_row(lane) + kLanes)),
+        m(hn::Mul(a_pivot, pivot.inverse)) {
     const Vector t = hn::MulSub(m, pivot.v, u_pivot);
-    a = hn::NegMulAdd(m, a_pivot, load(fold + at.a() + lane));
-    v = hn::MulAdd(m, t, load(fold + at.v() + lane));
+    a = hn::NegMulAdd(m, a_pivot, load(fold + F::a(lane)));
+    v = hn::MulAdd(m, t, load(fold + F::v(lane)));
     for (int r = 0; r < R; ++r) {
       const auto i = static_cast<std::size_t>(r);
-      ya[r] = hn::NegMulAdd(pivot.my[r], a_pivot, load(fold + at.ya(i) + lane));
-      yu[r] = hn::NegMulAdd(m, pivot.hy[r], hn::NegMulAdd(pivot.my[r], u_pivot, load(fold + at.yu(i) + lane)));
+      ya[r] = hn::NegMulAdd(pivot.my[r], a_pivot, load(fold + F::ya(i, lane)));
+      yu[r] = hn::NegMulAdd(m, pivot.hy[r], hn::NegMulAdd(pivot.my[r], u_pivot, load(fold + F::yu(i, lane))));
     }
   }
   HWY_INLINE Vector h(const Pivot<R>& pivot) const { return hn::NegMulAdd(m, pivot.two_v, u_pivot); }
@@ -322,11 +348,11 @@ HWY_INLINE Derived derive(Vector ya, Vector yu, Vector v, Vector inverse) {
 template <int R, class RowOf>
 HWY_INLINE void add_pair(Vector ra, Vector ua, Vector inverse_a, Vector v_a, const RowOf& my_a, const RowOf& hy_a,
                          Vector a_b, Vector v_b, const Vector (&ya_b)[R], const Vector (&yu_b)[R], Vector& smallest,
-                         Vector (&sum)[R]) {
+                         Vector* sum) {
   const Vector m = hn::Mul(ra, inverse_a);
   const Vector d = hn::NegMulAdd(m, ra, a_b);
   const Vector v = hn::MulAdd(m, hn::MulSub(m, v_a, ua), v_b);
-  smallest = hn::Min(smallest, d);
+  smallest = smaller(d, smallest);
   const Vector inverse = reciprocal(d);
   for (std::size_t r = 0; r < R; ++r) {
     const Vector b = hn::NegMulAdd(my_a(r), ra, ya_b[r]);
@@ -341,7 +367,7 @@ template <int R, class RowOf>
 HWY_INLINE void pair_rss(Vector ra, Vector inverse_a, const RowOf& my_a, Vector a_b, const Vector (&ya_b)[R],
                          Vector& smallest, Vector (&rss)[R]) {
   const Vector d = hn::NegMulAdd(hn::Mul(ra, inverse_a), ra, a_b);
-  smallest = hn::Min(smallest, d);
+  smallest = smaller(d, smallest);
   const Vector inverse = reciprocal(d);
   for (std::size_t r = 0; r < R; ++r) {
     const Vector b = hn::NegMulAdd(my_a(r), ra, ya_b[r]);
@@ -361,8 +387,11 @@ HWY_INLINE unsigned first_bits(std::size_t n) { return n >= kWidth ? (1U << kWid
 /// Which lanes from `lane` on are columns of predictors below `predictor`.
 HWY_INLINE unsigned inside_bits(const PairShape& shape, std::size_t predictor, std::size_t lane) {
   unsigned bits = first_bits(shape.first_lane[predictor] - lane);
-  const std::size_t of_first = shape.n_columns[1];
-  if (lane < shape.first_lane[1]) bits &= lane < of_first ? first_bits(of_first - lane) : 0U;
+  // padding lanes stand between the first predictor's columns and the second's
+  if (lane < shape.first_lane[1]) {
+    const std::size_t of_first = shape.n_columns[1];
+    bits &= ~first_bits(shape.first_lane[1] - lane) | (lane < of_first ? first_bits(of_first - lane) : 0U);
+  }
   return bits;
 }
 
@@ -471,8 +500,8 @@ HWY_INLINE void pass_up(PairWork& w, std::size_t level, std::size_t lane, std::s
 }
 
 /// The best of the forms of the two last predictors, from the scores of a node that may lower some of them.
-HWY_NOINLINE void lower_last_columns(PairWork& w, int x, std::size_t r, const double* scores, double factor,
-                                     std::size_t n_rows, std::size_t n_blocks) {
+[[maybe_unused]] HWY_NOINLINE void lower_last_columns(PairWork& w, int x, std::size_t r, const double* scores,
+                                                      double factor, std::size_t n_rows, std::size_t n_blocks) {
   PairTally& t = w.tally;
   const std::size_t first_row = w.shape->first_lane[1];
   bool lowered = false;
@@ -490,40 +519,60 @@ HWY_NOINLINE void lower_last_columns(PairWork& w, int x, std::size_t r, const do
 
 // ---- the child whose two open predictors are the last: everything in registers --------------------------------------
 
-template <int kRows, int kBlocks, int R, bool kTally>
-HWY_NOINLINE void last_pairs(PairWork& w, std::size_t level, std::size_t lane) {
+/// The scores of the pairs of the last two predictors of one node: vectors [row × blocks + block]. What is no
+/// candidate, or not separable, is infinite.
+template <int R>
+struct LastScores {
+  static constexpr std::size_t kMost = 8 * kLanes;  ///< rows × lanes
+  HWY_ALIGN double cv[R][kMost];
+  HWY_ALIGN double rss[R][kMost];
+  HWY_ALIGN double smallest[kMost];
+};
+
+/// The rows of these pairs: values of the second predictor's columns, to be broadcast.
+template <int R, std::size_t kLanesOfRows>
+struct RowColumns {
+  HWY_ALIGN double m[kLanesOfRows], h[kLanesOfRows], inverse[kLanesOfRows], v[kLanesOfRows], smallest[kLanesOfRows];
+  HWY_ALIGN double my[R][kLanesOfRows], hy[R][kLanesOfRows], base[R][kLanesOfRows], base_rss[R][kLanesOfRows];
+};
+
+/// Held-out SSE and RSS of the pairs of the last two predictors after `lane` has been brought in, with everything in
+/// registers. kRows forms of the second predictor; the first has at most kBlocks · kWidth. `kShared`: both stand in the
+/// first kLanes lanes.
+template <int kRows, int kBlocks, int R, bool kShared>
+HWY_NOINLINE void score_last_pairs(PairWork& w, std::size_t level, std::size_t lane, LastScores<R>& scores) {
+  using F = FoldFields<R>;
   const PairShape& shape = *w.shape;
   const PairLevel& parent = w.levels[level];
-  const FoldOffsets at{parent.stride, R};
-  constexpr std::size_t kRowVectors = (kRows + kWidth - 1) / kWidth;
-  constexpr std::size_t kRowLanes = kRowVectors * kWidth;
-  const std::size_t first_row = shape.first_lane[1];
-  const std::size_t row_length = shape.row_length[first_row];
-  const std::size_t rows_at = at.rows() + shape.row_offset[first_row];
+  constexpr std::size_t kRowLanes = kShared ? kLanes : (kRows + kWidth - 1) / kWidth * kWidth;
+  const std::size_t rows_lane = kShared ? 0 : shape.first_lane[1];  // where the vectors of rows start …
+  const std::size_t first_row = shape.first_lane[1] - rows_lane;    // … and the first row in them
+  const std::size_t rows_at = F::rows(parent.stride) + shape.row_offset[shape.first_lane[1]];
+  const std::size_t pivot_at = F::rows(parent.stride) + shape.row_offset[lane];
+  // rows of the second predictor are as long as the first has lanes
+  constexpr std::size_t kRowSize = 2 * padded(kBlocks * kWidth);
+  constexpr std::size_t kPairs = kRows * kBlocks;
 
-  HWY_ALIGN double m[kRowLanes], h[kRowLanes], inverse[kRowLanes], v[kRowLanes], row_smallest[kRowLanes];
-  HWY_ALIGN double my[R][kRowLanes], hy[R][kRowLanes], base[R][kRowLanes], base_rss[R][kRowLanes];
-  Vector sum[kRows][kBlocks][R];
-  Vector smallest[kRows][kBlocks];
-  for (int i = 0; i < kRows; ++i)
-    for (int b = 0; b < kBlocks; ++b) {
-      smallest[i][b] = all(kInfinity);
-      for (int r = 0; r < R; ++r) sum[i][b][r] = hn::Zero(kTag);
-    }
+  RowColumns<R, kRowLanes> row_values;
+  auto& [m, h, inverse, v, row_smallest, my, hy, base, base_rss] = row_values;
+  Vector sum[kPairs * R];
+  Vector smallest[kPairs];
+  unrolled<kPairs>([&](auto i) __attribute__((always_inline)) { smallest[i] = all(kInfinity); });
+  unrolled<kPairs * R>([&](auto i) __attribute__((always_inline)) { sum[i] = hn::Zero(kTag); });
   for (std::size_t i = 0; i < kRowLanes; i += kWidth) {
     store(all(kInfinity), row_smallest + i);
     for (std::size_t r = 0; r < R; ++r) {
-      store(all(parent.base_cv[r * at.stride + lane]), base[r] + i);
-      store(all(parent.base_rss[r * at.stride + lane]), base_rss[r] + i);
+      store(all(parent.base_cv[r * parent.stride + lane]), base[r] + i);
+      store(all(parent.base_rss[r * parent.stride + lane]), base_rss[r] + i);
     }
   }
   const std::size_t n_folds = w.n_folds;
   const std::size_t fold_size = parent.fold_size;
   const double* fold = parent.folds;
   for (std::size_t f = 0; f < n_folds; ++f, fold += fold_size) {
-    const Pivot<R> pivot(fold, at, shape, lane);
+    const Pivot<R> pivot(fold, fold, pivot_at, lane);
     for (std::size_t i = 0; i < kRowLanes; i += kWidth) {
-      const Open<R> row(pivot, fold, at, first_row + i);
+      const Open<R> row(pivot, fold, rows_lane + i);
       store(row.m, m + i);
       store(row.h(pivot), h + i);
       store(row.v, v + i);
@@ -537,123 +586,119 @@ HWY_NOINLINE void last_pairs(PairWork& w, std::size_t level, std::size_t lane) {
         increase(base[r] + i, derived.change);
       }
     }
+    settle(&row_values);
     const double* const rows = fold + rows_at;
-    HWY_UNROLL(2)
-    for (int b = 0; b < kBlocks; ++b) {
-      const Open<R> last(pivot, fold, at, static_cast<std::size_t>(b) * kWidth);
-      HWY_UNROLL(8)
-      for (int i = 0; i < kRows; ++i) {
-        const double* const row =
-            rows + 2 * row_length * static_cast<std::size_t>(i) + static_cast<std::size_t>(b) * kWidth;
-        const Vector m_i = all(m[i]);
+    unrolled<kBlocks>([&](auto b) __attribute__((always_inline)) {
+      const Open<R> last(pivot, fold, b * kWidth);
+      unrolled<kRows>([&](auto i) __attribute__((always_inline)) {
+        const double* const row = rows + i * kRowSize + in_row(b * kWidth);
+        const std::size_t at = first_row + i;
+        const Vector m_i = all(m[at]);
         const Vector ra = hn::NegMulAdd(m_i, last.a_pivot, load(row));
-        const Vector ua = hn::NegMulAdd(all(h[i]), last.m, hn::NegMulAdd(m_i, last.u_pivot, load(row + row_length)));
-        add_pair<R>(ra, ua, all(inverse[i]), all(v[i]), RowValues{my[0] + i, kRowLanes},
-                    RowValues{hy[0] + i, kRowLanes}, last.a, last.v, last.ya, last.yu, smallest[i][b], sum[i][b]);
-      }
-    }
+        const Vector ua = hn::NegMulAdd(all(h[at]), last.m, hn::NegMulAdd(m_i, last.u_pivot, load(row + kLanes)));
+        constexpr std::size_t kPair = i * kBlocks + b;
+        add_pair<R>(ra, ua, all(inverse[at]), all(v[at]), RowValues{my[0] + at, kRowLanes},
+                    RowValues{hy[0] + at, kRowLanes}, last.a, last.v, last.ya, last.yu, smallest[kPair],
+                    sum + kPair * R);
+      });
+    });
   }
+  unrolled<kPairs>([&](auto i) __attribute__((always_inline)) {
+    store(smallest[i], scores.smallest + i * kWidth);
+    unrolled<R>([&](auto r) __attribute__((always_inline)) { store(sum[i * R + r], scores.cv[r] + i * kWidth); });
+  });
 
-  // all rows
   const double* const everything = parent.all_rows;
-  const double* const pivot_row = everything + at.rows() + shape.row_offset[lane];
-  const Vector pivot_inverse = all(everything[at.inverse() + lane]);
-  Vector pivot_my[R];
-  for (int r = 0; r < R; ++r) pivot_my[r] = all(everything[at.my(static_cast<std::size_t>(r)) + lane]);
+  const double* const pivot_row = everything + pivot_at;
+  const Vector pivot_inverse = all(everything[F::inverse(lane)]);
+  const RowValues pivot_my{everything + F::my(0, lane), kLanes};
   for (std::size_t i = 0; i < kRowLanes; i += kWidth) {
-    const Vector a_pivot = load(pivot_row + first_row + i);
+    const Vector a_pivot = load(pivot_row + in_row(rows_lane + i));
     const Vector m_i = hn::Mul(a_pivot, pivot_inverse);
-    const Vector a = hn::NegMulAdd(m_i, a_pivot, load(everything + at.a() + first_row + i));
+    const Vector a = hn::NegMulAdd(m_i, a_pivot, load(everything + F::a(rows_lane + i)));
     const Vector inverse_i = reciprocal(a);
     store(m_i, m + i);
     store(inverse_i, inverse + i);
     lower(row_smallest + i, a);
-    for (int r = 0; r < R; ++r) {
-      const Vector ya =
-          hn::NegMulAdd(pivot_my[r], a_pivot, load(everything + at.ya(static_cast<std::size_t>(r)) + first_row + i));
+    for (std::size_t r = 0; r < R; ++r) {
+      const Vector ya = hn::NegMulAdd(pivot_my(r), a_pivot, load(everything + F::ya(r, rows_lane + i)));
       const Vector my_i = hn::Mul(ya, inverse_i);
       store(my_i, my[r] + i);
       store(hn::NegMulAdd(my_i, ya, load(base_rss[r] + i)), base_rss[r] + i);
     }
   }
-
-  const std::size_t picks = level + 3;
-  const std::size_t of_first = shape.n_columns[1];
-  w.path[level] = lane;
-  w.n_scored += kRows * of_first * R;
-  HWY_ALIGN double cv_scores[R][kRows][kBlocks][kWidth];
-  HWY_ALIGN double rss_scores[R][kRows][kBlocks][kWidth];
-  Vector least_cv[kBlocks][R];
-  Vector least_rss[kBlocks][R];
-  for (int b = 0; b < kBlocks; ++b) {
-    const std::size_t first_lane = static_cast<std::size_t>(b) * kWidth;
-    const Vector a_pivot = load(pivot_row + first_lane);
-    const Vector a_b = hn::NegMulAdd(hn::Mul(a_pivot, pivot_inverse), a_pivot, load(everything + at.a() + first_lane));
+  settle(&row_values);
+  for (std::size_t b = 0; b < kBlocks; ++b) {
+    const std::size_t first_lane = b * kWidth;
+    const auto inside = hn::FirstN(kTag, shape.n_columns[1] - first_lane);
+    const Vector a_pivot = load(pivot_row + in_row(first_lane));
+    const Vector a_b = hn::NegMulAdd(hn::Mul(a_pivot, pivot_inverse), a_pivot, load(everything + F::a(first_lane)));
     Vector ya_b[R];
-    for (int r = 0; r < R; ++r) {
-      ya_b[r] = hn::NegMulAdd(pivot_my[r], a_pivot, load(everything + at.ya(static_cast<std::size_t>(r)) + first_lane));
-      least_cv[b][r] = least_rss[b][r] = all(kInfinity);
-    }
-    const Vector padding = load(w.padding + first_lane);
-    Vector least = all(kInfinity);
-    for (int i = 0; i < kRows; ++i) {
-      const double* const row = everything + rows_at + 2 * row_length * static_cast<std::size_t>(i) + first_lane;
-      const Vector ra = hn::NegMulAdd(all(m[i]), a_pivot, load(row));
-      Vector cv[R];
+    for (std::size_t r = 0; r < R; ++r)
+      ya_b[r] = hn::NegMulAdd(pivot_my(r), a_pivot, load(everything + F::ya(r, first_lane)));
+    for (std::size_t i = 0; i < kRows; ++i) {
+      const std::size_t at = first_row + i;
+      const std::size_t pair = (i * kBlocks + b) * kWidth;
+      const Vector ra =
+          hn::NegMulAdd(all(m[at]), a_pivot, load(everything + rows_at + i * kRowSize + in_row(first_lane)));
       Vector rss[R];
-      for (int r = 0; r < R; ++r) {
-        cv[r] = hn::Add(sum[i][b][r], hn::Add(padding, all(base[r][i])));
-        rss[r] = hn::Add(padding, all(base_rss[r][i]));
-      }
-      smallest[i][b] = hn::Min(smallest[i][b], all(row_smallest[i]));
-      pair_rss<R>(ra, all(inverse[i]), RowValues{my[0] + i, kRowLanes}, a_b, ya_b, smallest[i][b], rss);
-      least = hn::Min(least, smallest[i][b]);
-      for (int r = 0; r < R; ++r) {
-        cv[r] = at_least_zero(cv[r]);
-        rss[r] = at_least_zero(rss[r]);
-        store(cv[r], cv_scores[r][i][b]);
-        store(rss[r], rss_scores[r][i][b]);
-        least_cv[b][r] = hn::Min(least_cv[b][r], cv[r]);
-        least_rss[b][r] = hn::Min(least_rss[b][r], rss[r]);
-      }
-    }
-    if (HWY_UNLIKELY(!all_separable(w, least))) {
-      for (int r = 0; r < R; ++r) least_cv[b][r] = least_rss[b][r] = all(kInfinity);
-      for (int i = 0; i < kRows; ++i) {
-        Vector cv[R];
-        Vector rss[R];
-        for (int r = 0; r < R; ++r) {
-          cv[r] = load(cv_scores[r][i][b]);
-          rss[r] = load(rss_scores[r][i][b]);
-        }
-        set_aside<R>(w, first_bits(of_first - first_lane), smallest[i][b], cv, rss);
-        for (int r = 0; r < R; ++r) {
-          store(cv[r], cv_scores[r][i][b]);
-          store(rss[r], rss_scores[r][i][b]);
-          least_cv[b][r] = hn::Min(least_cv[b][r], cv[r]);
-          least_rss[b][r] = hn::Min(least_rss[b][r], rss[r]);
-        }
+      for (std::size_t r = 0; r < R; ++r) rss[r] = all(base_rss[r][at]);
+      Vector least = smaller(all(row_smallest[at]), load(scores.smallest + pair));
+      pair_rss<R>(ra, all(inverse[at]), RowValues{my[0] + at, kRowLanes}, a_b, ya_b, least, rss);
+      store(hn::IfThenElse(inside, least, all(kInfinity)), scores.smallest + pair);
+      for (std::size_t r = 0; r < R; ++r) {
+        const Vector cv = hn::Add(load(scores.cv[r] + pair), all(base[r][at]));
+        store(hn::IfThenElse(inside, at_least_zero(cv), all(kInfinity)), scores.cv[r] + pair);
+        store(hn::IfThenElse(inside, at_least_zero(rss[r]), all(kInfinity)), scores.rss[r] + pair);
       }
     }
   }
-  Batch<R> batch{{level + 1, first_row, picks, level + 1, 0},
-                 kTally ? w.summary_factor[w.outer_columns + picks] : 1.0,
-                 kRows,
-                 kBlocks,
-                 {},
-                 {},
-                 kBlocks * kWidth,
-                 kWidth,
-                 {},
-                 {}};
-  for (int r = 0; r < R; ++r) {
-    batch.cv[r] = cv_scores[r][0][0];
-    batch.rss[r] = rss_scores[r][0][0];
-    batch.least_cv[r] = least_cv[0][r];
-    batch.least_rss[r] = least_rss[0][r];
-    for (int b = 1; b < kBlocks; ++b) {
-      batch.least_cv[r] = hn::Min(batch.least_cv[r], least_cv[b][r]);
-      batch.least_rss[r] = hn::Min(batch.least_rss[r], least_rss[b][r]);
+}
+
+/// Makes what is not separable infinite.
+template <int R>
+HWY_NOINLINE void set_last_aside(PairWork& w, LastScores<R>& scores, std::size_t n_rows, std::size_t n_blocks) {
+  for (std::size_t i = 0; i < n_rows * n_blocks; ++i) {
+    Vector cv[R];
+    Vector rss[R];
+    for (std::size_t r = 0; r < R; ++r) {
+      cv[r] = load(scores.cv[r] + i * kWidth);
+      rss[r] = load(scores.rss[r] + i * kWidth);
+    }
+    const std::size_t first_lane = i % n_blocks * kWidth;
+    set_aside<R>(w, first_bits(w.shape->n_columns[1] - first_lane), load(scores.smallest + i * kWidth), cv, rss);
+    for (std::size_t r = 0; r < R; ++r) {
+      store(cv[r], scores.cv[r] + i * kWidth);
+      store(rss[r], scores.rss[r] + i * kWidth);
+    }
+  }
+}
+
+/// Takes the scores of the last two predictors' pairs below `lane`.
+template <int R, bool kTally>
+void take_last_pairs(PairWork& w, std::size_t level, std::size_t lane, LastScores<R>& scores, std::size_t n_rows,
+                     std::size_t n_blocks) {
+  const PairShape& shape = *w.shape;
+  const std::size_t picks = level + 3;
+  w.path[level] = lane;
+  w.n_scored += n_rows * shape.n_columns[1] * R;
+  Vector least = all(kInfinity);
+  for (std::size_t i = 0; i < n_rows * n_blocks; ++i) least = hn::Min(least, load(scores.smallest + i * kWidth));
+  if (HWY_UNLIKELY(!all_separable(w, least))) set_last_aside<R>(w, scores, n_rows, n_blocks);
+  Batch<R> batch;
+  batch.at = {level + 1, shape.first_lane[1], picks, level + 1, 0};
+  batch.factor = kTally ? w.summary_factor[w.outer_columns + picks] : 1.0;
+  batch.n_rows = n_rows;
+  batch.n_blocks = n_blocks;
+  batch.row_stride = n_blocks * kWidth;
+  batch.block_stride = kWidth;
+  for (std::size_t r = 0; r < R; ++r) {
+    batch.cv[r] = scores.cv[r];
+    batch.rss[r] = scores.rss[r];
+    batch.least_cv[r] = batch.least_rss[r] = all(kInfinity);
+    for (std::size_t i = 0; i < n_rows * n_blocks; ++i) {
+      batch.least_cv[r] = hn::Min(batch.least_cv[r], load(scores.cv[r] + i * kWidth));
+      batch.least_rss[r] = hn::Min(batch.least_rss[r], load(scores.rss[r] + i * kWidth));
     }
   }
   if constexpr (kTally)
@@ -662,15 +707,14 @@ HWY_NOINLINE void last_pairs(PairWork& w, std::size_t level, std::size_t lane) {
   if constexpr (kTally) {
     PairTally& t = w.tally;
     for (std::size_t r = 0; r < R; ++r) {
-      for (int i = 0; i < kRows; ++i)
-        for (int b = 0; b < kBlocks; ++b) count_in_histogram(w, r, load(cv_scores[r][i][b]));
+      for (std::size_t i = 0; i < n_rows * n_blocks; ++i) count_in_histogram(w, r, load(scores.cv[r] + i * kWidth));
       const Vector node_best[2] = {batch.least_cv[r], hn::Mul(batch.least_rss[r], all(batch.factor))};
       for (int x = 0; x < 2; ++x) {
         store(node_best[x], t.best_node[x] + node_cell(w, level + 1, r));
         lower(t.best_picks[x] + picks_cell(w, r, picks), node_best[x]);
         if (HWY_UNLIKELY(!hn::AllFalse(kTag, hn::Lt(node_best[x], all(t.gate_last[x][r])))))
-          lower_last_columns(w, x, r, x == 0 ? cv_scores[r][0][0] : rss_scores[r][0][0], x == 0 ? 1.0 : batch.factor,
-                             kRows, kBlocks);
+          lower_last_columns(w, x, r, x == 0 ? scores.cv[r] : scores.rss[r], x == 0 ? 1.0 : batch.factor, n_rows,
+                             n_blocks);
       }
     }
     pass_up<R>(w, level, lane, shape.predictor_of_lane[lane]);
@@ -681,27 +725,29 @@ HWY_NOINLINE void last_pairs(PairWork& w, std::size_t level, std::size_t lane) {
 
 /// Columns from the second predictor on may be rows or be picked: their inverses, multipliers and bases.
 template <int R>
-HWY_INLINE void derive_columns(double* fold, const FoldOffsets& at, std::size_t lane, Vector a, double* base_cv) {
+HWY_INLINE void derive_columns(double* fold, std::size_t lane, Vector a, double* base_cv, std::size_t stride) {
+  using F = FoldFields<R>;
   const Vector inverse = reciprocal(a);
-  store(inverse, fold + at.inverse() + lane);
-  const Vector v = load(fold + at.v() + lane);
+  store(inverse, fold + F::inverse(lane));
+  const Vector v = load(fold + F::v(lane));
   for (std::size_t r = 0; r < R; ++r) {
-    const Derived derived = derive(load(fold + at.ya(r) + lane), load(fold + at.yu(r) + lane), v, inverse);
-    store(derived.my, fold + at.my(r) + lane);
-    store(derived.hy, fold + at.hy(r) + lane);
-    increase(base_cv + r * at.stride + lane, derived.change);
+    const Derived derived = derive(load(fold + F::ya(r, lane)), load(fold + F::yu(r, lane)), v, inverse);
+    store(derived.my, fold + F::my(r, lane));
+    store(derived.hy, fold + F::hy(r, lane));
+    increase(base_cv + r * stride + lane, derived.change);
   }
 }
 
 template <int R>
-HWY_INLINE void derive_all_rows(double* everything, const FoldOffsets& at, std::size_t lane, double* base_rss) {
-  const Vector inverse = reciprocal(load(everything + at.a() + lane));
-  store(inverse, everything + at.inverse() + lane);
+HWY_INLINE void derive_all_rows(double* everything, std::size_t lane, double* base_rss, std::size_t stride) {
+  using F = FoldFields<R>;
+  const Vector inverse = reciprocal(load(everything + F::a(lane)));
+  store(inverse, everything + F::inverse(lane));
   for (std::size_t r = 0; r < R; ++r) {
-    const Vector ya = load(everything + at.ya(r) + lane);
+    const Vector ya = load(everything + F::ya(r, lane));
     const Vector my = hn::Mul(ya, inverse);
-    store(my, everything + at.my(r) + lane);
-    store(hn::NegMulAdd(my, ya, load(base_rss + r * at.stride + lane)), base_rss + r * at.stride + lane);
+    store(my, everything + F::my(r, lane));
+    store(hn::NegMulAdd(my, ya, load(base_rss + r * stride + lane)), base_rss + r * stride + lane);
   }
 }
 
@@ -709,27 +755,26 @@ HWY_INLINE void derive_all_rows(double* everything, const FoldOffsets& at, std::
 template <int R>
 void bring_in_columns(PairWork& w, const PairLevel& parent, const PairLevel& child, const double* fold, double* out,
                       std::size_t lane, std::size_t n_open) {
+  using F = FoldFields<R>;
   const PairShape& shape = *w.shape;
-  const FoldOffsets from{parent.stride, R};
-  const FoldOffsets to{child.stride, R};
-  const Pivot<R> pivot(fold, from, shape, lane);
+  const Pivot<R> pivot(fold, fold + F::rows(parent.stride), shape.row_offset[lane], lane);
   double* const m = w.multipliers;
   double* const h = m + padded(shape.n_lanes());
   const std::size_t first_row = shape.first_lane[1];
   double* const base_cv = child.base_cv;
   double* const smallest = child.smallest;
   for (std::size_t b = 0; b < n_open; b += kWidth) {
-    const Open<R> open(pivot, fold, from, b);
+    const Open<R> open(pivot, fold, b);
     store(open.m, m + b);
     store(open.h(pivot), h + b);
-    store(open.a, out + to.a() + b);
-    store(open.v, out + to.v() + b);
+    store(open.a, out + F::a(b));
+    store(open.v, out + F::v(b));
     lower(smallest + b, open.a);
     for (std::size_t r = 0; r < R; ++r) {
-      store(open.ya[r], out + to.ya(r) + b);
-      store(open.yu[r], out + to.yu(r) + b);
+      store(open.ya[r], out + F::ya(r, b));
+      store(open.yu[r], out + F::yu(r, b));
     }
-    if (b >= first_row) derive_columns<R>(out, to, b, open.a, base_cv);
+    if (b + kWidth > first_row) derive_columns<R>(out, b, open.a, base_cv, child.stride);
   }
 }
 
@@ -737,52 +782,48 @@ void bring_in_columns(PairWork& w, const PairLevel& parent, const PairLevel& chi
 template <int R, bool kStore, bool kScore, bool kFirst>
 void bring_in_rows(PairWork& w, const PairLevel& parent, const PairLevel& child, const double* fold, double* out,
                    std::size_t lane, std::size_t open) {
+  using F = FoldFields<R>;
   const PairShape& shape = *w.shape;
-  const FoldOffsets from{parent.stride, R};
-  const FoldOffsets to{child.stride, R};
-  const double* const a_row = fold + from.rows() + shape.row_offset[lane];
-  const double* const u_row = a_row + shape.row_length[lane];
-  const double* const rows = fold + from.rows();
-  double* const new_rows = out + to.rows();
+  const double* const rows = fold + F::rows(parent.stride);
+  const double* const pivot_row = rows + shape.row_offset[lane];
+  double* const new_rows = out + F::rows(child.stride);
   const double* const m = w.multipliers;
   const double* const h = m + padded(shape.n_lanes());
   const std::size_t* const row_offset = shape.row_offset.data();
-  const std::size_t* const row_length = shape.row_length.data();
   const std::size_t plane = shape.row_offset.back() / 2;
   double* const sums = w.pair_scores;
   const std::size_t last_row = shape.first_lane[open];
   std::size_t predictor = 1;
   for (std::size_t b = 0; b < shape.first_lane[open - 1]; b += kWidth) {
     while (shape.first_lane[predictor] <= b) ++predictor;
-    const Vector a_pivot = load(a_row + b);
-    const Vector u_pivot = load(u_row + b);
+    const Vector a_pivot = load(pivot_row + in_row(b));
+    const Vector u_pivot = load(pivot_row + in_row(b) + kLanes);
     const Vector m_b = load(m + b);
-    const Vector a_b = load(out + to.a() + b);
-    const Vector v_b = load(out + to.v() + b);
+    const Vector a_b = load(out + F::a(b));
+    const Vector v_b = load(out + F::v(b));
     Vector ya_b[R];
     Vector yu_b[R];
     for (std::size_t r = 0; r < R; ++r) {
-      ya_b[r] = load(out + to.ya(r) + b);
-      yu_b[r] = load(out + to.yu(r) + b);
+      ya_b[r] = load(out + F::ya(r, b));
+      yu_b[r] = load(out + F::yu(r, b));
     }
     HWY_UNROLL(2)
     for (std::size_t a = shape.first_lane[predictor]; a < last_row; ++a) {
-      const std::size_t offset = row_offset[a] + b;
-      const std::size_t u_offset = offset + row_length[a];
+      const std::size_t offset = row_offset[a] + in_row(b);
       const Vector m_a = all(m[a]);
       const Vector ra = hn::NegMulAdd(m_a, a_pivot, load(rows + offset));
-      const Vector ua = hn::NegMulAdd(all(h[a]), m_b, hn::NegMulAdd(m_a, u_pivot, load(rows + u_offset)));
+      const Vector ua = hn::NegMulAdd(all(h[a]), m_b, hn::NegMulAdd(m_a, u_pivot, load(rows + offset + kLanes)));
       if constexpr (kStore) {
         store(ra, new_rows + offset);
-        store(ua, new_rows + u_offset);
+        store(ua, new_rows + offset + kLanes);
       }
       if constexpr (kScore) {
         double* const cell = sums + row_offset[a] / 2 + b;
         Vector sum[R];
         for (std::size_t r = 0; r < R; ++r) sum[r] = kFirst ? hn::Zero(kTag) : load(cell + r * plane);
         Vector smallest = kFirst ? all(kInfinity) : load(cell + R * plane);
-        add_pair<R>(ra, ua, all(out[to.inverse() + a]), all(out[to.v() + a]), RowValues{out + to.my(0) + a, to.stride},
-                    RowValues{out + to.hy(0) + a, to.stride}, a_b, v_b, ya_b, yu_b, smallest, sum);
+        add_pair<R>(ra, ua, all(out[F::inverse(a)]), all(out[F::v(a)]), RowValues{out + F::my(0, a), kLanes},
+                    RowValues{out + F::hy(0, a), kLanes}, a_b, v_b, ya_b, yu_b, smallest, sum);
         for (std::size_t r = 0; r < R; ++r) store(sum[r], cell + r * plane);
         store(smallest, cell + R * plane);
       }
@@ -794,33 +835,31 @@ void bring_in_rows(PairWork& w, const PairLevel& parent, const PairLevel& child,
 template <int R, bool kStore>
 void bring_in_all_rows(PairWork& w, const PairLevel& parent, const PairLevel& child, std::size_t lane,
                        std::size_t open) {
+  using F = FoldFields<R>;
   const PairShape& shape = *w.shape;
-  const FoldOffsets from{parent.stride, R};
-  const FoldOffsets to{child.stride, R};
   const double* const everything = parent.all_rows;
   double* const out = child.all_rows;
-  const double* const pivot_row = everything + from.rows() + shape.row_offset[lane];
-  const Vector inverse = all(everything[from.inverse() + lane]);
+  const double* const pivot_row = everything + F::rows(parent.stride) + shape.row_offset[lane];
+  const Vector inverse = all(everything[F::inverse(lane)]);
   double* const m = w.multipliers;
   for (std::size_t b = 0; b < shape.first_lane[open]; b += kWidth) {
-    const Vector a_pivot = load(pivot_row + b);
+    const Vector a_pivot = load(pivot_row + in_row(b));
     const Vector m_b = hn::Mul(a_pivot, inverse);
     store(m_b, m + b);
-    const Vector a = hn::NegMulAdd(m_b, a_pivot, load(everything + from.a() + b));
-    store(a, out + to.a() + b);
+    const Vector a = hn::NegMulAdd(m_b, a_pivot, load(everything + F::a(b)));
+    store(a, out + F::a(b));
     lower(child.smallest + b, a);
     for (std::size_t r = 0; r < R; ++r)
-      store(hn::NegMulAdd(all(everything[from.my(r) + lane]), a_pivot, load(everything + from.ya(r) + b)),
-            out + to.ya(r) + b);
-    if (b >= shape.first_lane[1]) derive_all_rows<R>(out, to, b, child.base_rss);
+      store(hn::NegMulAdd(all(everything[F::my(r, lane)]), a_pivot, load(everything + F::ya(r, b))), out + F::ya(r, b));
+    if (b + kWidth > shape.first_lane[1]) derive_all_rows<R>(out, b, child.base_rss, child.stride);
   }
   if constexpr (kStore) {
     for (std::size_t a = shape.first_lane[1]; a < shape.first_lane[open]; ++a) {
       const Vector m_a = all(m[a]);
-      const double* const row = everything + from.rows() + shape.row_offset[a];
-      double* const new_row = out + to.rows() + shape.row_offset[a];
+      const double* const row = everything + F::rows(parent.stride) + shape.row_offset[a];
+      double* const new_row = out + F::rows(child.stride) + shape.row_offset[a];
       for (std::size_t b = 0; b < shape.row_length[a]; b += kWidth)
-        store(hn::NegMulAdd(m_a, load(pivot_row + b), load(row + b)), new_row + b);
+        store(hn::NegMulAdd(m_a, load(pivot_row + in_row(b)), load(row + in_row(b))), new_row + in_row(b));
     }
   }
 }
@@ -852,8 +891,8 @@ HWY_NOINLINE void lower_columns(PairWork& w, int x, std::size_t r, std::size_t p
 template <int R, bool kTally, class RowOf, class Scores>
 void take_pairs(PairWork& w, const PairLevel& node, std::size_t level, std::size_t open, const RowOf& row_of,
                 const Scores& scores) {
+  using F = FoldFields<R>;
   const PairShape& shape = *w.shape;
-  const FoldOffsets at{node.stride, R};
   const double* const everything = node.all_rows;
   const std::size_t picks = level + 2;
   const std::size_t plane = shape.row_offset.back() / 2;
@@ -883,12 +922,12 @@ void take_pairs(PairWork& w, const PairLevel& node, std::size_t level, std::size
         const unsigned inside = b + kWidth > n ? first_bits(n - b) : first_bits(kWidth);
         const Vector padding = load(w.padding + b);
         for (std::size_t r = 0; r < R; ++r) {
-          cv[r] = hn::Add(cv[r], hn::Add(padding, all(node.base_cv[r * at.stride + a])));
-          rss[r] = hn::Add(padding, all(node.base_rss[r * at.stride + a]));
-          ya_b[r] = load(everything + at.ya(r) + b);
+          cv[r] = hn::Add(cv[r], hn::Add(padding, all(node.base_cv[r * node.stride + a])));
+          rss[r] = hn::Add(padding, all(node.base_rss[r * node.stride + a]));
+          ya_b[r] = load(everything + F::ya(r, b));
         }
-        pair_rss<R>(row_of(a, b), all(everything[at.inverse() + a]), RowValues{everything + at.my(0) + a, at.stride},
-                    load(everything + at.a() + b), ya_b, least, rss);
+        pair_rss<R>(row_of(a, b), all(everything[F::inverse(a)]), RowValues{everything + F::my(0, a), kLanes},
+                    load(everything + F::a(b)), ya_b, least, rss);
         if (HWY_UNLIKELY(inside != first_bits(kWidth))) {
           const auto keep = hn::FirstN(kTag, n - b);
           least = hn::IfThenElse(keep, least, all(kInfinity));
@@ -941,6 +980,7 @@ void start_child(const PairShape& shape, const PairLevel& parent, const PairLeve
 
 template <int R, bool kStore, bool kScore, bool kTally>
 void make_child(PairWork& w, std::size_t level, std::size_t lane) {
+  using F = FoldFields<R>;
   const PairShape& shape = *w.shape;
   const PairLevel& parent = w.levels[level];
   const PairLevel& child = w.levels[level + 1];
@@ -959,14 +999,14 @@ void make_child(PairWork& w, std::size_t level, std::size_t lane) {
   }
   bring_in_all_rows<R, kStore>(w, parent, child, lane, open);
   if constexpr (kScore) {
-    const FoldOffsets from{parent.stride, R};
-    const double* const rows = parent.all_rows + from.rows();
+    const double* const rows = parent.all_rows + F::rows(parent.stride);
     const double* const pivot_row = rows + shape.row_offset[lane];
     const std::size_t plane = shape.row_offset.back() / 2;
     take_pairs<R, kTally>(
         w, child, level + 1, open,
         [&](std::size_t a, std::size_t b) {
-          return hn::NegMulAdd(all(w.multipliers[a]), load(pivot_row + b), load(rows + shape.row_offset[a] + b));
+          return hn::NegMulAdd(all(w.multipliers[a]), load(pivot_row + in_row(b)),
+                               load(rows + shape.row_offset[a] + in_row(b)));
         },
         [&](std::size_t a, std::size_t b, Vector(&cv)[R], Vector& least) {
           const double* const cell = w.pair_scores + shape.row_offset[a] / 2 + b;
@@ -978,18 +1018,21 @@ void make_child(PairWork& w, std::size_t level, std::size_t lane) {
 
 // ---- the recursion -------------------------------------------------------------------------------------------------
 
-using LastPairs = void (*)(PairWork&, std::size_t, std::size_t);
+template <int R>
+using ScoreLastPairs = void (*)(PairWork&, std::size_t, std::size_t, LastScores<R>&);
 
 /// The function for two last predictors of these sizes, or null.
-template <int R, bool kTally, int kRows>
-LastPairs last_pairs_of(std::size_t n_rows, std::size_t n_blocks) {
+template <int R, int kRows>
+ScoreLastPairs<R> score_last_pairs_of(std::size_t n_rows, std::size_t n_blocks, bool shared) {
   if constexpr (kRows > 8 || kWidth < 4) {
     return nullptr;
   } else {
-    if (n_rows != kRows) return last_pairs_of<R, kTally, kRows + 1>(n_rows, n_blocks);
-    if (n_blocks == 1) return last_pairs<kRows, 1, R, kTally>;
+    if (n_rows != kRows) return score_last_pairs_of<R, kRows + 1>(n_rows, n_blocks, shared);
+    if constexpr (kRows < 8)
+      if (shared) return n_blocks == 1 ? score_last_pairs<kRows, 1, R, true> : nullptr;
+    if (n_blocks == 1) return score_last_pairs<kRows, 1, R, false>;
     if constexpr (kWidth == 4)
-      if (n_blocks == 2) return last_pairs<kRows, 2, R, kTally>;
+      if (n_blocks == 2) return score_last_pairs<kRows, 2, R, false>;
     return nullptr;
   }
 }
@@ -998,12 +1041,15 @@ template <int R, bool kTally>
 struct Walk {
   PairWork& w;
   const PairShape& shape = *w.shape;
-  LastPairs last = nullptr;
+  ScoreLastPairs<R> score_last = nullptr;
+  std::size_t n_last_rows = 0, n_last_blocks = 0;
 
   explicit Walk(PairWork& work) : w(work) {
     if (shape.n_predictors() < 2) return;
     const std::size_t n_first = shape.columns(1);
-    last = last_pairs_of<R, kTally, 1>(shape.columns(2) - n_first, (n_first + kWidth - 1) / kWidth);
+    n_last_rows = shape.columns(2) - n_first;
+    n_last_blocks = (n_first + kWidth - 1) / kWidth;
+    score_last = score_last_pairs_of<R, 1>(n_last_rows, n_last_blocks, shape.first_lane[1] % kLanes != 0);
   }
 
   void children(std::size_t level, std::size_t open, std::uint64_t largest) {
@@ -1025,8 +1071,10 @@ struct Walk {
       w.n_inseparable += (shape.size(picks_left - 1, p) - 1 - shape.columns(p)) * R;
       return;
     }
-    if (p == 2 && last != nullptr) {
-      last(w, level, lane);
+    if (p == 2 && score_last != nullptr) {
+      LastScores<R> scores;
+      score_last(w, level, lane, scores);
+      take_last_pairs<R, kTally>(w, level, lane, scores, n_last_rows, n_last_blocks);
       return;
     }
     if constexpr (kTally) clear_node<R>(w, level + 1, p);
@@ -1109,46 +1157,48 @@ void score_singles_of(PairWork& w) {
 
 template <int R, bool kTally>
 void score_stored_pairs(PairWork& w, std::size_t level, std::size_t open) {
+  using F = FoldFields<R>;
   const PairShape& shape = *w.shape;
   const PairLevel& node = w.levels[level];
-  const FoldOffsets at{node.stride, R};
   take_pairs<R, kTally>(
       w, node, level, open,
-      [&](std::size_t a, std::size_t b) { return load(node.all_rows + at.rows() + shape.row_offset[a] + b); },
+      [&](std::size_t a, std::size_t b) {
+        return load(node.all_rows + F::rows(node.stride) + shape.row_offset[a] + in_row(b));
+      },
       [&](std::size_t a, std::size_t b, Vector(&cv)[R], Vector& least) {
         for (std::size_t r = 0; r < R; ++r) cv[r] = hn::Zero(kTag);
         for (std::size_t f = 0; f < w.n_folds; ++f) {
           const double* const fold = node.folds + f * node.fold_size;
-          const double* const row = fold + at.rows() + shape.row_offset[a] + b;
+          const double* const row = fold + F::rows(node.stride) + shape.row_offset[a] + in_row(b);
           Vector ya_b[R];
           Vector yu_b[R];
           for (std::size_t r = 0; r < R; ++r) {
-            ya_b[r] = load(fold + at.ya(r) + b);
-            yu_b[r] = load(fold + at.yu(r) + b);
+            ya_b[r] = load(fold + F::ya(r, b));
+            yu_b[r] = load(fold + F::yu(r, b));
           }
-          add_pair<R>(load(row), load(row + shape.row_length[a]), all(fold[at.inverse() + a]), all(fold[at.v() + a]),
-                      RowValues{fold + at.my(0) + a, at.stride}, RowValues{fold + at.hy(0) + a, at.stride},
-                      load(fold + at.a() + b), load(fold + at.v() + b), ya_b, yu_b, least, cv);
+          add_pair<R>(load(row), load(row + kLanes), all(fold[F::inverse(a)]), all(fold[F::v(a)]),
+                      RowValues{fold + F::my(0, a), kLanes}, RowValues{fold + F::hy(0, a), kLanes},
+                      load(fold + F::a(b)), load(fold + F::v(b)), ya_b, yu_b, least, cv);
         }
       });
 }
 
 template <int R>
 void complete_root_of(PairWork& w) {
+  using F = FoldFields<R>;
   const PairShape& shape = *w.shape;
   const PairLevel& root = w.levels[0];
-  const FoldOffsets at{root.stride, R};
   const std::size_t n = padded(shape.n_lanes());
   for (std::size_t b = 0; b < n; b += kWidth) {
     store(all(kInfinity), root.smallest + b);
     for (std::size_t f = 0; f < w.n_folds; ++f) {
       double* const fold = root.folds + f * root.fold_size;
-      const Vector a = load(fold + at.a() + b);
+      const Vector a = load(fold + F::a(b));
       lower(root.smallest + b, a);
-      derive_columns<R>(fold, at, b, a, root.base_cv);
+      derive_columns<R>(fold, b, a, root.base_cv, root.stride);
     }
-    lower(root.smallest + b, load(root.all_rows + at.a() + b));
-    derive_all_rows<R>(root.all_rows, at, b, root.base_rss);
+    lower(root.smallest + b, load(root.all_rows + F::a(b)));
+    derive_all_rows<R>(root.all_rows, b, root.base_rss, root.stride);
   }
 }
 

@@ -28,8 +28,9 @@ inline constexpr std::size_t kMostResponses = 4;
 
 inline constexpr std::size_t padded(std::size_t n) { return (n + kLanes - 1) / kLanes * kLanes; }
 
-/// How the columns of the predictors stand in lanes. The first predictor is padded to whole vectors, the others follow
-/// without gaps. Predictors are picked in descending order, so that what is open at a node is a prefix of the lanes.
+/// How the columns of the predictors stand in lanes. The first predictor is padded to whole vectors unless the second
+/// has room in the same one; the others follow without gaps. Predictors are picked in descending order, so that what is
+/// open at a node is a prefix of the lanes.
 struct PairShape {
   /// `n_forms` by predictor, each at least 1; at most `most_picks` of them in a candidate.
   PairShape(const std::vector<std::size_t>& n_forms, std::size_t most_picks);
@@ -45,7 +46,7 @@ struct PairShape {
   std::vector<std::size_t> first_lane;            ///< [n_predictors + 1]
   std::vector<std::size_t> n_columns;             ///< [n_predictors + 1] columns of the first so many predictors
   std::vector<std::size_t> predictor_of_lane;     ///< [n_lanes]; padding lanes belong to predictor 0
-  std::vector<std::size_t> row_offset;            ///< [n_lanes + 1] start of a lane's row of A; its row of U follows
+  std::vector<std::size_t> row_offset;            ///< [n_lanes + 1] of a lane's row: by kLanes lanes A, then U
   std::vector<std::size_t> row_length;            ///< [n_lanes] lanes of lower predictors, padded
   std::vector<std::vector<std::uint64_t>> sizes;  ///< [most_picks + 1][n_predictors + 1]
 };
@@ -128,17 +129,34 @@ struct PairWork {
   bool stopped = false;
 };
 
-/// Offsets within a fold's numbers.
+/// Offsets within a fold's numbers: for each kLanes lanes one vector of every field, so that they stand at fixed
+/// distances from each other; then the rows. `R`: responses.
+template <std::size_t R>
+struct FoldFields {
+  static constexpr std::size_t kFields = 3 + 4 * R;
+  static constexpr std::size_t at(std::size_t field, std::size_t lane) {
+    return lane / kLanes * (kFields * kLanes) + field * kLanes + lane % kLanes;
+  }
+  static constexpr std::size_t a(std::size_t lane) { return at(0, lane); }
+  static constexpr std::size_t inverse(std::size_t lane) { return at(1, lane); }
+  static constexpr std::size_t v(std::size_t lane) { return at(2, lane); }
+  static constexpr std::size_t ya(std::size_t r, std::size_t lane) { return at(3 + r, lane); }
+  static constexpr std::size_t my(std::size_t r, std::size_t lane) { return at(3 + R + r, lane); }
+  static constexpr std::size_t yu(std::size_t r, std::size_t lane) { return at(3 + 2 * R + r, lane); }
+  static constexpr std::size_t hy(std::size_t r, std::size_t lane) { return at(3 + 3 * R + r, lane); }
+  /// `stride`: lanes of the level, padded.
+  static constexpr std::size_t rows(std::size_t stride) { return stride * kFields; }
+};
+/// The same where the number of responses is known at run time only.
 struct FoldOffsets {
-  std::size_t stride, n_responses;
-  std::size_t a() const { return 0; }
-  std::size_t inverse() const { return stride; }
-  std::size_t v() const { return 2 * stride; }
-  std::size_t ya(std::size_t r) const { return (3 + r) * stride; }
-  std::size_t my(std::size_t r) const { return (3 + n_responses + r) * stride; }
-  std::size_t yu(std::size_t r) const { return (3 + 2 * n_responses + r) * stride; }
-  std::size_t hy(std::size_t r) const { return (3 + 3 * n_responses + r) * stride; }
-  std::size_t rows() const { return (3 + 4 * n_responses) * stride; }
+  std::size_t n_responses;
+  std::size_t n_fields() const { return 3 + 4 * n_responses; }
+  std::size_t at(std::size_t field, std::size_t lane) const {
+    return lane / kLanes * (n_fields() * kLanes) + field * kLanes + lane % kLanes;
+  }
+  std::size_t ya(std::size_t r, std::size_t lane) const { return at(3 + r, lane); }
+  std::size_t yu(std::size_t r, std::size_t lane) const { return at(3 + 2 * n_responses + r, lane); }
+  std::size_t rows(std::size_t stride) const { return stride * n_fields(); }
 };
 
 /// Completes level 0 from its A, V, A_y, U_y, rows and the response's own entries (already in base_cv, base_rss as what

@@ -19,6 +19,12 @@ std::vector<std::vector<std::uint64_t>> count_subsets(const std::vector<std::siz
   return sizes;
 }
 
+/// The two last predictors share a vector where there is room; otherwise each starts one of its own.
+std::size_t lanes_of_first(const std::vector<std::size_t>& n_forms) {
+  if (n_forms.size() > 1 && n_forms[0] + n_forms[1] <= kLanes) return n_forms[0];
+  return padded(n_forms[0]);
+}
+
 }  // namespace
 
 PairShape::PairShape(const std::vector<std::size_t>& n_forms, std::size_t picks)
@@ -26,7 +32,7 @@ PairShape::PairShape(const std::vector<std::size_t>& n_forms, std::size_t picks)
   for (std::size_t p = 0; p < n_forms.size(); ++p) {
     assert(n_forms[p] > 0);
     const std::size_t first = first_lane.back();
-    const std::size_t end = p == 0 ? padded(n_forms[p]) : first + n_forms[p];
+    const std::size_t end = p == 0 ? lanes_of_first(n_forms) : first + n_forms[p];
     for (std::size_t lane = first; lane < end; ++lane) {
       predictor_of_lane.push_back(p);
       row_length.push_back(padded(first));

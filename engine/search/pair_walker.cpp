@@ -6,6 +6,7 @@
 #include <cassert>
 #include <cmath>
 #include <limits>
+#include <memory>
 #include <numeric>
 
 namespace formsieve::search {
@@ -24,7 +25,15 @@ std::size_t n_levels(const PairShape& shape) { return std::max<std::size_t>(shap
 std::size_t fold_size(const PairShape& shape, std::size_t level, std::size_t n_responses) {
   const std::size_t open = shape.n_predictors() - level;
   const std::size_t rows = shape.row_offset[shape.first_lane[open]];
-  return FoldOffsets{padded(shape.first_lane[open]) + kSlack, n_responses}.rows() + rows + kSlack;
+  return FoldOffsets{n_responses}.rows(padded(shape.first_lane[open]) + kSlack) + rows + kSlack;
+}
+
+/// The first number of a vector that stands at the start of a cache line, where a load of kLanes numbers touches one
+/// line.
+double* aligned(std::vector<double>& memory) {
+  void* start = memory.data();
+  std::size_t space = memory.size() * sizeof(double);
+  return static_cast<double*>(std::align(kLanes * sizeof(double), sizeof(double), start, space));
 }
 
 /// Gives out consecutive pieces of one allocation.
@@ -83,7 +92,7 @@ PairWalker::PairWalker(const PairShape& largest, std::size_t n_folds, std::size_
       2 * padded(largest.n_lanes()) + 2 * kSlack + (2 * n_responses + 1) * (largest.row_offset.back() / 2) + kSlack;
   for (std::size_t level = 0; level < levels_.size(); ++level)
     if (level <= largest.n_predictors()) size += level_size(largest, level, n_folds, n_responses);
-  memory_.assign(size + 8 * kLanes, 0.0);
+  memory_.assign(size + 9 * kLanes, 0.0);
   if (summary.wanted) {
     const std::size_t cells =
         n_responses * kLanes *
@@ -97,7 +106,7 @@ PairWalker::PairWalker(const PairShape& largest, std::size_t n_folds, std::size_
 }
 
 void PairWalker::lay_out_levels() {
-  Pieces pieces(memory_.data());
+  Pieces pieces(aligned(memory_));
   work_.multipliers = pieces.take(2 * padded(shape_->n_lanes()) + 2 * kSlack);
   work_.pair_scores = pieces.take((2 * n_responses_ + 1) * (shape_->row_offset.back() / 2) + kSlack);
   for (std::size_t level = 0; level < n_levels(*shape_) && level <= shape_->n_predictors(); ++level) {
@@ -119,7 +128,7 @@ void PairWalker::lay_out_tally() {
   const std::size_t lanes = n_responses_ * padded(shape_->n_lanes()) + kSlack;
   const std::size_t predictors = shape_->n_predictors() * n_responses_ * kLanes;
   const std::size_t levels = (shape_->most_picks + 1) * n_responses_ * kLanes;
-  Pieces pieces(tally_memory_.data());
+  Pieces pieces(aligned(tally_memory_));
   for (int x = 0; x < 2; ++x) {
     tally.best_column[x] = pieces.take(columns);
     tally.best_lane[x] = pieces.take(lanes);
@@ -169,25 +178,26 @@ std::vector<std::uint64_t> PairWalker::histogram() const {
 /// One fold's A, V, A_y, U_y and rows at level 0, columns scaled to a unit diagonal before any elimination.
 void PairWalker::fill(const double* a, const double* v, std::size_t order, std::span<const std::size_t> column,
                       std::span<const double> scale, double* out) const {
-  const FoldOffsets at{levels_[0].stride, n_responses_};
+  const FoldOffsets at{n_responses_};
   const auto entry = [&](const double* matrix, std::size_t i, std::size_t j) {
     return column[i] == kNoColumn || column[j] == kNoColumn
                ? 0.0
                : matrix[column[i] * order + column[j]] * scale[i] * scale[j];
   };
   for (std::size_t i = 0; i < shape_->n_lanes(); ++i) {
-    out[at.a() + i] = column[i] == kNoColumn ? 1.0 : entry(a, i, i);
-    out[at.v() + i] = v == nullptr ? 0.0 : entry(v, i, i);
+    out[at.at(0, i)] = column[i] == kNoColumn ? 1.0 : entry(a, i, i);
+    out[at.at(2, i)] = v == nullptr ? 0.0 : entry(v, i, i);
     for (std::size_t r = 0; r < n_responses_; ++r) {
       const std::size_t y = (order - n_responses_ + r) * order;
-      out[at.ya(r) + i] = column[i] == kNoColumn ? 0.0 : a[y + column[i]] * scale[i];
-      out[at.yu(r) + i] = column[i] == kNoColumn || v == nullptr ? 0.0 : 2.0 * v[y + column[i]] * scale[i];
+      out[at.ya(r, i)] = column[i] == kNoColumn ? 0.0 : a[y + column[i]] * scale[i];
+      out[at.yu(r, i)] = column[i] == kNoColumn || v == nullptr ? 0.0 : 2.0 * v[y + column[i]] * scale[i];
     }
-    double* const row = out + at.rows() + shape_->row_offset[i];
+    double* const row = out + at.rows(levels_[0].stride) + shape_->row_offset[i];
     const std::size_t n_below = shape_->first_lane[shape_->predictor_of_lane[i]];
     for (std::size_t j = 0; j < n_below; ++j) {
-      row[j] = entry(a, i, j);
-      row[shape_->row_length[i] + j] = v == nullptr ? 0.0 : 2.0 * entry(v, i, j);
+      const std::size_t at_j = j / kLanes * (2 * kLanes) + j % kLanes;
+      row[at_j] = entry(a, i, j);
+      row[at_j + kLanes] = v == nullptr ? 0.0 : 2.0 * entry(v, i, j);
     }
   }
 }

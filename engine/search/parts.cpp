@@ -6,9 +6,9 @@ namespace formsieve::search {
 
 namespace {
 
-/// A part is about this share of the space: a thousand parts or more where the space allows, so that the last ones to
-/// finish leave none of 64 cores idle for long.
-constexpr std::uint64_t kShareOfSpace = 2048;
+/// A subtree beyond this share of the space is a part of its own: thousands of parts where the space allows, so that
+/// the last ones to finish leave none of 64 cores idle for long.
+constexpr std::uint64_t kShareOfSpace = 16384;
 /// Reaching a node brings its path into every fold, as much work as some thousand candidates.
 constexpr std::uint64_t kSmallestPart = 20'000;
 

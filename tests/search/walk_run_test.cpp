@@ -145,7 +145,7 @@ TEST_CASE("search: a perfect fit scores zero, not below", "[search][unit]") {
 }
 
 TEST_CASE("search: a stopped walk says so and counts what it scored", "[search][unit]") {
-  const Problem problem = test::make_problem(25, 60, std::vector<test::Shape>(7, {{1, 1, 1, 1}}), 1, 5);
+  const Problem problem = test::make_problem(25, 60, std::vector<test::Shape>(9, {{1, 1, 1, 1}}), 1, 5);
   const auto grams = test::grams_of(problem);
   search::WalkOptions options = short_lists(10);
   SECTION("before it starts") {
