@@ -7,6 +7,7 @@
 #include "pipeline/estimate.hpp"
 #include "pipeline/examine.hpp"
 #include "pipeline/guarded.hpp"
+#include "pipeline/inseparable.hpp"
 #include "pipeline/memory.hpp"
 #include "pipeline/meter.hpp"
 #include "pipeline/outputs.hpp"
@@ -267,6 +268,8 @@ void Search::describe() {
   space.pool_formed = pool_words(*prepared_, plan_, grams_, walked_, pool_.size());
   space.pool_margin = margin_words(*prepared_, lists_, walked_, pool_);
   space.seconds = meter_.seconds();
+  for (auto& words : inseparable_words(*prepared_, grams_, walked_, walk_options().smallest_pivot_rel))
+    shortlist_.remarks.push_back(std::move(words));
   shortlist_.remarks.insert(shortlist_.remarks.begin(), prepared_->notes.begin(), prepared_->notes.end());
   if (!space.complete)
     shortlist_.remarks.insert(shortlist_.remarks.begin(),

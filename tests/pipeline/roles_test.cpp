@@ -115,6 +115,8 @@ TEST_CASE("pipeline: an identical column is set aside and a collinear one is cou
   const auto shortlist = search_json(plan_for(folder.write("twins.csv", text), "y"), folder);
   CHECK(shortlist.at("menus").size() == 2);
   CHECK(shortlist.at("space").at("inseparable") != "0");
+  const std::string remarks = shortlist.at("remarks").dump();
+  CHECK_THAT(remarks, Catch::Contains("'a' and 'double' cannot be told apart on all rows or in some fold"));
 }
 
 }  // namespace formsieve::test
