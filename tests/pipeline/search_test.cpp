@@ -80,6 +80,22 @@ TEST_CASE("pipeline: the shortlist is byte-identical for 1, 2 and 4 threads", "[
   CHECK(shortlist_text(plan, 4) == one);
 }
 
+TEST_CASE("pipeline: the shortlist is byte-identical on every instruction set", "[pipeline][property]") {
+  run::Plan plan = plan_for(kDemo, "energy_kwh");
+  plan.search.pool = 100;
+  plan.search.max_terms = 5;
+  const std::string best = shortlist_text(plan, 1);
+  std::size_t n_run = 0;
+  for (const char* name : {"baseline", "avx2", "avx512"}) {
+    if (!base::force_instruction_set(name)) continue;
+    ++n_run;
+    INFO(name);
+    CHECK(shortlist_text(plan, 1) == best);
+  }
+  CHECK(base::force_instruction_set("best"));
+  CHECK(n_run > 0);
+}
+
 TEST_CASE("pipeline: the demo's noise columns stay out of the recommended candidate and its truth is near the top",
           "[pipeline][slow]") {
   const TemporaryFolder folder;
@@ -152,8 +168,7 @@ TEST_CASE("pipeline: an existing run is not overwritten without being asked", "[
 TEST_CASE("pipeline: the plan in a run folder runs again from any place", "[pipeline][unit]") {
   const TemporaryFolder folder;
   folder.write("trees.csv", read_text(kOpen + "/trees.csv"));
-  const std::string plan_file =
-      folder.write("trees.toml", "[data]\nfile = \"trees.csv\"\nresponse = \"volume\"\n");
+  const std::string plan_file = folder.write("trees.toml", "[data]\nfile = \"trees.csv\"\nresponse = \"volume\"\n");
   const auto plan = run::read_plan(plan_file);
   REQUIRE(plan.ok());
   pipeline::SearchOptions options;
