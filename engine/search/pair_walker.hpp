@@ -81,10 +81,10 @@ class PairWalker {
   std::vector<double> limit_cv_, limit_rss_, factor_, unit_, start_unit_, weight_limit_;
   std::vector<std::uint64_t> histogram_;
   std::vector<std::uint32_t> histogram_pairs_;
-  std::vector<std::int64_t> first_bin_;
-  std::vector<double> padding_;
   std::vector<std::size_t> column_of_lane_;
   std::vector<double> scale_;
+  std::vector<std::int64_t> first_bin_;
+  std::vector<double> padding_;
   double* run_cells_ = nullptr;     ///< in tally_memory_: from here on of one run only …
   double* weight_cells_ = nullptr;  ///< … and from here on sums
 };
