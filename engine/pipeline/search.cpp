@@ -298,6 +298,9 @@ Result<SearchOutcome> Search::run() {
   if (auto status = count_and_announce(); !status) return status.error();
   if (auto status = screen(); !status) return status.error();
   examine();
+  if (candidates_.empty() && meter_.stopped())
+    return Error{ErrorKind::io, "the search was stopped before it had examined any candidate; nothing is listed", "",
+                 "start it again with --replace and let it run longer (with a budget: search.budget, --budget)"};
   if (candidates_.empty())
     return Error{ErrorKind::data,
                  "no candidate is left: " + walked_.n_inseparable.str() +

@@ -136,6 +136,17 @@ TEST_CASE("pipeline: search stopped from outside leaves a usable shortlist of wh
   CHECK(shortlist.at("shortlist").size() > 0);
 }
 
+TEST_CASE("pipeline: a search stopped before anything was scored says so", "[pipeline][unit]") {
+  const TemporaryFolder folder;
+  std::stop_source source;
+  source.request_stop();
+  pipeline::SearchOptions options;
+  options.out = folder.file("trees.run");
+  const auto outcome = pipeline::search(plan_for(kOpen + "/trees.csv", "volume"), options, source.get_token());
+  REQUIRE_FALSE(outcome.ok());
+  CHECK_THAT(outcome.error().message, Catch::Contains("stopped before it had examined any candidate"));
+}
+
 TEST_CASE("pipeline: a space beyond the budget is refused with what to change", "[pipeline][unit]") {
   const TemporaryFolder folder;
   run::Plan plan = plan_for(kDemo, "energy_kwh");
