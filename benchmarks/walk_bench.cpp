@@ -109,10 +109,7 @@ void walk_section(const Options& options) {
     const Problem problem = simulate(named.shape);
     const WalkTime time = time_walk(problem, grams_of(problem), walk_options(problem), options.repeats);
     std::printf("| %s | %.0f | %.1f | %.1f |", named.name, time.candidates, 1e-6 / time.seconds, time.operations);
-    if (named.operations > 0.0)
-      std::printf(" %.0f %% |\n", 100.0 * named.operations / time.operations);
-    else
-      std::printf(" – |\n");
+    std::printf(" %.0f %% |\n", 100.0 * named.operations / time.operations);
     std::fflush(stdout);
   }
   std::printf("\n");
@@ -299,9 +296,6 @@ void grams_section(const Options& options) {
   std::printf("\n");
 }
 
-/// Where lists by own-units scores are part of the walk, what they cost beside the walk without; negative without them.
-double own_units_ratio() { return -1.0; }
-
 void extras_section(const Options& options) {
   std::printf("| besides | times the plain walk |\n|---|---|\n");
   for (const NamedShape& named : kShapes) {
@@ -314,10 +308,6 @@ void extras_section(const Options& options) {
     std::printf("| summary of the whole space, %s | %.2f |\n", named.name, summary.operations / plain.operations);
     std::fflush(stdout);
   }
-  if (const double ratio = own_units_ratio(); ratio > 0.0)
-    std::printf("| lists by own units | %.2f |\n", ratio);
-  else
-    std::printf("| lists by own units | not measured |\n");
   std::printf("\n");
 }
 

@@ -1,6 +1,7 @@
 #include "pipeline/estimate.hpp"
 
 #include "base/parallel.hpp"
+#include "judge/words.hpp"
 #include "pipeline/pilot.hpp"
 #include "search/candidate_fit.hpp"
 
@@ -118,12 +119,7 @@ std::string what_to_change(const Estimate& estimate, const Prepared& prepared, d
 
 }  // namespace
 
-std::string grouped(const search::BigCount& count) {
-  std::string digits = count.str();
-  for (std::ptrdiff_t at = static_cast<std::ptrdiff_t>(digits.size()) - 3; at > 0; at -= 3)
-    digits.insert(static_cast<std::size_t>(at), ",");
-  return digits;
-}
+std::string grouped(const search::BigCount& count) { return judge::grouped_digits(count.str()); }
 
 std::string duration_words(double seconds) {
   char text[64];

@@ -1,6 +1,7 @@
 #include "pipeline/memory.hpp"
 
 #include "base/parallel.hpp"
+#include "pipeline/pilot.hpp"
 
 #include <algorithm>
 #include <cmath>
@@ -42,9 +43,8 @@ Shape shape_of(const Prepared& prepared, const run::Plan& plan, unsigned threads
   shape.grams.folds = prepared.folds.count;
   shape.grams.repeats = std::max<std::size_t>(prepared.folds.repeats, 1);
   shape.grams.weighted = !prepared.data.weights.empty();
-  // the scale of the identity is own units already
-  shape.grams.n_own_units = static_cast<std::size_t>(std::count_if(
-      responses.begin(), responses.end(), [](const forms::Form& form) { return form.kind != forms::Kind::identity; }));
+  shape.grams.n_own_units =
+      responses.size() - static_cast<std::size_t>(std::count_if(responses.begin(), responses.end(), is_linear));
   shape.most_terms = std::min(plan.search.max_terms.value_or(layout.block.size()), layout.block.size());
   std::vector<std::size_t> widest;
   for (const auto& forms : layout.block) {

@@ -1,7 +1,7 @@
 #include "pipeline/pool.hpp"
 
-#include "fit/least_squares.hpp"
 #include "judge/words.hpp"
+#include "pipeline/penalties.hpp"
 #include "pipeline/pilot.hpp"
 #include "search/own_score.hpp"
 
@@ -21,24 +21,6 @@ namespace {
 /// hold 265, of 5,000 299, of 10,000 all; and longer lists slow the walk down.
 constexpr std::size_t kRescoredPerPooled = 5;
 constexpr std::size_t kFewestRescored = 5'000;
-
-/// Most design columns that a candidate can have.
-std::size_t most_columns(const search::Space& space) {
-  std::size_t columns = 0;
-  for (const auto& predictor : space.predictors) {
-    std::size_t widest = 0;
-    for (const auto& form : predictor.forms) widest = std::max(widest, form.n_columns);
-    columns += widest;
-  }
-  return columns;
-}
-
-template <class Penalty>
-search::PoolRule penalised(const Prepared& prepared, std::size_t keep, Penalty penalty) {
-  search::PoolRule rule{search::Score::penalised_rss, keep, {}};
-  for (std::size_t k = 0; k <= most_columns(prepared.space); ++k) rule.penalty.push_back(penalty(k + 1));
-  return rule;
-}
 
 std::size_t list_length(const Prepared& prepared, std::size_t pool) {
   const auto& forms = prepared.data.response_forms;
@@ -138,15 +120,12 @@ std::optional<double> first_left_out(const PoolList& list, const std::set<search
 
 std::vector<search::PoolRule> pool_rules(const Prepared& prepared, const run::Plan& plan) {
   const std::size_t keep = list_length(prepared, plan.search.pool);
-  const std::size_t n = prepared.data.n_rows;
-  std::vector<search::PoolRule> rules = {{search::Score::cv_sse, keep, {}}};
-  rules.push_back(penalised(prepared, keep, [](std::size_t coefficients) { return fit::aic_penalty(coefficients); }));
-  if (plan.rank.by == "aicc")
-    rules.push_back(
-        penalised(prepared, keep, [n](std::size_t coefficients) { return fit::aicc_penalty(coefficients, n); }));
-  if (plan.rank.by == "bic")
-    rules.push_back(
-        penalised(prepared, keep, [n](std::size_t coefficients) { return fit::bic_penalty(coefficients, n); }));
+  const auto by = [&](judge::Criterion criterion) {
+    return search::PoolRule{search::Score::penalised_rss, keep, penalties(prepared, criterion)};
+  };
+  std::vector<search::PoolRule> rules = {{search::Score::cv_sse, keep, {}}, by(judge::Criterion::aic)};
+  if (plan.rank.by == "aicc") rules.push_back(by(judge::Criterion::aicc));
+  if (plan.rank.by == "bic") rules.push_back(by(judge::Criterion::bic));
   return rules;
 }
 

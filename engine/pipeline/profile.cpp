@@ -1,7 +1,5 @@
 #include "pipeline/profile.hpp"
 
-#include "fit/least_squares.hpp"
-
 #include <algorithm>
 #include <array>
 #include <charconv>
@@ -179,38 +177,10 @@ judge::ScoreDistribution distribution(const Translator& translator, const std::v
   return scores;
 }
 
-std::size_t most_columns(const search::Space& space) {
-  std::size_t columns = 0;
-  for (const auto& predictor : space.predictors) {
-    std::size_t widest = 0;
-    for (const auto& form : predictor.forms) widest = std::max(widest, form.n_columns);
-    columns += widest;
-  }
-  return columns;
-}
-
-double penalty_of(Criterion criterion, std::size_t n_coefficients, std::size_t n_rows) {
-  switch (criterion) {
-    case Criterion::aicc:
-      return fit::aicc_penalty(n_coefficients, n_rows);
-    case Criterion::bic:
-      return fit::bic_penalty(n_coefficients, n_rows);
-    default:
-      return fit::aic_penalty(n_coefficients);
-  }
-}
-
 }  // namespace
 
 Criterion summary_criterion(Criterion ranked_by) {
   return ranked_by == Criterion::cv_rmse ? Criterion::aic : ranked_by;
-}
-
-std::vector<double> summary_penalty(const Prepared& prepared, Criterion ranked_by) {
-  std::vector<double> penalty;
-  for (std::size_t k = 0; k <= most_columns(prepared.space); ++k)
-    penalty.push_back(penalty_of(summary_criterion(ranked_by), k + 1, prepared.data.n_rows));
-  return penalty;
 }
 
 judge::SpaceSummary space_summary(const search::WalkResult& walked, const Prepared& prepared, Criterion ranked_by,

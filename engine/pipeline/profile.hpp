@@ -14,14 +14,10 @@ namespace formsieve::pipeline {
 /// AIC, or the plan's criterion when that is a sibling of it.
 judge::Criterion summary_criterion(judge::Criterion ranked_by);
 
-/// Penalty of that criterion by number of design columns without the intercept, 0 … the most that a candidate of the
-/// space can have; for search::WalkOptions::summary_penalty.
-std::vector<double> summary_penalty(const Prepared& prepared, judge::Criterion ranked_by);
-
 /// The form profile, the best of each number of terms, the shares of weight and the distribution of scores, from a walk
-/// with summary_penalty(); empty when it made no summary. Criteria are those of the examination, so that the two can be
-/// compared. Shares of weight are unset after a walk that was stopped: what it had not reached may hold most of the
-/// weight. Cost: nothing depends on rows or candidates.
+/// with penalties() of that criterion; empty when it made no summary. Criteria are those of the examination, so that
+/// the two can be compared. Shares of weight are unset after a walk that was stopped: what it had not reached may hold
+/// most of the weight. Cost: nothing depends on rows or candidates.
 judge::SpaceSummary space_summary(const search::WalkResult& walked, const Prepared& prepared,
                                   judge::Criterion ranked_by, const LikelihoodConstants& constants);
 

@@ -11,6 +11,7 @@
 #include "pipeline/memory.hpp"
 #include "pipeline/meter.hpp"
 #include "pipeline/outputs.hpp"
+#include "pipeline/penalties.hpp"
 #include "pipeline/pilot.hpp"
 #include "pipeline/pool.hpp"
 #include "pipeline/prepare.hpp"
@@ -136,7 +137,7 @@ Status Search::open_outputs() {
 search::WalkOptions Search::walk_options() const {
   search::WalkOptions options;
   options.rules = rules_;
-  options.summary_penalty = summary_penalty(*prepared_, criterion_of(plan_.rank.by));
+  options.summary_penalty = penalties(*prepared_, criterion_of(plan_.rank.by));
   options.threads = options_.threads;
   return options;
 }
@@ -178,12 +179,14 @@ Status Search::screen() {
   search::WalkOptions options = walk_options();
   options.stop = meter_.token();
   options.progress = [this](std::uint64_t scored) { meter_.add(scored); };
+  const double start = meter_.seconds();
   walked_ = search::walk(prepared_->space, grams_, options);
+  const double seconds = meter_.seconds() - start;
   meter_.end();
   lists_ = pool_lists(*prepared_, plan_, grams_, walked_, options_.threads);
   pool_ = unite(lists_, plan_.search.pool);
   outputs_->log().info("screened {} candidates in {:.2f} s, {} inseparable; {} pooled", walked_.n_scored,
-                       meter_.seconds(), walked_.n_inseparable.str(), pool_.size());
+                       seconds, walked_.n_inseparable.str(), pool_.size());
   return {};
 }
 
@@ -268,7 +271,7 @@ void Search::describe() {
   space.pool_formed = pool_words(*prepared_, plan_, grams_, walked_, pool_.size());
   space.pool_margin = margin_words(*prepared_, lists_, walked_, pool_);
   space.seconds = meter_.seconds();
-  for (auto& words : inseparable_words(*prepared_, grams_, walked_, walk_options().smallest_pivot_rel))
+  for (auto& words : inseparable_words(*prepared_, grams_, walked_, search::kSmallestPivot_rel))
     shortlist_.remarks.push_back(std::move(words));
   shortlist_.remarks.insert(shortlist_.remarks.begin(), prepared_->notes.begin(), prepared_->notes.end());
   if (!space.complete)

@@ -14,9 +14,6 @@
 
 namespace formsieve::search {
 
-/// The walk's share of a column's diagonal below which its pivot is not divided by.
-inline constexpr double kSmallestPivot_rel = 1e-8;
-
 /// Where the columns of a candidate stand in the Gram, in plan order.
 void columns_of(const Space& space, std::span<const std::uint16_t> choice, std::vector<std::size_t>& columns);
 

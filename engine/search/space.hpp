@@ -14,6 +14,10 @@ namespace formsieve::search {
 
 using BigCount = boost::multiprecision::cpp_int;
 
+/// A pivot that is not above this share of its column's diagonal before any elimination is not divided by: the error of
+/// a held-out sum is about 1e-16 over the smallest such share, hence at most 1e-8 (pivot_guard_test).
+inline constexpr double kSmallestPivot_rel = 1e-8;
+
 /// Where the columns of one form stand in the Gram.
 struct FormBlock {
   std::size_t first_column = 0;

@@ -73,8 +73,7 @@ struct WalkOptions {
   unsigned threads = 0;  ///< 0: all that the process may use
   std::stop_token stop;
   std::function<void(std::uint64_t scored)> progress;  ///< called from worker threads with increments; may be empty
-  double smallest_pivot_rel =
-      1e-8;  ///< a child below it in any fold (or in all rows) is not entered (search.md section 3)
+  double smallest_pivot_rel = kSmallestPivot_rel;      ///< a child below it in any fold (or in all rows) is not entered
 };
 
 struct Scored {

@@ -2,6 +2,7 @@
 #include "../search/plain_summary.hpp"
 #include "pipeline/examine.hpp"
 #include "pipeline/prepare.hpp"
+#include "pipeline/penalties.hpp"
 #include "pipeline/profile.hpp"
 #include "support.hpp"
 
@@ -133,7 +134,7 @@ std::size_t n_terms(const search::Choice& choice) {
 /// Every figure of the summary against the examination of every candidate.
 void check_against_examination(const Setting& made, Criterion ranked_by) {
   const Criterion criterion = pipeline::summary_criterion(ranked_by);
-  const auto penalty = pipeline::summary_penalty(made.prepared, ranked_by);
+  const auto penalty = pipeline::penalties(made.prepared, ranked_by);
   const auto summary =
       pipeline::space_summary(walked(plain_summary(made.prepared.space, made.grams, penalty)), made.prepared, ranked_by,
                               pipeline::Examiner(made.prepared).likelihood_constants());
@@ -211,7 +212,7 @@ TEST_CASE("pipeline: the form profile holds with weights, max_terms and a predic
 
 TEST_CASE("pipeline: the histogram of scores counts every candidate where it belongs", "[pipeline][property]") {
   const Setting made = setting(trees());
-  const auto penalty = pipeline::summary_penalty(made.prepared, Criterion::aic);
+  const auto penalty = pipeline::penalties(made.prepared, Criterion::aic);
   const auto summary =
       pipeline::space_summary(walked(plain_summary(made.prepared.space, made.grams, penalty)), made.prepared,
                               Criterion::aic, pipeline::Examiner(made.prepared).likelihood_constants());
@@ -228,8 +229,7 @@ TEST_CASE("pipeline: the histogram ends where candidates end, and its open ends 
           "[pipeline][unit]") {
   using search::Summary;
   const Setting made = setting(trees());
-  Summary made_up =
-      plain_summary(made.prepared.space, made.grams, pipeline::summary_penalty(made.prepared, Criterion::aic));
+  Summary made_up = plain_summary(made.prepared.space, made.grams, pipeline::penalties(made.prepared, Criterion::aic));
   for (auto& response : made_up.responses) response.histogram.assign(Summary::kBins, 0);
   made_up.responses[0].histogram.assign(Summary::kBins, 3);
   made_up.responses[1].histogram[20] = 7;
@@ -252,7 +252,7 @@ TEST_CASE("pipeline: the histogram ends where candidates end, and its open ends 
 
 TEST_CASE("pipeline: what was not scored, fits exactly or has no density is unset", "[pipeline][unit]") {
   const Setting made = setting(trees());
-  const auto penalty = pipeline::summary_penalty(made.prepared, Criterion::aic);
+  const auto penalty = pipeline::penalties(made.prepared, Criterion::aic);
   const auto constants = pipeline::Examiner(made.prepared).likelihood_constants();
   const auto translated = [&](const auto& change) {
     search::WalkResult result = walked(plain_summary(made.prepared.space, made.grams, penalty));
@@ -287,7 +287,7 @@ TEST_CASE("pipeline: what was not scored, fits exactly or has no density is unse
 
 TEST_CASE("pipeline: a walk that was stopped gives no shares of weight", "[pipeline][unit]") {
   const Setting made = setting(trees());
-  const auto penalty = pipeline::summary_penalty(made.prepared, Criterion::aic);
+  const auto penalty = pipeline::penalties(made.prepared, Criterion::aic);
   search::WalkResult stopped = walked(plain_summary(made.prepared.space, made.grams, penalty));
   stopped.complete = false;
   const auto summary = pipeline::space_summary(stopped, made.prepared, Criterion::aic,

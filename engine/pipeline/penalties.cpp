@@ -1,0 +1,41 @@
+#include "pipeline/penalties.hpp"
+
+#include "fit/least_squares.hpp"
+
+#include <algorithm>
+
+namespace formsieve::pipeline {
+
+namespace {
+
+std::size_t most_columns(const search::Space& space) {
+  std::size_t columns = 0;
+  for (const auto& predictor : space.predictors) {
+    std::size_t widest = 0;
+    for (const auto& form : predictor.forms) widest = std::max(widest, form.n_columns);
+    columns += widest;
+  }
+  return columns;
+}
+
+double penalty_of(judge::Criterion criterion, std::size_t n_coefficients, std::size_t n_rows) {
+  switch (criterion) {
+    case judge::Criterion::aicc:
+      return fit::aicc_penalty(n_coefficients, n_rows);
+    case judge::Criterion::bic:
+      return fit::bic_penalty(n_coefficients, n_rows);
+    default:
+      return fit::aic_penalty(n_coefficients);
+  }
+}
+
+}  // namespace
+
+std::vector<double> penalties(const Prepared& prepared, judge::Criterion criterion) {
+  std::vector<double> penalty;
+  for (std::size_t k = 0; k <= most_columns(prepared.space); ++k)
+    penalty.push_back(penalty_of(criterion, k + 1, prepared.data.n_rows));
+  return penalty;
+}
+
+}  // namespace formsieve::pipeline
