@@ -185,8 +185,8 @@ Status Search::screen() {
   meter_.end();
   lists_ = pool_lists(*prepared_, plan_, grams_, walked_, options_.threads);
   pool_ = unite(lists_, plan_.search.pool);
-  outputs_->log().info("screened {} candidates in {:.2f} s, {} inseparable; {} pooled", walked_.n_scored,
-                       seconds, walked_.n_inseparable.str(), pool_.size());
+  outputs_->log().info("screened {} candidates in {:.2f} s, {} inseparable; {} pooled", walked_.n_scored, seconds,
+                       walked_.n_inseparable.str(), pool_.size());
   return {};
 }
 
