@@ -19,13 +19,15 @@ ARROWS = {
     "survey": (["base", "table", "forms"], BOOST_MATH),
     "design": (["base", "table", "forms"], ("hwy/",) + EIGEN),
     "search": (["base"], ("boost/multiprecision/", "hwy/")),
+    "proof": (["base", "search"], ("boost/multiprecision/",) + EIGEN),
     "fit": (["base"], EIGEN),
     "checks": (["base", "design", "forms", "fit:"], EIGEN + BOOST_MATH),
     "backtransform": (["base", "design", "forms", "fit:"], EIGEN + BOOST_MATH),
     "judge": (["base", "forms:", "fit:", "checks:", "backtransform:"], BOOST_MATH),
     "run": (["base", "judge:"], ("toml++/", "nlohmann/")),
     "report": (["base", "forms", "survey:", "judge:", "fit:", "checks:", "backtransform:", "run:"], ("nlohmann/", "xlsxwriter")),
-    "pipeline": (["base", "table", "forms", "survey", "design", "search", "fit", "checks", "backtransform", "judge", "run", "report"],
+    "pipeline": (["base", "table", "forms", "survey", "design", "search", "proof", "fit", "checks", "backtransform", "judge",
+                  "run", "report"],
                  ("spdlog/",) + EIGEN),
 }
 INCLUDE = re.compile(r'^\s*#\s*include\s*([<"])([^>"]+)[>"]')
