@@ -98,7 +98,6 @@ struct Walk {
 
   void tick() {
     if (w.n_scored - w.n_reported < kTickCandidates) return;
-    add_pairs_of_bins(w);
     if (w.sink->tick(w.n_scored - w.n_reported)) w.stopped = true;
     w.n_reported = w.n_scored;
   }
@@ -126,12 +125,14 @@ void score_singles_of(PairWork& w) {
       HWY_ALIGN double rss_scores[R][kLanes];
       Batch<R> batch{{0, PairSink::kNone, 1, 0, b},
                      kTally ? w.summary_factor[w.outer_columns + 1] : 1.0,
+                     static_cast<std::size_t>(__builtin_popcount(inside)),
                      1,
                      1,
                      {},
                      {},
                      0,
                      0,
+                     {},
                      {},
                      {}};
       for (std::size_t r = 0; r < R; ++r) {
@@ -139,13 +140,13 @@ void score_singles_of(PairWork& w) {
         store(rss[r], rss_scores[r]);
         batch.cv[r] = cv_scores[r];
         batch.rss[r] = rss_scores[r];
+        batch.greatest_cv[r] = all(kInfinity);
         batch.least_cv[r] = cv[r];
         batch.least_rss[r] = rss[r];
       }
       take<R, kTally>(w, batch);
       if constexpr (kTally) {
         for (std::size_t r = 0; r < R; ++r) {
-          count_in_histogram(w, r, cv[r]);
           const Vector best[2] = {cv[r], hn::Mul(rss[r], all(batch.factor))};
           for (int x = 0; x < 2; ++x) {
             lower(t.best_lane[x] + lane_cell(w, r, b), best[x]);
@@ -246,7 +247,6 @@ void score_pairs_here(PairWork& w, std::size_t level, std::size_t open) {
   with_options(
       w, [&](auto r, auto tally) { score_stored_pairs<decltype(r)::value, decltype(tally)::value>(w, level, open); });
 }
-void count_here(PairWork& w) { add_pairs_of_bins(w); }
 void open_node_here(PairWork& w, std::size_t level, std::size_t open) {
   with_responses(w.n_responses, [&](auto r) { clear_node<decltype(r)::value>(w, level, open); });
 }
@@ -268,7 +268,6 @@ HWY_EXPORT(complete_root_here);
 HWY_EXPORT(descend_here);
 HWY_EXPORT(score_singles_here);
 HWY_EXPORT(score_pairs_here);
-HWY_EXPORT(count_here);
 HWY_EXPORT(open_node_here);
 HWY_EXPORT(walk_children_here);
 
@@ -280,7 +279,6 @@ void score_singles(PairWork& work) { HWY_DYNAMIC_DISPATCH(score_singles_here)(wo
 void score_pairs(PairWork& work, std::size_t level, std::size_t open) {
   HWY_DYNAMIC_DISPATCH(score_pairs_here)(work, level, open);
 }
-void add_histogram(PairWork& work) { HWY_DYNAMIC_DISPATCH(count_here)(work); }
 void open_node(PairWork& work, std::size_t level, std::size_t open) {
   HWY_DYNAMIC_DISPATCH(open_node_here)(work, level, open);
 }

@@ -79,9 +79,8 @@ struct PairTally {
   double* weight_node = nullptr;
   double* gate_last[2] = {};  ///< [responses] pairs of the last two predictors lower no cell from this score on …
   double* gate_rows[2] = {};  ///< [responses × n_predictors] … nor do pairs with a row of this predictor
-  /// [responses × Summary::kBins] lanes by held-out SSE; what is no candidate counts in the last bin.
+  /// [responses × Summary::kBins] candidates by held-out SSE.
   std::uint64_t* histogram = nullptr;
-  std::uint32_t* histogram_pairs = nullptr;  ///< [responses × Summary::kBins²] pairs of lanes by their bins
   const std::int64_t* first_bin =
       nullptr;  ///< [responses] bits of the first bin's lower edge, as far as bins need them
 };
@@ -117,11 +116,12 @@ struct PairWork {
 
   PairTally tally;
   const double* summary_factor = nullptr;  ///< [most columns + 1] exp(penalty / n)
-  double half_n = 0.0;                     ///< n_rows / 2
+  std::size_t n_rows = 0;
   double* weight_unit =
       nullptr;  ///< [responses] the penalised RSS whose weight is 1; lowered when weights grow too large
   double* weight_limit = nullptr;  ///< [responses] weights beyond this penalised RSS are left out
   double weight_range = 0.0;       ///< weight_limit / weight_unit
+  double weight_overflow = 0.0;    ///< a penalised RSS below this share of the unit needs a new unit
 
   std::uint64_t n_scored = 0;       ///< all responses
   std::uint64_t n_inseparable = 0;  ///< all responses
@@ -166,8 +166,6 @@ void complete_root(PairWork& work);
 void descend(PairWork& work, std::size_t level, std::size_t lane);
 /// Starts the tally of the level at which a run starts.
 void open_node(PairWork& work, std::size_t level, std::size_t open);
-/// Completes PairTally::histogram.
-void add_histogram(PairWork& work);
 /// Scores the single columns open at level 0.
 void score_singles(PairWork& work);
 /// Scores the pairs of level, whose first `open` predictors are open.

@@ -184,26 +184,33 @@ void take_last_pairs(PairWork& w, std::size_t level, std::size_t lane, LastScore
   Batch<R> batch;
   batch.at = {level + 1, shape.first_lane[1], picks, level + 1, 0};
   batch.factor = kTally ? w.summary_factor[w.outer_columns + picks] : 1.0;
+  batch.n_candidates = n_rows * shape.n_columns[1];
   batch.n_rows = n_rows;
   batch.n_blocks = n_blocks;
   batch.row_stride = n_blocks * kWidth;
   batch.block_stride = kWidth;
+  const auto first_block = hn::FirstN(kTag, shape.n_columns[1]);
   for (std::size_t r = 0; r < R; ++r) {
     batch.cv[r] = scores.cv[r];
     batch.rss[r] = scores.rss[r];
     batch.least_cv[r] = batch.least_rss[r] = all(kInfinity);
+    batch.greatest_cv[r] = hn::Zero(kTag);
     for (std::size_t i = 0; i < n_rows * n_blocks; ++i) {
       batch.least_cv[r] = hn::Min(batch.least_cv[r], load(scores.cv[r] + i * kWidth));
       batch.least_rss[r] = hn::Min(batch.least_rss[r], load(scores.rss[r] + i * kWidth));
+      if constexpr (kTally) {
+        const auto inside = n_blocks == 1 ? first_block : hn::FirstN(kTag, shape.n_columns[1] - i % n_blocks * kWidth);
+        batch.greatest_cv[r] =
+            hn::Max(batch.greatest_cv[r], hn::IfThenElseZero(inside, load(scores.cv[r] + i * kWidth)));
+      }
     }
   }
   if constexpr (kTally)
     for (std::size_t r = 0; r < R; ++r) store(hn::Zero(kTag), w.tally.weight_node + node_cell(w, level + 1, r));
-  take<R, kTally>(w, batch);
+  const bool weighed = take<R, kTally>(w, batch);
   if constexpr (kTally) {
     PairTally& t = w.tally;
     for (std::size_t r = 0; r < R; ++r) {
-      for (std::size_t i = 0; i < n_rows * n_blocks; ++i) count_in_histogram(w, r, load(scores.cv[r] + i * kWidth));
       const Vector node_best[2] = {batch.least_cv[r], hn::Mul(batch.least_rss[r], all(batch.factor))};
       for (int x = 0; x < 2; ++x) {
         store(node_best[x], t.best_node[x] + node_cell(w, level + 1, r));
@@ -213,7 +220,7 @@ void take_last_pairs(PairWork& w, std::size_t level, std::size_t lane, LastScore
                              n_blocks);
       }
     }
-    pass_up<R>(w, level, lane, shape.predictor_of_lane[lane]);
+    pass_up<R>(w, level, lane, shape.predictor_of_lane[lane], weighed);
   }
 }
 

@@ -196,13 +196,25 @@ void take_pairs(PairWork& w, const PairLevel& node, std::size_t level, std::size
     const std::size_t n_forms = shape.first_lane[p + 1] - n;
     w.n_scored += n_forms * shape.n_columns[p] * R;
     const std::size_t first = shape.row_offset[n] / 2;
-    Batch<R> batch{
-        {level, n, picks, level, 0}, factor, n_forms, (n + kWidth - 1) / kWidth, {}, {}, padded(n), kWidth, {}, {}};
+    Batch<R> batch{{level, n, picks, level, 0},
+                   factor,
+                   n_forms * shape.n_columns[p],
+                   n_forms,
+                   (n + kWidth - 1) / kWidth,
+                   {},
+                   {},
+                   padded(n),
+                   kWidth,
+                   {},
+                   {},
+                   {}};
     for (std::size_t r = 0; r < R; ++r) {
       batch.cv[r] = cv_plane + r * plane + first;
       batch.rss[r] = rss_plane + r * plane + first;
       batch.least_cv[r] = batch.least_rss[r] = all(kInfinity);
+      batch.greatest_cv[r] = hn::Zero(kTag);
     }
+    bool some_aside = false;
     for (std::size_t a = n; a < n + n_forms; ++a) {
       for (std::size_t b = 0; b < n; b += kWidth) {
         Vector cv[R];
@@ -232,16 +244,23 @@ void take_pairs(PairWork& w, const PairLevel& node, std::size_t level, std::size
           cv[r] = at_least_zero(cv[r]);
           rss[r] = at_least_zero(rss[r]);
         }
-        if (HWY_UNLIKELY(!all_separable(w, least))) set_aside<R>(w, inside_bits(shape, p, b), least, cv, rss);
+        if (HWY_UNLIKELY(!all_separable(w, least))) {
+          set_aside<R>(w, inside_bits(shape, p, b), least, cv, rss);
+          some_aside = true;
+        }
         for (std::size_t r = 0; r < R; ++r) {
           store(cv[r], cv_plane + r * plane + shape.row_offset[a] / 2 + b);
           store(rss[r], rss_plane + r * plane + shape.row_offset[a] / 2 + b);
           batch.least_cv[r] = hn::Min(batch.least_cv[r], cv[r]);
           batch.least_rss[r] = hn::Min(batch.least_rss[r], rss[r]);
-          if constexpr (kTally) count_in_histogram(w, r, cv[r]);
+          if constexpr (kTally)
+            batch.greatest_cv[r] =
+                hn::Max(batch.greatest_cv[r], hn::IfThenElseZero(hn::Lt(cv[r], all(kInfinity)), cv[r]));
         }
       }
     }
+    if (some_aside)
+      for (std::size_t r = 0; r < R; ++r) batch.greatest_cv[r] = all(kInfinity);
     take<R, kTally>(w, batch);
     if constexpr (kTally) {
       for (int x = 0; x < 2; ++x) {

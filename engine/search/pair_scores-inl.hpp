@@ -7,11 +7,11 @@
 #define FORMSIEVE_PAIR_SCORES_HPP
 #endif
 
-#include "hwy/contrib/math/math-inl.h"
 #include "search/pair_vectors-inl.hpp"
 #include "search/walk.hpp"
 
 #include <algorithm>
+#include <bit>
 #include <cmath>
 #include <cstdint>
 
@@ -19,12 +19,8 @@ HWY_BEFORE_NAMESPACE();
 namespace formsieve::search::HWY_NAMESPACE {
 namespace {
 
-/// A weight above e^this makes the sums forget what is too small to matter and start from a new unit.
-constexpr double kLargestLogWeight = 500.0;
 /// A mean squared residual below this share of the response's variance is rounding: weights treat it as this much.
 constexpr double kExactFit = 1e-28;
-/// What weighs e^this or less weighs nothing.
-constexpr double kSmallestLogWeight = -700.0;
 
 /// The candidates of one vector: the path, a row's lane, and the lanes from `first_lane` on.
 struct Place {
@@ -38,7 +34,7 @@ struct Place {
 /// Starts the sums of a response afresh at a smaller unit.
 HWY_NOINLINE void rescale_weights(PairWork& w, std::size_t r, double log_weight) {
   const PairShape& shape = *w.shape;
-  w.weight_unit[r] *= std::exp(-log_weight / w.half_n);
+  w.weight_unit[r] *= std::exp(-2.0 * log_weight / static_cast<double>(w.n_rows));
   w.weight_limit[r] = w.weight_unit[r] * w.weight_range;
   const double factor = std::exp(-log_weight);
   const auto scale = [factor](double* p, std::size_t n) {
@@ -51,40 +47,17 @@ HWY_NOINLINE void rescale_weights(PairWork& w, std::size_t r, double log_weight)
     scale(w.tally.weight_node + node_cell(w, level, r), kCell);
 }
 
-/// ln x. Where weights matter on a narrow range about 1, as with many rows, a short series of
-/// 2 artanh((x − 1)/(x + 1)) keeps all the digits that half_n · ln x needs.
-HWY_INLINE Vector logarithm(const PairWork& w, Vector x) {
-  constexpr double kNarrow = 1.3;
-  const bool narrow = w.weight_range < kNarrow && hn::AllTrue(kTag, hn::Gt(x, all(1.0 / kNarrow)));
-  if (!narrow) return hn::Log(kTag, x);
-  const Vector s = hn::Div(hn::Sub(x, all(1.0)), hn::Add(x, all(1.0)));
-  const Vector q = hn::Mul(s, s);
-  Vector series = all(2.0 / 11.0);
-  for (const double term : {2.0 / 9.0, 2.0 / 7.0, 2.0 / 5.0, 2.0 / 3.0, 2.0}) series = hn::MulAdd(series, q, all(term));
-  return hn::Mul(s, series);
-}
-
-HWY_NOINLINE void add_weights(PairWork& w, const Place& at, std::size_t r, Vector penalised) {
-  const auto wanted = hn::Le(penalised, all(w.weight_limit[r]));
-  const Vector floor = all(2.0 * kExactFit * w.half_n);
-  const auto log_weight = [&] {
-    // lanes beyond the limit are of no interest, and may be infinite
-    const Vector x = hn::Div(hn::Max(hn::Min(penalised, all(w.weight_limit[r])), floor), all(w.weight_unit[r]));
-    return hn::Mul(all(-w.half_n), logarithm(w, x));
-  };
-  Vector logs = log_weight();
-  if (HWY_UNLIKELY(!hn::AllFalse(kTag, hn::Gt(logs, all(kLargestLogWeight))))) {
-    HWY_ALIGN double lanes[kLanes];
-    store(logs, lanes);
-    rescale_weights(w, r, *std::max_element(lanes, lanes + kWidth));
-    logs = log_weight();
+/// x^(−n/2) for lanes of x, by repeated squaring: the relative error is about n units of the last place, far below
+/// what the sums leave out.
+HWY_INLINE Vector weights_of(const PairWork& w, Vector x) {
+  const bool odd = w.n_rows % 2 != 0;
+  Vector square = reciprocal(odd ? hn::Sqrt(x) : x);
+  Vector weight = all(1.0);
+  for (std::uint64_t power = odd ? w.n_rows : w.n_rows / 2; power != 0; power >>= 1) {
+    if (power & 1) weight = hn::Mul(weight, square);
+    square = hn::Mul(square, square);
   }
-  const Vector weights = hn::IfThenElseZero(wanted, hn::Exp(kTag, hn::Max(logs, all(kSmallestLogWeight))));
-  PairTally& t = w.tally;
-  increase(t.weight_lane + lane_cell(w, r, at.first_lane), weights);
-  increase(t.weight_picks + picks_cell(w, r, at.picks), weights);
-  increase(t.weight_node + node_cell(w, at.node, r), weights);
-  if (at.row != PairSink::kNone) increase(t.weight_column + column_cell(w, r, at.row), weights);
+  return weight;
 }
 
 /// Shows lanes to the lists.
@@ -96,38 +69,18 @@ HWY_NOINLINE void offer(PairWork& w, const Place& at, std::size_t r, unsigned ma
   w.sink->offer(r, at.level, at.row, at.first_lane, mask, cv_lanes, rss_lanes);
 }
 
-/// Counts the lanes by bin, two at a time: one step of a table of pairs of bins, which close_histogram() adds up. Lanes
-/// that are no candidates are infinite, hence in the last bin.
-HWY_INLINE void count_in_histogram(PairWork& w, std::size_t r, Vector cv) {
-  std::uint32_t* const pairs = w.tally.histogram_pairs + r * Summary::kBins * Summary::kBins;
-  const hn::RebindToSigned<Tag> integers;
-  // four bins to an octave: exponent and the first two bits of the fraction
-  const auto bin = hn::Sub(hn::ShiftRight<50>(hn::BitCast(integers, cv)), hn::Set(integers, w.tally.first_bin[r]));
-  const auto within = hn::Min(hn::Max(bin, hn::Zero(integers)), hn::Set(integers, Summary::kBins - 1));
-  HWY_ALIGN std::int64_t bins[kLanes];
-  hn::StoreU(within, integers, bins);
-  if constexpr (kWidth == 1) {
-    ++pairs[static_cast<std::size_t>(bins[0]) * Summary::kBins + Summary::kBins - 1];
-  } else {
-    for (std::size_t i = 0; i < kWidth; i += 2)
-      ++pairs[static_cast<std::size_t>(bins[i]) * Summary::kBins + static_cast<std::size_t>(bins[i + 1])];
-  }
-}
+constexpr int kLowBits = 50;  ///< four bins to an octave: all bits but the exponent and the first two of the fraction
 
-/// Adds the pairs counted so far up; the table would overflow some time.
-HWY_NOINLINE void add_pairs_of_bins(PairWork& w) {
-  if (!w.tally.wanted) return;
-  constexpr std::size_t n = Summary::kBins;
-  for (std::size_t r = 0; r < w.n_responses; ++r) {
-    std::uint32_t* const pairs = w.tally.histogram_pairs + r * n * n;
-    std::uint64_t* const bins = w.tally.histogram + r * n;
-    for (std::size_t i = 0; i < n; ++i) {
-      for (std::size_t j = 0; j < n; ++j) {
-        bins[i] += pairs[i * n + j];
-        bins[j] += pairs[i * n + j];
-        pairs[i * n + j] = 0;
-      }
-    }
+/// Counts the candidates of a vector from an edge on.
+HWY_NOINLINE void count_one_by_one(PairWork& w, std::size_t r, Vector cv, Vector from) {
+  std::uint64_t* const bins = w.tally.histogram + r * Summary::kBins;
+  HWY_ALIGN double lanes[kLanes];
+  store(cv, lanes);
+  unsigned wanted = bits_of(hn::And(hn::Ge(cv, from), hn::Lt(cv, all(kInfinity))));
+  for (; wanted != 0; wanted &= wanted - 1) {
+    const auto bits = std::bit_cast<std::int64_t>(lanes[__builtin_ctz(wanted)]);
+    const std::int64_t bin = (bits >> kLowBits) - w.tally.first_bin[r];
+    ++bins[std::clamp<std::int64_t>(bin, 0, Summary::kBins - 1)];
   }
 }
 
@@ -135,19 +88,90 @@ HWY_NOINLINE void add_pairs_of_bins(PairWork& w) {
 /// held-out SSE and RSS, lanes that are no candidates infinite.
 template <int R>
 struct Batch {
-  Place at;              ///< of the first vector
-  double factor;         ///< penalised RSS = RSS · factor
-  std::size_t n_rows;    ///< vectors stand row by row …
-  std::size_t n_blocks;  ///< … and block by block of kWidth lanes
+  Place at;                  ///< of the first vector
+  double factor;             ///< penalised RSS = RSS · factor
+  std::size_t n_candidates;  ///< lanes that are candidates, inseparable ones included
+  std::size_t n_rows;        ///< vectors stand row by row …
+  std::size_t n_blocks;      ///< … and block by block of kWidth lanes
   const double* cv[R];
   const double* rss[R];
   std::size_t row_stride, block_stride;  ///< between vectors, in numbers
   Vector least_cv[R], least_rss[R];      ///< minima over the vectors
+  Vector greatest_cv[R];                 ///< with tallies: maxima over the lanes that are candidates
 };
 
-/// Shows the lists what they may want and adds the weights that matter.
+/// Adds the weights of a batch that matter: to its lanes, its rows' columns, its number of picks and its node.
+template <int R>
+HWY_NOINLINE void add_weights(PairWork& w, std::size_t r, const Batch<R>& batch) {
+  PairTally& t = w.tally;
+  const double floor = kExactFit * static_cast<double>(w.n_rows);
+  const double least = std::max(hn::GetLane(hn::MinOfLanes(kTag, batch.least_rss[r])) * batch.factor, floor);
+  if (HWY_UNLIKELY(least < w.weight_overflow * w.weight_unit[r]))
+    rescale_weights(w, r, -0.5 * static_cast<double>(w.n_rows) * std::log(least / w.weight_unit[r]));
+  const Vector limit = all(w.weight_range);
+  const Vector factor = all(batch.factor / w.weight_unit[r]);
+  const Vector smallest = all(floor / w.weight_unit[r]);
+  Vector of_node = hn::Zero(kTag);
+  for (std::size_t i = 0; i < batch.n_rows; ++i) {
+    Vector of_row = hn::Zero(kTag);
+    for (std::size_t b = 0; b < batch.n_blocks; ++b) {
+      const Vector x = hn::Mul(load(batch.rss[r] + i * batch.row_stride + b * batch.block_stride), factor);
+      const auto matters = hn::Le(x, limit);
+      if (hn::AllFalse(kTag, matters)) continue;
+      const Vector weights = hn::IfThenElseZero(matters, weights_of(w, hn::Max(hn::Min(x, limit), smallest)));
+      increase(t.weight_lane + lane_cell(w, r, batch.at.first_lane + b * kWidth), weights);
+      of_row = hn::Add(of_row, weights);
+    }
+    if (batch.at.row != PairSink::kNone) increase(t.weight_column + column_cell(w, r, batch.at.row + i), of_row);
+    of_node = hn::Add(of_node, of_row);
+  }
+  increase(t.weight_picks + picks_cell(w, r, batch.at.picks), of_node);
+  increase(t.weight_node + node_cell(w, batch.at.node, r), of_node);
+}
+
+/// Counts the candidates of a batch by bin. Most batches lie in one bin; a few more are counted by comparing with the
+/// bins' upper edges in turn, and what spreads further, or is not separable, one after another.
+template <int R>
+HWY_NOINLINE void count_spread(PairWork& w, std::size_t r, const Batch<R>& batch, std::int64_t bin) {
+  constexpr int kMostBins = 4;
+  const std::int64_t first = w.tally.first_bin[r];
+  const std::int64_t last = first + static_cast<std::int64_t>(Summary::kBins) - 1;
+  std::uint64_t* const bins = w.tally.histogram + r * Summary::kBins;
+  const auto each = [&](const auto& body) {
+    for (std::size_t row = 0; row < batch.n_rows; ++row)
+      for (std::size_t b = 0; b < batch.n_blocks; ++b)
+        body(load(batch.cv[r] + row * batch.row_stride + b * batch.block_stride));
+  };
+  std::uint64_t counted = 0;
+  for (int i = 0; i < kMostBins && bin < last; ++i, ++bin) {
+    const Vector edge = all(std::bit_cast<double>((bin + 1) << kLowBits));
+    std::uint64_t below = 0;
+    each([&](Vector cv) { below += hn::CountTrue(kTag, hn::Lt(cv, edge)); });
+    bins[bin - first] += below - counted;
+    counted = below;
+    if (counted == batch.n_candidates) return;
+  }
+  const Vector edge = all(std::bit_cast<double>(bin << kLowBits));
+  each([&](Vector cv) { count_one_by_one(w, r, cv, edge); });
+}
+
+template <int R>
+HWY_INLINE void count_in_histogram(PairWork& w, std::size_t r, const Batch<R>& batch) {
+  const std::int64_t first = w.tally.first_bin[r];
+  const double least = hn::GetLane(hn::MinOfLanes(kTag, batch.least_cv[r]));
+  const std::int64_t bin = std::max(std::bit_cast<std::int64_t>(least) >> kLowBits, first);
+  const Vector edge = all(std::bit_cast<double>((bin + 1) << kLowBits));
+  if (HWY_LIKELY(bin - first < static_cast<std::int64_t>(Summary::kBins) - 1 &&
+                 hn::AllTrue(kTag, hn::Lt(batch.greatest_cv[r], edge))))
+    w.tally.histogram[r * Summary::kBins + static_cast<std::size_t>(bin - first)] += batch.n_candidates;
+  else
+    count_spread<R>(w, r, batch, bin);
+}
+
+/// Shows the lists what they may want, counts, and adds the weights that matter; true when there were some.
 template <int R, bool kTally>
-HWY_INLINE void take(PairWork& w, const Batch<R>& batch) {
+HWY_INLINE bool take(PairWork& w, const Batch<R>& batch) {
+  bool weighed = false;
   const std::size_t k = w.outer_columns + batch.at.picks;
   for (std::size_t r = 0; r < R; ++r) {
     const auto each = [&](const auto& body) {
@@ -172,14 +196,15 @@ HWY_INLINE void take(PairWork& w, const Batch<R>& batch) {
       });
     }
     if constexpr (kTally) {
-      const auto weighs = [&](Vector rss) { return hn::Le(hn::Mul(rss, all(batch.factor)), all(w.weight_limit[r])); };
-      if (HWY_UNLIKELY(!hn::AllFalse(kTag, weighs(batch.least_rss[r])))) {
-        each([&](const Place& at, Vector, Vector rss) {
-          if (!hn::AllFalse(kTag, weighs(rss))) add_weights(w, at, r, hn::Mul(rss, all(batch.factor)));
-        });
+      count_in_histogram<R>(w, r, batch);
+      const Vector best = hn::Mul(batch.least_rss[r], all(batch.factor));
+      if (HWY_UNLIKELY(!hn::AllFalse(kTag, hn::Le(best, all(w.weight_limit[r]))))) {
+        add_weights<R>(w, r, batch);
+        weighed = true;
       }
     }
   }
+  return weighed;
 }
 
 /// Counts the lanes of a vector whose smallest pivot is too small, and makes their scores infinite.

@@ -103,7 +103,7 @@ void close_node(PairWork& w, std::size_t level, std::size_t open) {
 
 /// Hands a finished child's tally to its column and its parent.
 template <int R>
-HWY_INLINE void pass_up(PairWork& w, std::size_t level, std::size_t lane, std::size_t predictor) {
+HWY_INLINE void pass_up(PairWork& w, std::size_t level, std::size_t lane, std::size_t predictor, bool weighed = true) {
   PairTally& t = w.tally;
   for (std::size_t r = 0; r < R; ++r) {
     for (int x = 0; x < 2; ++x) {
@@ -111,6 +111,7 @@ HWY_INLINE void pass_up(PairWork& w, std::size_t level, std::size_t lane, std::s
       lower(t.best_column[x] + column_cell(w, r, lane), best);
       lower(t.best_group[x] + group_cell(w, level, predictor, r), best);
     }
+    if (!weighed) continue;
     const Vector weight = load(t.weight_node + node_cell(w, level + 1, r));
     increase(t.weight_column + column_cell(w, r, lane), weight);
     increase(t.weight_node + node_cell(w, level, r), weight);

@@ -7,13 +7,14 @@
 #include <cmath>
 #include <limits>
 #include <memory>
-#include <numeric>
 
 namespace formsieve::search {
 
 namespace {
 
 constexpr double kInfinity = std::numeric_limits<double>::infinity();
+/// A weight above e^this makes the sums start from a new unit, before they overflow.
+constexpr double kLargestLogWeight = 500.0;
 /// A padding lane has no column.
 constexpr std::size_t kNoColumn = ~std::size_t{0};
 /// Vectors are read from any lane on, hence up to this much beyond the last number of a row.
@@ -85,7 +86,8 @@ PairWalker::PairWalker(const PairShape& largest, std::size_t n_folds, std::size_
   work_.n_responses = n_responses;
   work_.smallest_pivot = smallest_pivot_rel;
   work_.sink = &sink;
-  work_.half_n = 0.5 * static_cast<double>(n_rows);
+  work_.n_rows = n_rows;
+  work_.weight_overflow = std::exp(-2.0 * kLargestLogWeight / static_cast<double>(n_rows));
   work_.tally.wanted = summary.wanted;
   work_.weight_range = summary.range;
   std::size_t size =
@@ -101,7 +103,6 @@ PairWalker::PairWalker(const PairShape& largest, std::size_t n_folds, std::size_
          2 * (largest.most_picks + 1) * largest.n_predictors() + 24);
     tally_memory_.assign(cells, 0.0);
     histogram_.assign(n_responses * search::Summary::kBins, 0);
-    histogram_pairs_.assign(n_responses * search::Summary::kBins * search::Summary::kBins, 0);
   }
 }
 
@@ -148,7 +149,6 @@ void PairWalker::lay_out_tally() {
   tally.weight_lane = pieces.take(lanes);
   tally.weight_picks = pieces.take(levels);
   tally.weight_node = pieces.take(levels);
-  tally.histogram_pairs = histogram_pairs_.data();
   tally.first_bin = first_bin_.data();
   tally.histogram = histogram_.data();
   assert(pieces.next() <= tally_memory_.data() + tally_memory_.size());
@@ -162,17 +162,6 @@ void PairWalker::clear_run() {
   std::fill(weight_cells_, tally_memory_.data() + tally_memory_.size(), 0.0);
   unit_ = start_unit_;
   for (std::size_t r = 0; r < n_responses_; ++r) weight_limit_[r] = unit_[r] * work_.weight_range;
-}
-
-std::vector<std::uint64_t> PairWalker::histogram() const {
-  std::vector<std::uint64_t> counts = histogram_;
-  for (std::size_t r = 0; r < n_responses_ && !counts.empty(); ++r) {
-    const auto first = counts.begin() + static_cast<std::ptrdiff_t>(r * search::Summary::kBins);
-    const auto last = first + search::Summary::kBins;
-    const auto lanes = std::accumulate(first, last, std::uint64_t{0});
-    *(last - 1) -= lanes - work_.n_scored / n_responses_;
-  }
-  return counts;
 }
 
 /// One fold's A, V, A_y, U_y and rows at level 0, columns scaled to a unit diagonal before any elimination.
@@ -266,13 +255,14 @@ void PairWalker::run(std::uint64_t largest) {
   if (entered_ == 0 && shape_->most_picks > 0) score_singles(work_);
   if (entered_ + 2 <= shape_->most_picks) score_pairs(work_, entered_, open);
   walk_children(work_, entered_, open, largest);
-  add_histogram(work_);
 }
 
 void PairWalker::harvest(PairHarvest& harvest) const {
   const PairTally& tally = work_.tally;
   const std::size_t n_lanes = shape_->n_lanes();
-  const auto log_weight = [&](std::size_t r, double sum) { return std::log(sum) - work_.half_n * std::log(unit_[r]); };
+  const auto log_weight = [&](std::size_t r, double sum) {
+    return std::log(sum) - 0.5 * static_cast<double>(work_.n_rows) * std::log(unit_[r]);
+  };
   const auto figures = [&](std::size_t r, double* const(&best)[2], const double* weight, std::size_t cell) {
     const double own = weight == nullptr ? 0.0 : sum_of(weight + cell);
     return PairHarvest::Figures{{least_of(best[0] + cell), least_of(best[1] + cell)}, log_weight(r, own)};

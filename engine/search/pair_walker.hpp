@@ -53,7 +53,7 @@ class PairWalker {
   std::uint64_t n_inseparable() const { return work_.n_inseparable; }
   bool stopped() const { return work_.stopped; }
   /// [response × Summary::kBins] candidates of all runs.
-  std::vector<std::uint64_t> histogram() const;
+  const std::vector<std::uint64_t>& histogram() const { return histogram_; }
   const PairShape& shape() const { return *shape_; }
   /// Lanes picked on the way to the node whose candidates are being offered.
   const std::vector<std::size_t>& path() const { return path_; }
@@ -80,7 +80,6 @@ class PairWalker {
   std::size_t entered_ = 0, valid_levels_ = 0;
   std::vector<double> limit_cv_, limit_rss_, factor_, unit_, start_unit_, weight_limit_;
   std::vector<std::uint64_t> histogram_;
-  std::vector<std::uint32_t> histogram_pairs_;
   std::vector<std::size_t> column_of_lane_;
   std::vector<double> scale_;
   std::vector<std::int64_t> first_bin_;
