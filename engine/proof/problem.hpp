@@ -68,8 +68,14 @@ class CandidateScorer {
  public:
   explicit CandidateScorer(const RootGram& root) : root_(&root) {}
   CandidateScore operator()(std::size_t response, std::span<const std::uint16_t> choice);
+  /// Whether every pivot exceeds this share of its column. More terms only lower the pivots of a candidate.
+  bool separable(std::span<const std::uint16_t> choice, double smallest_pivot_rel);
 
  private:
+  void gather(std::span<const std::uint16_t> choice);
+  /// RSS_rel of columns_, or +infinity at the first pivot that is too small. Cost k³ / 3.
+  double eliminate(std::size_t response, double smallest_pivot_rel);
+
   const RootGram* root_;
   std::vector<std::size_t> columns_;
   std::vector<double> lower_;

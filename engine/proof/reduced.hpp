@@ -16,6 +16,7 @@ struct OpenForm {
   std::size_t form = 0;  ///< index in the predictor's menu
   Eigen::Index first = 0;
   Eigen::Index n_columns = 1;
+  bool separable = true;  ///< false: every candidate with it and the fixed columns has too small a pivot
 };
 
 /// A predictor with more than one action left.

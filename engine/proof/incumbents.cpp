@@ -1,0 +1,124 @@
+#include "proof/incumbents.hpp"
+
+#include <algorithm>
+#include <array>
+#include <bit>
+#include <cmath>
+#include <utility>
+
+namespace formsieve::proof {
+
+namespace {
+
+/// The closure looks at the single changes of so many of the best: lists may be far longer.
+constexpr std::size_t kClosedEntries = 300;
+/// About a candidate met at a node; the list is closed again at the end of the first search anyway.
+constexpr std::size_t kClosedAboutNode = 30;
+/// What a score by updates may be off.
+constexpr double kScoreError = 1e-6;
+/// A change that lowers a score by less is not followed: descents must end.
+constexpr double kSmallestDescent = 1e-9;
+/// Descents do not begin with all predictors in where there are more than these: each step would take long.
+constexpr std::size_t kLargestStart = 120;
+/// Candidates remembered as looked at.
+constexpr std::size_t kMostLookedAt = 200'000;
+
+std::size_t n_terms(const std::vector<std::uint16_t>& choice) {
+  return static_cast<std::size_t>(std::count_if(choice.begin(), choice.end(), [](std::uint16_t c) { return c != 0; }));
+}
+
+}  // namespace
+
+Incumbents::Incumbents(const RootGram& root, const Scope& scope, Shortlist& list, std::function<bool()> expired)
+    : root_(&root), scope_(&scope), list_(&list), expired_(std::move(expired)), scorer_(root), changes_(root, scope) {}
+
+bool Incumbents::offer(const search::Choice& candidate) {
+  return scope_->contains(candidate.response, candidate.choice) &&
+         list_->offer(candidate, scorer_(candidate.response, candidate.choice));
+}
+
+bool Incumbents::look(const search::Choice& from, search::Choice& best, double& best_score) {
+  if (looked_at_.size() > kMostLookedAt) looked_at_.clear();
+  if (!looked_at_.emplace(from.response, from.choice).second) return false;
+  search::Choice changed = from;
+  std::pair<std::size_t, std::uint16_t> best_change{};
+  bool better = false;
+  changes_(from, [&](std::size_t predictor, std::uint16_t choice, double score) {
+    if (score < best_score - kSmallestDescent) {
+      best_score = score;
+      best_change = {predictor, choice};
+      better = true;
+    }
+    if (!(score <= list_->threshold() + kScoreError)) return;
+    const std::uint16_t old = std::exchange(changed.choice[predictor], choice);
+    offer(changed);
+    changed.choice[predictor] = old;
+  });
+  if (!better) return false;
+  best = from;
+  best.choice[best_change.first] = best_change.second;
+  return true;
+}
+
+void Incumbents::descend(search::Choice at) {
+  double score = scorer_(at.response, at.choice).score;
+  search::Choice next;
+  while (!expired_() && look(at, next, score)) at = next;
+}
+
+void Incumbents::close(std::size_t most_entries) {
+  for (std::size_t looks = 0; looks < most_entries && !expired_();) {
+    const std::vector<Listed> entries = list_->best(kClosedEntries);
+    bool any = false;
+    for (const Listed& entry : entries) {
+      if (looks >= most_entries || expired_()) return;
+      if (looked_at_.contains({entry.choice.response, entry.choice.choice})) continue;
+      any = true;
+      ++looks;
+      search::Choice unused;
+      double score = entry.score;
+      look(entry.choice, unused, score);
+    }
+    if (!any) return;
+  }
+}
+
+void Incumbents::start() {
+  for (const std::size_t response : scope_->responses) {
+    search::Choice smallest{response, {}};
+    search::Choice large{response, {}};
+    const auto& products = root_->products(response);
+    for (std::size_t j = 0; j < scope_->actions.size(); ++j) {
+      const Actions actions = scope_->actions[j];
+      if (actions == 0) return;
+      smallest.choice.push_back(static_cast<std::uint16_t>(std::countr_zero(actions)));
+      std::uint16_t strongest = smallest.choice.back();
+      double most = -1.0;
+      for (std::size_t f = 0; f < root_->space().predictors[j].forms.size(); ++f) {
+        if ((actions >> (f + 1) & 1) == 0) continue;
+        const double product =
+            std::abs(products(static_cast<Eigen::Index>(root_->space().predictors[j].forms[f].first_column)));
+        if (product <= most) continue;
+        most = product;
+        strongest = static_cast<std::uint16_t>(f + 1);
+      }
+      large.choice.push_back(strongest);
+    }
+    for (std::size_t j = 0; j < large.choice.size() && n_terms(smallest.choice) < scope_->fewest_terms; ++j)
+      smallest.choice[j] = large.choice[j];
+    for (search::Choice& begin : std::array{smallest, large}) {
+      offer(begin);
+      const std::size_t terms = n_terms(begin.choice);
+      if (terms <= scope_->most_terms && terms <= kLargestStart) descend(begin);
+    }
+  }
+  close(10 * kClosedEntries);
+}
+
+void Incumbents::improve(const search::Choice& candidate, bool force) {
+  if (!offer(candidate) && !force) return;
+  descend(candidate);
+  close(kClosedAboutNode);
+}
+
+}  // namespace formsieve::proof

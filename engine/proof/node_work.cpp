@@ -1,0 +1,158 @@
+#include "proof/node_work.hpp"
+
+#include "proof/prices.hpp"
+#include "proof/refinement.hpp"
+#include "proof/settle.hpp"
+
+#include <algorithm>
+#include <cmath>
+
+namespace formsieve::proof {
+
+namespace {
+
+/// The range of columns is split where one price loses more of a score than this, into at most so many parts.
+constexpr double kLossOfSplit = 0.7;
+constexpr std::size_t kMostParts = 8;
+/// How fast an action's weight falls with its bound's distance from the node's, in units of the gap: the predictor
+/// branched on has the smallest sum of weights.
+constexpr double kBranchDecay = 4.0;
+
+/// True when a form went.
+bool drop_inseparable(const Reduced& problem, Node& node) {
+  bool dropped = false;
+  for (const OpenPredictor& predictor : problem.open) {
+    for (const OpenForm& form : predictor.forms) {
+      if (form.separable) continue;
+      node.actions[predictor.predictor] &= ~(Actions{2} << form.form);
+      dropped = true;
+    }
+  }
+  return dropped;
+}
+
+Actions bit_of(const OpenPredictor& predictor, std::size_t action) {
+  return action == predictor.forms.size() ? Actions{1} : Actions{2} << predictor.forms[action].form;
+}
+
+/// The candidate of the actions with the lowest bounds.
+search::Choice round_off(const Reduced& problem, const Bound& bound) {
+  search::Choice choice{problem.response, problem.fixed};
+  for (std::size_t j = 0; j < problem.open.size(); ++j) {
+    const std::vector<double>& action = bound.action[j];
+    const auto best = static_cast<std::size_t>(std::min_element(action.begin(), action.end()) - action.begin());
+    if (best == problem.open[j].forms.size()) continue;
+    choice.choice[problem.open[j].predictor] = static_cast<std::uint16_t>(problem.open[j].forms[best].form + 1);
+  }
+  return choice;
+}
+
+/// Parts of a node by number of columns; empty when a split is not worth while.
+std::vector<Node> split_columns(const Frozen& frozen, const Node& node) {
+  const std::size_t width = node.most_columns - node.fewest_columns;
+  const double loss = Prices(frozen, node.response).loss(node.fewest_columns, node.most_columns);
+  if (width < 2 || !(loss > kLossOfSplit)) return {};
+  const double wanted = std::ceil(std::sqrt(loss / kLossOfSplit));
+  const std::size_t parts =
+      std::min({static_cast<std::size_t>(std::clamp(wanted, 2.0, double{kMostParts})), width + 1});
+  std::vector<Node> children;
+  std::size_t first = node.fewest_columns;
+  for (std::size_t i = 0; i < parts; ++i) {
+    Node child = node;
+    child.fewest_columns = first;
+    child.most_columns = node.fewest_columns + (width + 1) * (i + 1) / parts - 1;
+    child.new_range = true;
+    ++child.depth;
+    first = child.most_columns + 1;
+    children.push_back(std::move(child));
+  }
+  return children;
+}
+
+/// The open predictor to branch on: few actions that stay far below the threshold.
+std::size_t branching_predictor(const Frozen& frozen, const Reduced& problem, const Node& node, const Bound& bound) {
+  double gap = frozen.threshold - node.lower;
+  if (!std::isfinite(gap)) gap = 1.0;
+  gap = std::max(gap, 1e-6);
+  std::size_t chosen = 0;
+  double smallest = std::numeric_limits<double>::infinity();
+  for (std::size_t j = 0; j < problem.open.size(); ++j) {
+    double sum = 0.0;
+    for (std::size_t a = 0; a < bound.action[j].size(); ++a)
+      if ((node.actions[problem.open[j].predictor] & bit_of(problem.open[j], a)) != 0 &&
+          std::isfinite(bound.action[j][a]))
+        sum += std::exp(-kBranchDecay * (bound.action[j][a] - node.lower) / gap);
+    if (sum >= smallest) continue;
+    smallest = sum;
+    chosen = j;
+  }
+  return chosen;
+}
+
+/// Without a bound: the predictor with the form that lowers the RSS most.
+std::size_t strongest_predictor(const Reduced& problem) {
+  std::size_t chosen = 0;
+  double most = -1.0;
+  for (std::size_t j = 0; j < problem.open.size(); ++j) {
+    for (const OpenForm& form : problem.open[j].forms) {
+      const double diagonal = problem.m(form.first, form.first);
+      const double gain = diagonal > 0.0 ? std::pow(problem.b(form.first), 2) / diagonal : 0.0;
+      if (gain <= most) continue;
+      most = gain;
+      chosen = j;
+    }
+  }
+  return chosen;
+}
+
+std::vector<Node> branch(const Frozen& frozen, const Reduced& problem, const Node& node, const Bound& bound) {
+  const bool bounded = !bound.action.empty();
+  if (bounded)
+    if (std::vector<Node> parts = split_columns(frozen, node); !parts.empty()) return parts;
+  const std::size_t j = bounded ? branching_predictor(frozen, problem, node, bound) : strongest_predictor(problem);
+  const OpenPredictor& predictor = problem.open[j];
+  std::vector<Node> children;
+  for (std::size_t a = 0; a <= predictor.forms.size(); ++a) {
+    const Actions bit = bit_of(predictor, a);
+    if ((node.actions[predictor.predictor] & bit) == 0) continue;
+    Node child = node;
+    child.actions[predictor.predictor] = bit;
+    if (bounded) child.lower = std::max(child.lower, bound.action[j][a]);
+    ++child.depth;
+    children.push_back(std::move(child));
+  }
+  return children;
+}
+
+}  // namespace
+
+NodeResult work_on(const Frozen& frozen, Node node) {
+  NodeResult result;
+  if (node.lower > frozen.threshold + kTolerance) return result;
+  while (settle(*frozen.root, *frozen.scope, node)) {
+    const Reduced problem = reduce(*frozen.root, node.response, node.actions);
+    const auto order = static_cast<double>(problem.m.rows());
+    result.work += order * order * static_cast<double>(problem.fixed_columns + 1);
+    if (!problem.separable) return result;
+    if (drop_inseparable(problem, node)) continue;
+    if (count_candidates(problem, frozen.effort.enumerate_at) <=
+        std::max<std::uint64_t>(frozen.effort.enumerate_at, 1)) {
+      const std::uint64_t met =
+          enumerate(*frozen.root, problem, range_of(frozen, node), frozen.threshold, result.found);
+      result.work += order * order * static_cast<double>(met);
+      return result;
+    }
+    Refined refined = refine_by_sweeps(frozen, problem, node, result.work);
+    if (refined.standing == Standing::cut) return result;
+    if (!refined.bound.action.empty()) result.rounded.push_back(round_off(problem, refined.bound));
+    if (refined.standing == Standing::changed) continue;
+    if (refined.standing == Standing::expired)
+      result.unfinished = std::move(node);
+    else
+      result.children = branch(frozen, problem, node, refined.bound);
+    return result;
+  }
+  return result;
+}
+
+}  // namespace formsieve::proof

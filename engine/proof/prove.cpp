@@ -1,0 +1,149 @@
+#include "proof/prove.hpp"
+
+#include "base/parallel.hpp"
+#include "proof/incumbents.hpp"
+#include "proof/node_work.hpp"
+#include "proof/open_nodes.hpp"
+#include "proof/scope.hpp"
+#include "proof/shortlist.hpp"
+
+#include <algorithm>
+#include <chrono>
+#include <cmath>
+
+namespace formsieve::proof {
+
+namespace {
+
+constexpr double kInfinity = std::numeric_limits<double>::infinity();
+
+class Tree {
+ public:
+  Tree(const RootGram& root, const Restriction& restriction, const Limits& limits, const Effort& effort)
+      : root_(root),
+        scope_(scope_of(root, restriction)),
+        limits_(limits),
+        effort_(effort),
+        begun_(std::chrono::steady_clock::now()),
+        list_(limits.keep, limits.within),
+        incumbents_(root, scope_, list_, [this] { return expired(); }) {}
+
+  Proof run(std::span<const search::Choice> hints) {
+    begin();
+    for (const search::Choice& hint : hints) incumbents_.improve(hint, false);
+    if (effort_.incumbents) incumbents_.start();
+    report();
+    while (!open_.empty() && !expired() && nodes_ < limits_.nodes) {
+      open_.cut_above(list_.threshold() + kTolerance);
+      work_on_batch();
+      report();
+    }
+    open_.cut_above(list_.threshold() + kTolerance);
+    return result();
+  }
+
+ private:
+  bool expired() const {
+    if (limits_.stop.stop_requested()) return true;
+    if (!std::isfinite(limits_.seconds)) return false;
+    const std::chrono::duration<double> passed = std::chrono::steady_clock::now() - begun_;
+    return passed.count() >= limits_.seconds;
+  }
+
+  void begin() {
+    std::size_t n_columns = 0;
+    for (const std::size_t response : scope_.responses) {
+      Node node;
+      node.response = response;
+      node.most_columns = scope_.most_columns;
+      node.actions = scope_.actions;
+      open_.push(std::move(node));
+    }
+    for (const search::PredictorChoices& predictor : root_.space().predictors)
+      for (const search::FormBlock& form : predictor.forms) n_columns += form.n_columns;
+    open_.limit(effort_.most_open_bytes, root_.n_predictors(), n_columns);
+  }
+
+  Frozen freeze() const {
+    Frozen frozen;
+    frozen.root = &root_;
+    frozen.scope = &scope_;
+    frozen.effort = effort_;
+    frozen.threshold = list_.threshold();
+    if (const Listed* best = list_.best()) {
+      frozen.best_score = best->score;
+      frozen.best_columns = best->n_columns;
+    }
+    frozen.expired = [this] { return expired(); };
+    return frozen;
+  }
+
+  /// The threshold is that of the batch's beginning and results are taken in the batch's order: the tree is the same
+  /// for any number of threads.
+  void work_on_batch() {
+    std::vector<Node> batch = open_.pop(effort_.batch);
+    if (batch.empty()) return;
+    const Frozen frozen = freeze();
+    std::vector<NodeResult> results(batch.size());
+    base::parallel_for(batch.size(), limits_.threads,
+                       [&](std::size_t i) { results[i] = work_on(frozen, std::move(batch[i])); });
+    for (NodeResult& result : results) take(result);
+    nodes_ += results.size();
+  }
+
+  void take(NodeResult& result) {
+    for (const Found& found : result.found) list_.offer(found.choice, found.score);
+    if (effort_.incumbents)
+      for (const search::Choice& rounded : result.rounded) incumbents_.improve(rounded, false);
+    for (Node& child : result.children) open_.push(std::move(child));
+    if (result.unfinished) open_.push(std::move(*result.unfinished));
+    work_ += result.work;
+  }
+
+  void report() const {
+    if (!limits_.progress) return;
+    Progress progress;
+    progress.nodes = nodes_;
+    progress.open_nodes = open_.size();
+    if (const Listed* best = list_.best()) progress.best_score = best->score;
+    progress.lower_bound = std::min(list_.threshold(), open_.lower());
+    limits_.progress(progress);
+  }
+
+  Proof result() const {
+    Proof proof;
+    proof.best = list_.entries();
+    proof.proved = open_.empty();
+    proof.full = list_.full();
+    proof.nodes = nodes_;
+    proof.lower_bound = std::min(list_.threshold(), open_.lower());
+    for (std::size_t r = 0; r < root_.space().n_responses; ++r)
+      proof.response_lower_bound.push_back(std::min(list_.threshold(), open_.lower(r)));
+    return proof;
+  }
+
+  const RootGram& root_;
+  Scope scope_;
+  const Limits& limits_;
+  Effort effort_;
+  std::chrono::steady_clock::time_point begun_;
+  Shortlist list_;
+  Incumbents incumbents_;
+  OpenNodes open_;
+  std::uint64_t nodes_ = 0;
+  double work_ = 0.0;
+};
+
+}  // namespace
+
+Proof prove(const RootGram& root, const Restriction& restriction, const Limits& limits,
+            std::span<const search::Choice> hints, const Effort& effort) {
+  return Tree(root, restriction, limits, effort).run(hints);
+}
+
+Proof prove(const RootGram& root, const Restriction& restriction, const Limits& limits,
+            std::span<const search::Choice> hints) {
+  return prove(root, restriction, limits, hints, Effort{});
+}
+
+}  // namespace formsieve::proof

@@ -1,0 +1,34 @@
+// The bound of a node made as good as is worth while, by sweeps.
+#pragma once
+
+#include "proof/node_work.hpp"
+
+namespace formsieve::proof {
+
+/// How a node stands after its bound was improved.
+enum class Standing {
+  cut,      ///< no candidate of it lies under the threshold
+  changed,  ///< actions were struck off: it is a smaller problem now
+  open,     ///< to be branched on
+  expired,  ///< time ran out
+};
+
+struct Refined {
+  Standing standing = Standing::open;
+  Bound bound;  ///< the best; empty `action` where there was no D
+};
+
+/// Improves the bound of `node`; narrows its actions and its range of columns, raises `lower`, and leaves in it what
+/// the children inherit. `work` counts operations.
+Refined refine_by_sweeps(const Frozen& frozen, const Reduced& problem, Node& node, double& work);
+
+/// Narrows a node by a bound. What is decided stays valid whatever comes after.
+struct Narrowed {
+  bool cut = false;
+  std::size_t n_struck = 0;  ///< actions
+};
+Narrowed narrow(const Frozen& frozen, const Reduced& problem, const Bound& bound, Node& node);
+
+CountRange range_of(const Frozen& frozen, const Node& node);
+
+}  // namespace formsieve::proof

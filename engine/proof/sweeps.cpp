@@ -1,0 +1,176 @@
+#include "proof/block_sweep.hpp"
+#include "proof/coordinate_descent.hpp"
+#include "proof/first_blocks.hpp"
+#include "proof/prices.hpp"
+#include "proof/refinement.hpp"
+
+#include <Eigen/Cholesky>
+
+#include <algorithm>
+#include <cmath>
+#include <optional>
+
+namespace formsieve::proof {
+
+namespace {
+
+constexpr double kInfinity = std::numeric_limits<double>::infinity();
+/// The barrier's weight μ in units of λ over the number of columns: large first at a root, then small.
+constexpr double kFirstBarrier = 1.0;
+constexpr double kLastBarrier = 0.1;
+constexpr double kBarrierStep = 0.3;
+/// A pass that closes less than this share of the gap that remains counts as idle; so many idle ones end it.
+constexpr double kSmallGain_root = 0.01;
+constexpr double kSmallGain_node = 0.03;
+constexpr std::size_t kMostIdle = 2;
+constexpr double kSmallestGap = 0.05;  ///< of a score
+constexpr std::size_t kRootDescent = 200;
+constexpr std::size_t kNodeDescent = 60;
+
+/// Coefficients of the given columns alone.
+void fit_columns(const Reduced& problem, const std::vector<Eigen::Index>& columns, Eigen::VectorXd& v) {
+  if (columns.empty()) return;
+  const Eigen::LLT<Eigen::MatrixXd> factor(problem.m(columns, columns));
+  if (factor.info() == Eigen::Success) v(columns) = Eigen::VectorXd(factor.solve(Eigen::VectorXd(problem.b(columns))));
+}
+
+class Sweeps {
+ public:
+  Sweeps(const Frozen& frozen, const Reduced& problem, Node& node, double& work)
+      : frozen_(frozen), problem_(problem), node_(node), work_(work), prices_(frozen, node.response), sweep_(problem) {}
+
+  Refined run() {
+    Refined refined;
+    if (!begin()) return refined;
+    const std::size_t most = root_ ? frozen_.effort.root_sweeps : frozen_.effort.node_sweeps;
+    for (std::size_t pass = 0;; ++pass) {
+      const Narrowed narrowed = evaluate(refined.bound);
+      if (narrowed.cut) return {Standing::cut, {}};
+      if (narrowed.n_struck > 0) return leave(Standing::changed, refined);
+      if (frozen_.expired && frozen_.expired()) return leave(Standing::expired, refined);
+      if (pass >= most || finished()) break;
+      if (!sweep()) break;
+    }
+    return leave(Standing::open, refined);
+  }
+
+ private:
+  bool begin() {
+    const auto order = static_cast<double>(problem_.m.rows());
+    root_ = node_.depth == 0;
+    if (node_.inherited) {
+      point_ = unpack(*node_.inherited, problem_);
+      work_ += order * order * order;
+      if (!shrink_until_certified()) return false;
+      point_.lambda = prices_.within(node_.new_range ? 0.0 : point_.lambda, node_.fewest_columns, node_.most_columns);
+      barrier_ = kLastBarrier;
+    } else {
+      work_ += 6.0 * order * order * order;
+      if (!first_blocks(problem_, point_.d) || !z_.certify(problem_, point_.d)) return false;
+      point_.lambda = prices_.at_best();
+      point_.v.setZero(problem_.b.size());
+      barrier_ = root_ ? kFirstBarrier : kLastBarrier;
+      fit_strongest();
+    }
+    return true;
+  }
+
+  bool shrink_until_certified() {
+    constexpr int kTrials = 60;
+    constexpr double kShrink = 0.9;
+    for (int trial = 0; trial < kTrials; ++trial, point_.d *= kShrink)
+      if (z_.certify(problem_, point_.d)) return true;
+    return first_blocks(problem_, point_.d) && z_.certify(problem_, point_.d);
+  }
+
+  /// A v to begin with: the form of every predictor that goes best with the response, fitted together.
+  void fit_strongest() {
+    std::vector<Eigen::Index> columns;
+    for (const OpenPredictor& predictor : problem_.open) {
+      const OpenForm* strongest = nullptr;
+      double most = prices_.at_best();
+      for (const OpenForm& form : predictor.forms) {
+        const double gain = problem_.b.segment(form.first, form.n_columns).squaredNorm();
+        if (gain <= most) continue;
+        most = gain;
+        strongest = &form;
+      }
+      if (strongest == nullptr) continue;
+      for (Eigen::Index c = 0; c < strongest->n_columns; ++c) columns.push_back(strongest->first + c);
+    }
+    fit_columns(problem_, columns, point_.v);
+  }
+
+  Narrowed evaluate(Bound& best) {
+    const std::size_t sweeps =
+        coordinate_descent(problem_, z_.z(), point_.d, point_.lambda, root_ ? kRootDescent : kNodeDescent, point_.v);
+    const auto order = static_cast<double>(problem_.m.rows());
+    work_ += 2.0 * static_cast<double>(sweeps + 1) * order * order;
+    const BoundEvaluator evaluator(*frozen_.root, problem_, range_of(frozen_, node_));
+    Bound bound = evaluator(dual_value(problem_, z_, point_.d, point_.v), frozen_.threshold);
+    const Narrowed narrowed = narrow(frozen_, problem_, bound, node_);
+    note_gain(bound.lower);
+    if (best.action.empty() || bound.lower >= best_lower_) {
+      best_lower_ = bound.lower;
+      best_point_ = point_;
+      best = std::move(bound);
+    }
+    return narrowed;
+  }
+
+  void note_gain(double lower) {
+    const double gap = std::max(frozen_.threshold - reference_, kSmallestGap);
+    const double share = root_ ? kSmallGain_root : kSmallGain_node;
+    const bool gained = !std::isfinite(reference_) || (std::isfinite(gap) && lower > reference_ + share * gap);
+    idle_ = gained ? 0 : idle_ + 1;
+    if (gained) reference_ = lower;
+  }
+
+  bool finished() {
+    if (root_ && idle_ >= kMostIdle && barrier_ > kLastBarrier * 1.01) {
+      barrier_ = std::max(kLastBarrier, barrier_ * kBarrierStep);
+      idle_ = 0;
+    }
+    return idle_ >= kMostIdle;
+  }
+
+  bool sweep() {
+    const auto order = static_cast<double>(problem_.m.rows());
+    work_ += 4.0 * order * order * order;
+    const double mu = barrier_ * point_.lambda / order;
+    const BlockSweep::Outcome outcome = sweep_(point_.v, point_.lambda, mu, point_.d, z_);
+    if (outcome == BlockSweep::Outcome::reconditioned) {
+      // children must not inherit the badly conditioned D, though its bound may be better for now
+      best_lower_ = reference_ = -kInfinity;
+      idle_ = 0;
+    }
+    return outcome != BlockSweep::Outcome::stuck;
+  }
+
+  Refined leave(Standing standing, Refined& refined) {
+    node_.inherited = std::make_shared<const Inherited>(pack(problem_, best_point_, best_point_.v));
+    node_.new_range = false;
+    return {standing, std::move(refined.bound)};
+  }
+
+  const Frozen& frozen_;
+  const Reduced& problem_;
+  Node& node_;
+  double& work_;
+  Prices prices_;
+  BlockSweep sweep_;
+  CertifiedDifference z_;
+  DualPoint point_, best_point_;
+  bool root_ = false;
+  double barrier_ = kLastBarrier;
+  double best_lower_ = -kInfinity, reference_ = -kInfinity;
+  std::size_t idle_ = 0;
+};
+
+}  // namespace
+
+Refined refine_by_sweeps(const Frozen& frozen, const Reduced& problem, Node& node, double& work) {
+  return Sweeps(frozen, problem, node, work).run();
+}
+
+}  // namespace formsieve::proof
