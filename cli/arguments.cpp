@@ -120,6 +120,9 @@ void add_plan_options(CLI::App& command, PlanArguments& arguments) {
       ->check(whole_number(0, std::numeric_limits<std::int64_t>::max(), "--seed 7"));
   add_single(command, "--max-terms", "N", arguments.max_terms, "at most so many predictors in a candidate")
       ->check(whole_number(1, kMost32, "--max-terms 6"));
+  add_single(command, "--strategy", "WAY", arguments.strategy,
+             "every candidate, proved, guided; auto (default) takes what fits the budget")
+      ->check(one_of({"auto", "every", "proved", "guided"}));
   add_single(command, "--by", "CRITERION", arguments.by, "rank by cv_rmse (default), aic, aicc or bic")
       ->check(one_of({"cv_rmse", "aic", "aicc", "bic"}));
   add_single(command, "--shortlist", "N", arguments.shortlist, "candidates to list; default 25")
@@ -185,6 +188,10 @@ void apply(const PlanArguments& arguments, run::Plan& plan) {
   if (arguments.by) {
     plan.rank.by = *arguments.by;
     plan.where["rank.by"] = "--by";
+  }
+  if (arguments.strategy) {
+    plan.search.strategy = *arguments.strategy;
+    plan.where["search.strategy"] = "--strategy";
   }
   if (arguments.budget) {
     plan.search.budget_seconds = run::parse_duration(*arguments.budget).value();  // checked while parsing

@@ -28,7 +28,7 @@ struct TableArguments {
 
 /// What a search may be told without a plan, or in place of the plan's own keys.
 struct PlanArguments {
-  std::optional<std::string> response, weight, group, order, fold, by, budget;
+  std::optional<std::string> response, weight, group, order, fold, by, budget, strategy;
   std::vector<std::string> ignore;
   std::optional<std::uint64_t> folds, repeats, seed, max_terms, shortlist;
 };

@@ -2,6 +2,7 @@
 
 #include "numbers.hpp"
 #include "page.hpp"
+#include "proof_view.hpp"
 #include "summary_view.hpp"
 #include "text_table.hpp"
 #include "words.hpp"
@@ -215,6 +216,7 @@ std::string setting(const Shortlist& shortlist) {
 std::vector<std::string> extent(const Shortlist& shortlist) {
   const judge::Coverage& space = shortlist.space;
   std::vector<std::string> said;
+  if (!space.strategy_why.empty() && space.strategy != "every") said.push_back("Strategy: " + space.strategy_why + ".");
   if (!shortlist.data.dropped.empty()) {
     std::vector<std::string> parts;
     for (const auto& [column, rows] : shortlist.data.dropped) parts.push_back(grouped(rows) + " for " + column);
@@ -245,6 +247,16 @@ std::string error_with_se(const judge::CrossValidation& cv, int decimals) {
   return cv.rmse_se ? rmse + " ± " + with_decimals(*cv.rmse_se, decimals) : rmse;
 }
 
+std::string profile_page(const judge::Shortlist& shortlist, const Terminal& terminal) {
+  Page page(terminal);
+  page.prose(setting(shortlist));
+  if (shortlist.summary.empty() && shortlist.proof.empty())
+    page.prose("This run holds no profile of the space: it was written by an earlier version.");
+  if (!shortlist.candidates.empty()) summary_tables(page, shortlist, *recommended(shortlist), true);
+  proof_tables(page, shortlist, true);
+  return page.text();
+}
+
 std::string shortlist_page(const judge::Shortlist& shortlist, const std::string& run_folder, const Terminal& terminal) {
   Page page(terminal);
   page.prose(setting(shortlist));
@@ -255,6 +267,7 @@ std::string shortlist_page(const judge::Shortlist& shortlist, const std::string&
     equation_of(page, *recommended(shortlist));
     named_lines(page, shortlist);
     summary_tables(page, shortlist, *recommended(shortlist));
+    proof_tables(page, shortlist, false);
   }
   sentences(page, "What the ranking shows", shortlist.remarks);
   sentences(page, "How far the search went", extent(shortlist));

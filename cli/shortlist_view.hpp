@@ -15,4 +15,8 @@ std::string shortlist_page(const judge::Shortlist& shortlist, const std::string&
 /// CV RMSE with its standard error, the same decimals throughout one table ("12,340 ± 610").
 std::string error_with_se(const judge::CrossValidation& cv, int decimals);
 
+/// What each form, each absence and each number of terms costs, of every predictor: the tables of the shortlist page
+/// uncut.
+std::string profile_page(const judge::Shortlist& shortlist, const Terminal& terminal);
+
 }  // namespace formsieve::cli

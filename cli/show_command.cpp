@@ -22,6 +22,7 @@ namespace {
 struct ShowArguments {
   std::string run_folder;
   std::optional<std::string> rank;
+  bool profile = false;
   CommonArguments common;
 };
 
@@ -74,6 +75,8 @@ int show_candidate(judge::Shortlist shortlist, const ShowArguments& arguments) {
 int run_show(const ShowArguments& arguments) {
   const Result<judge::Shortlist> shortlist = pipeline::open_run(arguments.run_folder);
   if (!shortlist) return refused(shortlist.error(), {}, true);
+  if (arguments.profile && !arguments.common.json)
+    return write_result(profile_page(*shortlist, look_at(kStandardOutput)));
   if (arguments.rank) return show_candidate(*shortlist, arguments);
   if (arguments.common.json) return write_result(report::shortlist_json(*shortlist));
   return write_result(shortlist_page(*shortlist, arguments.run_folder, look_at(kStandardOutput)));
@@ -85,12 +88,14 @@ void add_show_command(CLI::App& program, Action& chosen) {
   const auto arguments = std::make_shared<ShowArguments>();
   CLI::App* command = program.add_subcommand("show", "prints the shortlist of a run, or one candidate in full");
   const auto help = std::make_shared<HelpPage>();
-  help->usage = "show RUN [RANK]";
+  help->usage = "show RUN [RANK | --profile]";
   help->example = {"formsieve show coldstores.run", "formsieve show coldstores.run recommended"};
   command->formatter(help);
   command->set_help_flag("--help,-h", "this page");
   command->add_option("RUN", arguments->run_folder, "the run folder of a search")->required();
   command->add_option("RANK", arguments->rank, "a rank, or a named line: best, recommended, simplest, 'lowest AIC'");
+  command->add_flag("--profile", arguments->profile,
+                    "what each form, each absence and each number of terms costs, of every predictor");
   add_common_options(*command, arguments->common);
   command->get_option("--threads")->group("");  // taken for uniformity; nothing here could use a second thread
   command->callback([arguments, &chosen] { chosen = [arguments] { return run_show(*arguments); }; });

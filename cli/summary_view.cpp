@@ -33,13 +33,6 @@ std::string loss_words(const std::optional<double>& loss) { return loss ? "+" + 
 
 std::string share_words(const std::optional<double>& share) { return share ? with_decimals(*share, 2) : "undefined"; }
 
-// A form with x for the column, so that one table can speak of many columns: "ln(x)", "√(101 − x)".
-std::string form_words(const std::optional<forms::Form>& form) {
-  if (!form) return "left out";
-  if (form->kind == forms::Kind::levels) return "levels";
-  return *form == forms::Form{} ? "untransformed" : forms::term_name(*form, "x");
-}
-
 double cost(const Reach& reach) { return reach.cv_loss_rel.value_or(std::numeric_limits<double>::infinity()); }
 
 // One predictor under one response form.
@@ -55,6 +48,7 @@ struct View {
   const Shortlist& shortlist;
   std::size_t response = 0;
   std::string criterion;
+  bool whole = false;  // nothing is cut to a screen
 
   const Reach& reach(const judge::Standing& standing) const { return standing.by_response[response]; }
   double cost_of(const FormStanding* choice) const {
@@ -97,10 +91,11 @@ std::string left_out_words(const View& view, const Line& line) {
 std::string others_words(const View& view, const Line& line) {
   std::vector<std::string> parts;
   // One more is named where the count would stand for it alone.
-  const std::size_t shown = line.others.size() <= kMostOtherForms + 1 ? line.others.size() : kMostOtherForms;
+  const std::size_t shown =
+      view.whole || line.others.size() <= kMostOtherForms + 1 ? line.others.size() : kMostOtherForms;
   for (std::size_t i = 0; i < shown; ++i) {
     const FormStanding& other = *line.others[i];
-    parts.push_back(held_together(form_words(other.form) + " " + loss_words(view.reach(other.standing).cv_loss_rel)));
+    parts.push_back(held_together(form_of_x(other.form) + " " + loss_words(view.reach(other.standing).cv_loss_rel)));
   }
   if (shown < line.others.size()) {
     const std::string dearest = loss_words(view.reach(line.others.back()->standing).cv_loss_rel);
@@ -121,7 +116,7 @@ TextTable form_table(const View& view, const std::vector<Line>& lines) {
   columns.push_back({"other forms", false, kLeastOthers, 2});
   TextTable table(columns);
   for (const Line& line : lines) {
-    std::vector<Cell> cells = {{line.predictor->column}, {form_words(line.best->form)}, {left_out_words(view, line)}};
+    std::vector<Cell> cells = {{line.predictor->column}, {form_of_x(line.best->form)}, {left_out_words(view, line)}};
     if (weights) cells.push_back({share_words(line.predictor->weight_share)});
     cells.push_back({others_words(view, line)});
     table.add_row(std::move(cells));
@@ -148,7 +143,7 @@ std::string weight_words(const View& view) {
 
 // Cuts the lines to those that a screen has room for; what the others are, in words.
 std::string cut_to_dearest(std::vector<Line>& lines, const View& view) {
-  if (lines.size() <= kMostPredictors + 1) return {};
+  if (view.whole || lines.size() <= kMostPredictors + 1) return {};
   const std::size_t hidden = lines.size() - kMostPredictors;
   const double dearest = view.cost_of(lines[kMostPredictors].left_out);
   lines.resize(kMostPredictors);
@@ -183,7 +178,7 @@ std::vector<const TermsStanding*> numbers_of_terms(const View& view) {
     if (cost(view.reach(terms.standing)) < cost(view.reach(all[best_cv]->standing))) best_cv = all.size() - 1;
     if (difference(&terms) < difference(all[best_criterion])) best_criterion = all.size() - 1;
   }
-  if (all.size() <= kMostNumbersOfTerms) return all;
+  if (view.whole || all.size() <= kMostNumbersOfTerms) return all;
   const std::size_t end = std::min(all.size(), std::max(best_cv, best_criterion) + 1 + kBeyondBest);
   const std::size_t first = end > kMostNumbersOfTerms ? end - kMostNumbersOfTerms : 0;
   return {all.begin() + static_cast<std::ptrdiff_t>(first), all.begin() + static_cast<std::ptrdiff_t>(end)};
@@ -216,10 +211,10 @@ std::optional<std::size_t> response_of(const Shortlist& shortlist, const judge::
 
 }  // namespace
 
-void summary_tables(Page& page, const Shortlist& shortlist, const judge::Candidate& chosen) {
+void summary_tables(Page& page, const Shortlist& shortlist, const judge::Candidate& chosen, bool whole) {
   const std::optional<std::size_t> response = response_of(shortlist, chosen);
   if (shortlist.summary.empty() || !response) return;
-  const View view{shortlist, *response, criterion_words(shortlist.summary.criterion)};
+  const View view{shortlist, *response, criterion_words(shortlist.summary.criterion), whole};
   form_costs(page, view);
   error_by_terms(page, view);
 }

@@ -8,6 +8,7 @@
 namespace formsieve::cli {
 
 /// Both tables and what their figures are, for the response form of `chosen`. Nothing when the run holds no summary.
-void summary_tables(Page& page, const judge::Shortlist& shortlist, const judge::Candidate& chosen);
+/// `whole`: no table is cut to a screen.
+void summary_tables(Page& page, const judge::Shortlist& shortlist, const judge::Candidate& chosen, bool whole = false);
 
 }  // namespace formsieve::cli

@@ -95,6 +95,12 @@ std::string terms_difference(const judge::Candidate& candidate, const judge::Can
   return joined(parts, "; ");
 }
 
+std::string form_of_x(const std::optional<forms::Form>& form) {
+  if (!form) return "left out";
+  if (form->kind == forms::Kind::levels) return "levels";
+  return *form == forms::Form{} ? "untransformed" : forms::term_name(*form, "x");
+}
+
 std::string response_label(const judge::Candidate& candidate) { return forms::term_name(candidate.response, "y"); }
 
 std::string shell_word(const std::string& word) {

@@ -5,6 +5,7 @@
 #include <formsieve/judge.hpp>
 #include <formsieve/survey.hpp>
 
+#include <optional>
 #include <string>
 #include <string_view>
 #include <vector>
@@ -32,6 +33,10 @@ std::string terms_sum(const judge::Candidate& candidate);
 /// The terms as what differs from another candidate's: "without rain, with √(area) for ln(area)"; empty when nothing
 /// differs.
 std::string terms_difference(const judge::Candidate& candidate, const judge::Candidate& reference);
+
+/// A form with x for the column, so that one table can speak of many columns: "ln(x)", "√(101 − x)", "untransformed",
+/// "levels"; "left out" for none.
+std::string form_of_x(const std::optional<forms::Form>& form);
 
 /// The form of a response around "y", for columns too narrow for its name.
 std::string response_label(const judge::Candidate& candidate);

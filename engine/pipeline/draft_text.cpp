@@ -238,7 +238,8 @@ void write_max_terms(PlanText& text, const run::Plan& plan, const DraftFindings&
 void write_search(PlanText& text, const run::Plan& plan, const DraftFindings& findings) {
   const run::Plan::Search& search = plan.search;
   text.table("search");
-  text.set("strategy", toml_string(search.strategy), "auto, or every: each candidate is scored");
+  text.set("strategy", toml_string(search.strategy),
+           "auto; every: each candidate is scored; proved: the lowest AIC with proof; guided: local search");
   write_max_terms(text, plan, findings);
   text.set("within", run::number_text(search.within), "AIC units from the best that count as near-best");
   text.set("folds", std::to_string(search.folds), "parts of the cross-validation");

@@ -34,9 +34,6 @@ constexpr double kSecondsPerEntry = 1e-6;
 /// Moves of a descent: about as many as good candidates have terms, each looking at every form.
 constexpr double kDescentMoves = 10.0;
 
-/// The largest space that can be numbered in 64 bits, the limit of strategy "every".
-const search::BigCount kMostCandidates = search::BigCount(1) << 62;
-
 /// A candidate of about half the predictors, each in its first form: what a pooled candidate costs.
 search::Choice probe(const search::Space& space) {
   search::Choice choice;

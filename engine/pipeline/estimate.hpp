@@ -10,6 +10,9 @@
 
 namespace formsieve::pipeline {
 
+/// The largest space that can be numbered in 64 bits, the limit of strategy "every".
+inline const search::BigCount kMostCandidates = search::BigCount(1) << 62;
+
 /// Seconds by calibration on this machine: a short walk over a sample of subtrees, one candidate examined, and one
 /// scored from its Gram matrices alone.
 struct Estimate {

@@ -31,6 +31,13 @@ double penalty_of(judge::Criterion criterion, std::size_t n_coefficients, std::s
 
 }  // namespace
 
+judge::Criterion criterion_of(const std::string& name) {
+  if (name == "aic") return judge::Criterion::aic;
+  if (name == "aicc") return judge::Criterion::aicc;
+  if (name == "bic") return judge::Criterion::bic;
+  return judge::Criterion::cv_rmse;
+}
+
 std::vector<double> penalties(const Prepared& prepared, judge::Criterion criterion) {
   std::vector<double> penalty;
   for (std::size_t k = 0; k <= most_columns(prepared.space); ++k)

@@ -5,9 +5,13 @@
 
 #include "pipeline/prepare.hpp"
 
+#include <string>
 #include <vector>
 
 namespace formsieve::pipeline {
+
+/// "cv_rmse", "aic", "aicc" or "bic", as a plan says it.
+judge::Criterion criterion_of(const std::string& name);
 
 /// Penalty by number of design columns without the intercept, 0 … the most that a candidate of the space can have; of
 /// AIC where the criterion is not an information criterion.

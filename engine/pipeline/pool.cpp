@@ -22,12 +22,6 @@ namespace {
 constexpr std::size_t kRescoredPerPooled = 5;
 constexpr std::size_t kFewestRescored = 5'000;
 
-std::size_t list_length(const Prepared& prepared, std::size_t pool) {
-  const auto& forms = prepared.data.response_forms;
-  if (std::all_of(forms.begin(), forms.end(), is_linear)) return pool;
-  return std::max(kFewestRescored, kRescoredPerPooled * pool);
-}
-
 /// The candidates of a response that any of the walk's lists holds, by number.
 std::vector<const search::Scored*> listed(const search::WalkResult& walked, std::size_t response) {
   std::vector<const search::Scored*> all;
@@ -117,6 +111,12 @@ std::optional<double> first_left_out(const PoolList& list, const std::set<search
 }
 
 }  // namespace
+
+std::size_t list_length(const Prepared& prepared, std::size_t pool) {
+  const auto& forms = prepared.data.response_forms;
+  if (std::all_of(forms.begin(), forms.end(), is_linear)) return pool;
+  return std::max(kFewestRescored, kRescoredPerPooled * pool);
+}
 
 std::vector<search::PoolRule> pool_rules(const Prepared& prepared, const run::Plan& plan) {
   const std::size_t keep = list_length(prepared, plan.search.pool);

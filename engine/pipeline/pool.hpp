@@ -24,6 +24,9 @@ namespace formsieve::pipeline {
 /// own, since they are then scored again in own units.
 std::vector<search::PoolRule> pool_rules(const Prepared& prepared, const run::Plan& plan);
 
+/// How long each of these lists is at most.
+std::size_t list_length(const Prepared& prepared, std::size_t pool);
+
 /// Candidates of one response form, best first by one score.
 struct PoolList {
   enum class Order { cv, criterion, pilot_weight, working_response };

@@ -1,8 +1,8 @@
 #include "pipeline/profile.hpp"
 
+#include "pipeline/rounding.hpp"
+
 #include <algorithm>
-#include <array>
-#include <charconv>
 #include <cmath>
 #include <limits>
 #include <numbers>
@@ -15,30 +15,8 @@ using judge::Criterion;
 
 constexpr double kInfinity = std::numeric_limits<double>::infinity();
 
-/// Digits that the walk's arithmetic leaves the same on every instruction set: it is exact to about 1e-12.
-constexpr int kDigits = 9;
-/// Losses are differences of such figures; beyond these decimals nobody can act on them.
-constexpr double kLossStep_rel = 1e-6;
-constexpr double kCriterionStep = 1e-4;
 /// As fine as the walk's sums of weights are (search::Summary::kNegligibleWeight).
 constexpr double kShareStep = 1e-6;
-
-/// The double nearest to the value's first digits in decimal.
-double to_digits(double value) {
-  std::array<char, 32> text{};
-  const auto written =
-      std::to_chars(text.data(), text.data() + text.size(), value, std::chars_format::scientific, kDigits - 1);
-  double rounded = value;
-  std::from_chars(text.data(), written.ptr, rounded);
-  return rounded;
-}
-
-/// Steps are powers of ten below 1; dividing by their inverse gives the double nearest to the decimal.
-double to_step(double value, double step) { return std::round(value / step) / std::round(1.0 / step); }
-
-std::optional<double> finite(double value) {
-  return std::isfinite(value) ? std::optional<double>(value) : std::nullopt;
-}
 
 /// ln Σ exp(logs).
 double log_of_sum(const std::vector<double>& logs) {

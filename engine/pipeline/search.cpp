@@ -4,6 +4,7 @@
 #include "base/parallel.hpp"
 #include "checks/checks.hpp"
 #include "judge/judge.hpp"
+#include "pipeline/beyond.hpp"
 #include "pipeline/estimate.hpp"
 #include "pipeline/examine.hpp"
 #include "pipeline/guarded.hpp"
@@ -16,6 +17,10 @@
 #include "pipeline/pool.hpp"
 #include "pipeline/prepare.hpp"
 #include "pipeline/profile.hpp"
+#include "pipeline/proof_report.hpp"
+#include "pipeline/proving.hpp"
+#include "pipeline/strategy.hpp"
+#include "search/guided.hpp"
 #include "search/walk.hpp"
 
 #include <spdlog/spdlog.h>
@@ -34,6 +39,12 @@ constexpr std::size_t kExamineChunk = 64;
 /// usable shortlist within seconds.
 constexpr std::size_t kExamineAfterStop = 256;
 
+/// Share of the budget that the proof may take where a guided search follows.
+constexpr double kShareOfProof = 0.6;
+
+/// Leading candidates of the proof that the guided search starts from.
+constexpr std::size_t kGuidedHints = 25;
+
 /// The steps of one search, in order, each reading what the steps before it left.
 class Search {
  public:
@@ -48,11 +59,17 @@ class Search {
   Status open_outputs();
   Status count_and_announce();
   Status screen();
+  void visit_every();
+  void prove();
+  void guide();
+  Beyond beyond() const;
   void examine();
   void keep_only_required();
   Status complete(std::vector<judge::Candidate>& candidates) const;
   Status rank_and_complete();
   void describe();
+  void describe_walk();
+  void describe_beyond();
   Result<SearchOutcome> write();
 
   search::WalkOptions walk_options() const;
@@ -68,6 +85,10 @@ class Search {
   std::unique_ptr<Outputs> outputs_;
   base::GramSet grams_;
   std::vector<search::PoolRule> rules_;
+  Strategy strategy_;
+  std::optional<Proved> proved_;
+  std::optional<search::GuidedResult> guided_;
+  double examine_seconds_ = 0.0;
   search::WalkResult walked_;
   std::vector<PoolList> lists_;
   std::vector<search::Scored> pool_;
@@ -76,13 +97,6 @@ class Search {
   judge::Shortlist shortlist_;
   bool examined_all_ = true;
 };
-
-judge::Criterion criterion_of(const std::string& name) {
-  if (name == "aic") return judge::Criterion::aic;
-  if (name == "aicc") return judge::Criterion::aicc;
-  if (name == "bic") return judge::Criterion::bic;
-  return judge::Criterion::cv_rmse;
-}
 
 std::string kind_words(design::FoldKind kind) {
   switch (kind) {
@@ -152,7 +166,10 @@ Status Search::count_and_announce() {
   rules_ = pool_rules(*prepared_, plan_);
   examiner_.emplace(*prepared_);
   const Estimate time = estimate(*prepared_, grams_, walk_options(), *examiner_, plan_.search.pool, gram_seconds);
-  if (auto status = check_budget(time, *prepared_, plan_); !status) return status;
+  auto strategy = choose_strategy(time, *prepared_, plan_);
+  if (!strategy) return strategy.error();
+  strategy_ = std::move(*strategy);
+  examine_seconds_ = time.examine_seconds;
 
   Announcement news;
   news.candidates = time.candidates.str();
@@ -163,18 +180,18 @@ Status Search::count_and_announce() {
   news.rows_used = prepared_->summary.rows_used;
   news.folds = prepared_->folds.count;
   news.repeats = prepared_->folds.repeats;
-  news.seconds_estimate = time.total();
+  news.seconds_estimate = strategy_.every ? time.total() : -1.0;
+  news.strategy = strategy_.why;
   news.notes = prepared_->notes;
   outputs_->log().info("{} candidates; about {} at {:.3g} candidates a second", grouped(time.candidates),
                        duration_words(time.total()), time.candidates_per_second);
+  outputs_->log().info("strategy {}: {}", strategy_.name, strategy_.why);
   shortlist_.space.candidates = news.candidates;
   if (options_.announce) options_.announce(news);
   return {};
 }
 
-Status Search::screen() {
-  meter_.begin("building Gram matrices in own units", 0.0, "rows");
-  if (auto status = add_own_units(*prepared_, grams_, options_.threads); !status) return status.error();
+void Search::visit_every() {
   meter_.begin("screening", search::BigCount(shortlist_.space.candidates).convert_to<double>(), "candidates");
   search::WalkOptions options = walk_options();
   options.stop = meter_.token();
@@ -183,10 +200,64 @@ Status Search::screen() {
   walked_ = search::walk(prepared_->space, grams_, options);
   const double seconds = meter_.seconds() - start;
   meter_.end();
+  outputs_->log().info("screened {} candidates in {:.2f} s, {} inseparable", walked_.n_scored, seconds,
+                       walked_.n_inseparable.str());
+}
+
+void Search::prove() {
+  meter_.begin("proving", 0.0, "nodes");
+  ProvingLimits limits;
+  const double left = plan_.search.budget_seconds - meter_.seconds() - examine_seconds_;
+  limits.seconds = std::max(0.0, left) * (strategy_.guides ? kShareOfProof : 1.0);
+  limits.threads = options_.threads;
+  limits.stop = meter_.token();
+  limits.progress = [this](std::uint64_t nodes) { meter_.add(nodes); };
+  const double start = meter_.seconds();
+  proved_ = prove_space(*prepared_, plan_, grams_, examiner_->likelihood_constants(), limits);
+  meter_.end();
+  outputs_->log().info("proof: {} nodes in {:.2f} s, {}, {} candidates within {}", proved_->nodes,
+                       meter_.seconds() - start, proved_->best.proved ? "proved" : "open", proved_->near.best.size(),
+                       plan_.search.within);
+}
+
+void Search::guide() {
+  search::GuidedOptions options;
+  options.keep = list_length(*prepared_, plan_.search.pool);
+  options.seed = plan_.search.seed;
+  options.threads = options_.threads;
+  options.stop = meter_.token();
+  const double until = plan_.search.budget_seconds - examine_seconds_;
+  options.enough = [this, until] { return meter_.seconds() > until; };
+  if (proved_)
+    for (std::size_t i = 0; i < std::min(kGuidedHints, proved_->best.best.size()); ++i)
+      options.hints.push_back(proved_->best.best[i].choice);
+  for (std::size_t r = 0; r < prepared_->data.response_forms.size(); ++r)
+    if (is_linear(prepared_->data.response_forms[r])) options.own_scale.push_back(r);
+  meter_.begin("guided search", static_cast<double>(options.restarts), "starts");
+  std::size_t said = 0;
+  options.progress = [this, &said](const search::GuidedProgress& progress) {
+    meter_.add(progress.n_restarts - said);
+    said = progress.n_restarts;
+  };
+  const double start = meter_.seconds();
+  guided_ = search::guided(prepared_->space, grams_, options);
+  meter_.end();
+  outputs_->log().info("guided search: {} starts, {} candidates in {:.2f} s", guided_->n_restarts, guided_->n_scored,
+                       meter_.seconds() - start);
+}
+
+Beyond Search::beyond() const { return {proved_ ? &*proved_ : nullptr, guided_ ? &*guided_ : nullptr}; }
+
+Status Search::screen() {
+  if (strategy_.proves) prove();
+  meter_.begin("building Gram matrices in own units", 0.0, "rows");
+  if (auto status = add_own_units(*prepared_, grams_, options_.threads); !status) return status.error();
+  if (strategy_.every) visit_every();
+  if (strategy_.guides) guide();
+  if (!strategy_.every) walked_ = beyond_lists(*prepared_, plan_, grams_, beyond(), options_.threads);
   lists_ = pool_lists(*prepared_, plan_, grams_, walked_, options_.threads);
   pool_ = unite(lists_, plan_.search.pool);
-  outputs_->log().info("screened {} candidates in {:.2f} s, {} inseparable; {} pooled", walked_.n_scored, seconds,
-                       walked_.n_inseparable.str(), pool_.size());
+  outputs_->log().info("{} candidates pooled", pool_.size());
   return {};
 }
 
@@ -253,6 +324,28 @@ Status Search::rank_and_complete() {
   return checks_first ? Status() : complete(shortlist_.candidates);
 }
 
+void Search::describe_walk() {
+  auto& space = shortlist_.space;
+  shortlist_.summary = space_summary(walked_, *prepared_, shortlist_.criterion, examiner_->likelihood_constants());
+  space.complete = walked_.complete && examined_all_;
+  space.proved = walked_.complete;
+  space.pool_formed = pool_words(*prepared_, plan_, grams_, walked_, pool_.size());
+  space.pool_margin = margin_words(*prepared_, lists_, walked_, pool_);
+}
+
+void Search::describe_beyond() {
+  auto& space = shortlist_.space;
+  space.complete = examined_all_ && !meter_.stopped();
+  space.proved = false;
+  if (proved_) {
+    shortlist_.proof = proof_report(*proved_, *prepared_, plan_.search.within);
+    space.proved = shortlist_.proof.proved;
+    space.gap = shortlist_.proof.gap;
+  }
+  space.pool_formed = beyond_pool_words(plan_, beyond(), pool_);
+  if (guided_) shortlist_.remarks.push_back(guided_words(*guided_));
+}
+
 void Search::describe() {
   shortlist_.formsieve = version();
   shortlist_.data = prepared_->summary;
@@ -261,20 +354,20 @@ void Search::describe() {
   shortlist_.responses = prepared_->data.response_forms;
   shortlist_.response_notes = prepared_->response_notes;
   shortlist_.menus = prepared_->menus;
-  shortlist_.summary = space_summary(walked_, *prepared_, shortlist_.criterion, examiner_->likelihood_constants());
   auto& space = shortlist_.space;
   space.scored = std::to_string(walked_.n_scored);
   space.inseparable = walked_.n_inseparable.str();
-  space.strategy = "every";
-  space.complete = walked_.complete && examined_all_;
-  space.proved = walked_.complete;
-  space.pool_formed = pool_words(*prepared_, plan_, grams_, walked_, pool_.size());
-  space.pool_margin = margin_words(*prepared_, lists_, walked_, pool_);
+  space.strategy = strategy_.name;
+  space.strategy_why = strategy_.why;
+  if (strategy_.every)
+    describe_walk();
+  else
+    describe_beyond();
   space.seconds = meter_.seconds();
   for (auto& words : inseparable_words(*prepared_, grams_, walked_, search::kSmallestPivot_rel))
     shortlist_.remarks.push_back(std::move(words));
   shortlist_.remarks.insert(shortlist_.remarks.begin(), prepared_->notes.begin(), prepared_->notes.end());
-  if (!space.complete)
+  if (!space.complete && strategy_.every)
     shortlist_.remarks.insert(shortlist_.remarks.begin(),
                               "the search was stopped early: " + grouped(walked_.n_scored) + " of " +
                                   grouped(search::BigCount(space.candidates)) +

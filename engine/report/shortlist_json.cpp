@@ -4,6 +4,7 @@
 
 #include "report/criterion_name.hpp"
 #include "report/json_text.hpp"
+#include "report/proof_json.hpp"
 #include "report/schema.hpp"
 #include "report/summary_json.hpp"
 
@@ -34,6 +35,7 @@ Json space_json(const judge::Coverage& space) {
   json["candidates"] = space.candidates;
   json["scored"] = space.scored;
   json["strategy"] = space.strategy;
+  json["strategy_why"] = space.strategy_why;
   json["proved"] = space.proved;
   json["gap"] = number_or_null(space.gap);
   json["complete"] = space.complete;
@@ -203,6 +205,7 @@ std::string shortlist_json(const judge::Shortlist& shortlist) {
   json["picks"] = picks_json(shortlist.candidates);
   json["shortlist"] = list_json(shortlist.candidates, candidate_json);
   json.update(summary_json(shortlist.summary, shortlist.responses));
+  json.update(proof_json(shortlist.proof, shortlist.responses));
   json["remarks"] = shortlist.remarks;
   json["cautions"] = shortlist.cautions;
   return json_text(json);

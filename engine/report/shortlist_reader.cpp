@@ -6,6 +6,7 @@
 #include "report/form_reader.hpp"
 #include "report/json_reader.hpp"
 #include "report/schema.hpp"
+#include "report/proof_reader.hpp"
 #include "report/summary_reader.hpp"
 
 #include <limits>
@@ -38,6 +39,7 @@ judge::Coverage read_space(const Node& node) {
   space.candidates = node.at("candidates").text();
   space.scored = node.at("scored").text();
   space.strategy = node.at("strategy").text();
+  if (const Node why = node.get("strategy_why"); why.present()) space.strategy_why = why.text();
   space.proved = node.at("proved").truth();
   space.gap = node.at("gap").number();
   space.complete = node.get("complete").truth(true);
@@ -201,6 +203,7 @@ judge::Shortlist read_all(const Node& root) {
   shortlist.response_notes = root.get("response_notes").texts();
   for (const Node& menu : root.get("menus").items()) shortlist.menus.push_back(read_menu(menu));
   shortlist.summary = read_summary(root, shortlist.responses.size());
+  shortlist.proof = read_proof(root, shortlist.responses.size());
   for (const Node& item : root.at("shortlist").items())
     shortlist.candidates.push_back(read_candidate(item, shortlist.data.response));
   shortlist.remarks = root.get("remarks").texts();

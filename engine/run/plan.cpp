@@ -93,20 +93,6 @@ void read_forms(const toml::table& table, Plan::Forms& out, Findings& findings) 
   });
 }
 
-void read_strategy(TableReader& search, std::string& out) {
-  const toml::node* node = search.find("strategy");
-  const auto word = node != nullptr ? node->value_exact<std::string>() : std::nullopt;
-  if (word == "proved" || word == "guided") {
-    search.findings().refuse(
-        node->source().begin,
-        "search.strategy \"" + *word + "\" belongs to a later version: this one searches every candidate",
-        "write strategy = \"every\" (\"auto\" means the same here), and keep the space within "
-        "the budget with max_terms and small menus");
-    return;
-  }
-  search.choice("strategy", {"auto", "every"}, out);
-}
-
 /// TOML integers end at 2^63 − 1; larger seeds are written as text.
 void read_seed(TableReader& search, std::uint64_t& out) {
   const toml::node* node = search.find("seed");
@@ -151,7 +137,7 @@ void read_budget(TableReader& search, double& out) {
 
 void read_search(const toml::table& table, Plan::Search& out, Findings& findings) {
   TableReader search(table, "search", findings);
-  read_strategy(search, out.strategy);
+  search.choice("strategy", {"auto", "every", "proved", "guided"}, out.strategy);
   search.count("max_terms", 0, out.max_terms);
   search.number(
       "within", [](double x) { return std::isfinite(x) && x >= 0.0; }, "from 0", out.within);

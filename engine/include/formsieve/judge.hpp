@@ -73,10 +73,11 @@ enum class Criterion { cv_rmse, aic, aicc, bic };
 struct Coverage {
   std::string candidates;  ///< decimal, exact
   std::string scored;
-  std::string inseparable = "0";  ///< not entered because a relative pivot fell below the guard in some fold
-  std::string strategy = "every";
-  bool complete = true;  ///< false when stopped early
-  bool proved = true;    ///< the listed pool is certainly the best by its screening scores
+  std::string inseparable = "0";   ///< not entered because a relative pivot fell below the guard in some fold
+  std::string strategy = "every";  ///< every, proved, guided, or "proved and guided"
+  std::string strategy_why;        ///< one sentence
+  bool complete = true;            ///< false when stopped early
+  bool proved = true;              ///< the listed pool is certainly the best by its screening scores
   double gap = 0.0;
   std::size_t pooled = 0, examined = 0;
   std::size_t set_aside_direction = 0;  ///< pooled candidates whose fitted effect contradicts a declared direction
@@ -166,6 +167,51 @@ struct SpaceSummary {
   bool empty() const noexcept { return responses.empty(); }
 };
 
+/// How far a set of candidates gets by an information criterion, as a proof says. Rounded like SpaceSummary.
+struct ProvedReach {
+  std::optional<double> criterion;      ///< lowest found; unset where none was
+  std::optional<double> loss;           ///< that less the lowest found of all
+  std::optional<double> loss_at_least;  ///< no candidate of the set loses less; unset where nothing is known
+  bool proved = false;                  ///< the lowest found is the lowest there is
+  std::optional<std::size_t> response;  ///< index into Shortlist::responses: where the lowest found stands
+};
+
+/// One form of a predictor, or leaving it out, forced.
+struct ProvedChoice {
+  std::optional<forms::Form> form;  ///< unset: left out
+  ProvedReach reach;
+  double near_share = 0.0;  ///< of the near-best set
+};
+
+struct ProvedPredictor {
+  std::string column;
+  bool always = false;
+  std::vector<ProvedChoice> choices;  ///< in the order of the menu, left out last unless `always`
+};
+
+struct ProvedTerms {
+  std::size_t n_terms = 0;
+  ProvedReach reach;
+};
+
+/// What branch and bound says of candidates that were never visited. Empty when no proof was tried.
+struct ProofReport {
+  Criterion criterion = Criterion::aic;
+  bool proved = false;     ///< nothing lies below the lowest found
+  double gap = 0.0;        ///< what an unseen candidate may gain on the lowest found; 0 when proved
+  double tolerance = 0.0;  ///< a candidate is ruled out only beyond this
+  std::uint64_t nodes = 0;
+  double within = 0.0;                      ///< the near-best set lies this close to the lowest found
+  std::size_t n_near = 0;                   ///< candidates found in it
+  bool near_complete = false;               ///< there are no others
+  std::vector<ProvedReach> responses;       ///< in the order of Shortlist::responses
+  std::vector<ProvedPredictor> predictors;  ///< in plan order
+  std::vector<ProvedTerms> by_terms;        ///< rising
+  std::vector<std::string> words;           ///< sentences for a reviewer: what all of the near-best set share, …
+
+  bool empty() const noexcept { return responses.empty(); }
+};
+
 struct Shortlist {
   std::string formsieve;  ///< version that wrote it
   DataSummary data;
@@ -177,6 +223,7 @@ struct Shortlist {
   std::vector<std::string> response_notes;
   std::vector<PredictorMenu> menus;
   SpaceSummary summary;
+  ProofReport proof;
   std::vector<Candidate> candidates;  ///< the first `rank.shortlist` by rank, then named lines that lie further down
   std::vector<std::string> remarks;   ///< sentences about the whole result (picks that differ, folds reduced, …)
   std::vector<std::string> cautions;  ///< said once per result

@@ -19,7 +19,8 @@ struct Announcement {
   std::string candidates;  ///< decimal, exact
   std::size_t n_responses = 0, n_predictors = 0, n_forms = 0;
   std::size_t rows_read = 0, rows_used = 0, folds = 0, repeats = 1;
-  double seconds_estimate = 0.0;   ///< of the whole run
+  double seconds_estimate = 0.0;   ///< of the whole run; negative when nobody can say
+  std::string strategy;            ///< how the space is searched and why, one sentence
   std::vector<std::string> notes;  ///< struck and merged forms, dropped rows, folds reduced
 };
 

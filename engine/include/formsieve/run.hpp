@@ -50,7 +50,7 @@ struct Plan {
   } forms;
 
   struct Search {
-    std::string strategy = "auto";  ///< auto, every
+    std::string strategy = "auto";  ///< auto, every, proved, guided
     std::optional<std::size_t> max_terms;
     double within = 4.0;
     std::size_t folds = 10;
