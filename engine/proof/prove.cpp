@@ -73,6 +73,7 @@ class Tree {
     if (const Listed* best = list_.best()) {
       frozen.best_score = best->score;
       frozen.best_columns = best->n_columns;
+      frozen.best_choice = best->choice.choice;
     }
     frozen.expired = [this] { return expired(); };
     return frozen;

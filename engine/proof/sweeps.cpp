@@ -70,7 +70,7 @@ class Sweeps {
       point_.lambda = prices_.at_best();
       point_.v.setZero(problem_.b.size());
       barrier_ = root_ ? kFirstBarrier : kLastBarrier;
-      fit_strongest();
+      fit_best();
     }
     return true;
   }
@@ -83,21 +83,14 @@ class Sweeps {
     return first_blocks(problem_, point_.d) && z_.certify(problem_, point_.d);
   }
 
-  /// A v to begin with: the form of every predictor that goes best with the response, fitted together.
-  void fit_strongest() {
+  /// A v to begin with: the coefficients of the best candidate.
+  void fit_best() {
+    if (frozen_.best_choice.size() != node_.actions.size()) return;
     std::vector<Eigen::Index> columns;
-    for (const OpenPredictor& predictor : problem_.open) {
-      const OpenForm* strongest = nullptr;
-      double most = prices_.at_best();
-      for (const OpenForm& form : predictor.forms) {
-        const double gain = problem_.b.segment(form.first, form.n_columns).squaredNorm();
-        if (gain <= most) continue;
-        most = gain;
-        strongest = &form;
-      }
-      if (strongest == nullptr) continue;
-      for (Eigen::Index c = 0; c < strongest->n_columns; ++c) columns.push_back(strongest->first + c);
-    }
+    for (const OpenPredictor& predictor : problem_.open)
+      for (const OpenForm& form : predictor.forms)
+        if (frozen_.best_choice[predictor.predictor] == form.form + 1)
+          for (Eigen::Index c = 0; c < form.n_columns; ++c) columns.push_back(form.first + c);
     fit_columns(problem_, columns, point_.v);
   }
 
@@ -148,7 +141,9 @@ class Sweeps {
   }
 
   Refined leave(Standing standing, Refined& refined) {
-    node_.inherited = std::make_shared<const Inherited>(pack(problem_, best_point_, best_point_.v));
+    // a smaller problem goes on from where the passes stand, children from the best
+    const DualPoint& point = standing == Standing::open ? best_point_ : point_;
+    node_.inherited = std::make_shared<const Inherited>(pack(problem_, point, point.v));
     node_.new_range = false;
     return {standing, std::move(refined.bound)};
   }
