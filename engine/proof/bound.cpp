@@ -88,18 +88,17 @@ double BoundEvaluator::score(double scaled_rss) const {
   return static_cast<double>(root_->problem().grams->n_rows) * std::log(scaled_rss) + reference_score_;
 }
 
-double BoundEvaluator::lowest(double base, const Sums& sums, std::size_t more_terms, std::size_t more_columns) const {
+double BoundEvaluator::lowest(double base, const Sums& sums, Columns range, std::size_t more_terms,
+                              std::size_t more_columns) const {
   double lowest = kInfinity;
-  const bool by_terms = counted_.by_terms();
-  const std::size_t first_row =
-      by_terms && counted_.fewest_terms() > more_terms ? counted_.fewest_terms() - more_terms : 0;
-  for (std::size_t k = 0; k + more_columns <= counted_.most_columns(); ++k) {
+  const auto minus = [](std::size_t a, std::size_t b) { return a > b ? a - b : 0; };
+  const Eigen::Index first = counted_.by_terms() ? minus(counted_.fewest_terms(), more_terms) : 0;
+  const Eigen::Index last = sums.rows() - static_cast<Eigen::Index>(counted_.by_terms() ? more_terms : 0);
+  for (std::size_t k = minus(range.fewest, more_columns); k + more_columns <= range.most; ++k) {
     const double factor = factor_[k + more_columns];
-    if (k + more_columns < counted_.fewest_columns() || factor == kInfinity) continue;
+    if (factor == kInfinity) continue;
     double sum = -kInfinity;
-    for (auto t = static_cast<Eigen::Index>(first_row);
-         t < sums.rows() - static_cast<Eigen::Index>(by_terms ? more_terms : 0); ++t)
-      sum = std::max(sum, sums(t, static_cast<Eigen::Index>(k)));
+    for (Eigen::Index t = first; t < last; ++t) sum = std::max(sum, sums(t, static_cast<Eigen::Index>(k)));
     if (sum == -kInfinity) continue;
     lowest = std::min(lowest, std::max(base - sum, kExactFit_rel) * factor);
   }
@@ -109,7 +108,7 @@ double BoundEvaluator::lowest(double base, const Sums& sums, std::size_t more_te
 Bound BoundEvaluator::lower(const DualValue& value, double threshold) const {
   Bound bound;
   const Sums sums = counted_.all(value.gains);
-  bound.lower = score(lowest(value.base, sums, 0, 0));
+  bound.lower = score(lowest(value.base, sums, {counted_.fewest_columns(), counted_.most_columns()}, 0, 0));
   bound.fewest_columns = std::numeric_limits<std::size_t>::max();
   for (std::size_t k = counted_.fewest_columns(); k <= counted_.most_columns(); ++k) {
     const auto first = static_cast<Eigen::Index>(counted_.by_terms() ? counted_.fewest_terms() : 0);
@@ -126,14 +125,16 @@ Bound BoundEvaluator::lower(const DualValue& value, double threshold) const {
 
 Bound BoundEvaluator::operator()(const DualValue& value, double threshold) const {
   Bound bound = lower(value, threshold);
+  if (bound.fewest_columns > bound.most_columns) return bound;
+  const Columns range{bound.fewest_columns - problem_->fixed_columns, bound.most_columns - problem_->fixed_columns};
   const std::vector<Sums> others = counted_.without_each(value.gains);
   for (std::size_t j = 0; j < problem_->open.size(); ++j) {
     const OpenPredictor& predictor = problem_->open[j];
     std::vector<double> actions;
     for (std::size_t f = 0; f < predictor.forms.size(); ++f)
-      actions.push_back(score(lowest(value.base - value.gains[j][f], others[j], 1,
+      actions.push_back(score(lowest(value.base - value.gains[j][f], others[j], range, 1,
                                      static_cast<std::size_t>(predictor.forms[f].n_columns))));
-    actions.push_back(predictor.must ? kInfinity : score(lowest(value.base, others[j], 0, 0)));
+    actions.push_back(predictor.must ? kInfinity : score(lowest(value.base, others[j], range, 0, 0)));
     for (double& action : actions) action = std::max(action, bound.lower);
     bound.action.push_back(std::move(actions));
   }

@@ -19,7 +19,8 @@ struct Bound {
   double lower = -std::numeric_limits<double>::infinity();  ///< of every candidate of the node
   /// Columns, all counted, of the candidates that may score at most the threshold; fewest > most: there is none.
   std::size_t fewest_columns = 0, most_columns = 0;
-  /// [open predictor][its forms …, absence] of the candidates with this action; +infinity where it is none.
+  /// [open predictor][its forms …, absence] of the candidates with this action and so many columns; +infinity where it
+  /// is none.
   std::vector<std::vector<double>> action;
 };
 
@@ -47,7 +48,11 @@ class BoundEvaluator {
   Bound operator()(const DualValue& value, double threshold) const;
 
  private:
-  double lowest(double base, const Sums& sums, std::size_t more_terms, std::size_t more_columns) const;
+  /// Open columns, those of an action included.
+  struct Columns {
+    std::size_t fewest, most;
+  };
+  double lowest(double base, const Sums& sums, Columns range, std::size_t more_terms, std::size_t more_columns) const;
   double score(double scaled_rss) const;
 
   const RootGram* root_;

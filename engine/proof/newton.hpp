@@ -17,8 +17,10 @@ namespace formsieve::proof {
 
 class Newton {
  public:
-  /// Starts at `start` (d, g, lambda, mu read; M − D must be positive definite). Costs of a step: a Cholesky
-  /// factorisation of order n_variables().
+  /// Starts at `start` (d, g, lambda, mu read; M − D and every D_ff must be positive definite, D symmetric); u and s
+  /// are set by centring. `problem` must outlive this. `range` counts the fixed columns too, as everywhere. A step
+  /// solves the Newton system by conjugate gradients (newton_solve.hpp). Its cost: some factorisations of order [open
+  /// columns], and for each iteration 2 · [open columns]² · [columns of a predictor].
   Newton(const Reduced& problem, const ColumnRange& range, const DualPoint& start);
   ~Newton();
   Newton(Newton&&) noexcept;

@@ -1,6 +1,6 @@
 #include "proof/node_work.hpp"
 
-#include "proof/prices.hpp"
+#include "proof/column_price.hpp"
 #include "proof/refinement.hpp"
 #include "proof/settle.hpp"
 
@@ -50,7 +50,7 @@ search::Choice round_off(const Reduced& problem, const Bound& bound) {
 /// Parts of a node by number of columns; empty when a split is not worth while.
 std::vector<Node> split_columns(const Frozen& frozen, const Node& node) {
   const std::size_t width = node.most_columns - node.fewest_columns;
-  const double loss = Prices(frozen, node.response).loss(node.fewest_columns, node.most_columns);
+  const double loss = ColumnPrice(frozen, node.response).loss(node.fewest_columns, node.most_columns);
   if (width < 2 || !(loss > kLossOfSplit)) return {};
   const double wanted = std::ceil(std::sqrt(loss / kLossOfSplit));
   const std::size_t parts =
@@ -142,7 +142,8 @@ NodeResult work_on(const Frozen& frozen, Node node) {
       result.work += order * order * static_cast<double>(met);
       return result;
     }
-    Refined refined = refine_by_sweeps(frozen, problem, node, result.work);
+    Refined refined = frozen.newton ? refine_by_newton(frozen, problem, node, result.work)
+                                    : refine_by_sweeps(frozen, problem, node, result.work);
     if (refined.standing == Standing::cut) return result;
     if (!refined.bound.action.empty()) result.rounded.push_back(round_off(problem, refined.bound));
     if (refined.standing == Standing::changed) continue;

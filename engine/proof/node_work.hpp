@@ -22,7 +22,8 @@ struct Frozen {
   double threshold = std::numeric_limits<double>::infinity();   ///< scores above it need no proof of their own
   double best_score = std::numeric_limits<double>::infinity();  ///< infinite when nothing is listed
   std::size_t best_columns = 0;
-  std::function<bool()> expired;  ///< may be empty
+  std::vector<std::uint16_t> best_choice;  ///< empty when nothing is listed
+  std::function<bool()> expired;           ///< may be empty
 };
 
 struct NodeResult {

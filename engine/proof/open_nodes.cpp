@@ -46,6 +46,11 @@ void OpenNodes::cut_above(double limit) {
   while (!stack_.empty() && dead(stack_.back())) stack_.pop_back();
 }
 
+void OpenNodes::clear() {
+  queue_.clear();
+  stack_.clear();
+}
+
 double OpenNodes::lower() const {
   double lower = queue_.empty() ? std::numeric_limits<double>::infinity() : queue_.front().lower;
   for (const Node& node : stack_) lower = std::min(lower, node.lower);

@@ -22,6 +22,8 @@ class OpenNodes {
   /// Drops nodes whose bound lies above.
   void cut_above(double limit);
 
+  void clear();
+
   bool empty() const { return queue_.empty() && stack_.empty(); }
   std::size_t size() const { return queue_.size() + stack_.size(); }
   /// The lowest bound; +infinity when empty.

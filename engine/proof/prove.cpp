@@ -17,6 +17,9 @@ namespace {
 
 constexpr double kInfinity = std::numeric_limits<double>::infinity();
 
+/// Sweeps are given this many times [columns]³ operations.
+constexpr double kRootsWork = 600.0;
+
 class Tree {
  public:
   Tree(const RootGram& root, const Restriction& restriction, const Limits& limits, const Effort& effort)
@@ -35,6 +38,7 @@ class Tree {
     report();
     while (!open_.empty() && !expired() && nodes_ < limits_.nodes) {
       open_.cut_above(list_.threshold() + kTolerance);
+      if (effort_.newton && !newton_ && work_ >= work_of_sweeps_) start_newton();
       work_on_batch();
       report();
     }
@@ -53,15 +57,37 @@ class Tree {
   void begin() {
     std::size_t n_columns = 0;
     for (const std::size_t response : scope_.responses) {
-      Node node;
-      node.response = response;
-      node.most_columns = scope_.most_columns;
-      node.actions = scope_.actions;
-      open_.push(std::move(node));
+      open_.push(root_node(response));
     }
     for (const search::PredictorChoices& predictor : root_.space().predictors)
       for (const search::FormBlock& form : predictor.forms) n_columns += form.n_columns;
+    // about that of Newton's method at the roots
+    const auto order = static_cast<double>(n_columns);
+    work_of_sweeps_ =
+        effort_.sweeps_work * kRootsWork * order * order * order * static_cast<double>(scope_.responses.size());
     open_.limit(effort_.most_open_bytes, root_.n_predictors(), n_columns);
+  }
+
+  Node root_node(std::size_t response) const {
+    Node node;
+    node.response = response;
+    node.most_columns = scope_.most_columns;
+    node.actions = scope_.actions;
+    return node;
+  }
+
+  /// The tree begins anew where it is still open: sweeps that end in time are fast, but what is inherited from stalled
+  /// ones is not worth going on from.
+  void start_newton() {
+    newton_ = true;
+    std::vector<Node> roots;
+    for (const std::size_t response : scope_.responses) {
+      roots.push_back(root_node(response));
+      roots.back().lower = open_.lower(response);
+    }
+    open_.clear();
+    for (Node& node : roots)
+      if (std::isfinite(node.lower) || node.lower < 0.0) open_.push(std::move(node));
   }
 
   Frozen freeze() const {
@@ -69,10 +95,12 @@ class Tree {
     frozen.root = &root_;
     frozen.scope = &scope_;
     frozen.effort = effort_;
+    frozen.newton = newton_;
     frozen.threshold = list_.threshold();
     if (const Listed* best = list_.best()) {
       frozen.best_score = best->score;
       frozen.best_columns = best->n_columns;
+      frozen.best_choice = best->choice.choice;
     }
     frozen.expired = [this] { return expired(); };
     return frozen;
@@ -131,7 +159,8 @@ class Tree {
   Incumbents incumbents_;
   OpenNodes open_;
   std::uint64_t nodes_ = 0;
-  double work_ = 0.0;
+  double work_ = 0.0, work_of_sweeps_ = 0.0;
+  bool newton_ = false;
 };
 
 }  // namespace

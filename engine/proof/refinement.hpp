@@ -1,4 +1,4 @@
-// The bound of a node made as good as is worth while, by sweeps.
+// The bound of a node made as good as is worth while.
 #pragma once
 
 #include "proof/node_work.hpp"
@@ -21,6 +21,8 @@ struct Refined {
 /// Improves the bound of `node`; narrows its actions and its range of columns, raises `lower`, and leaves in it what
 /// the children inherit. `work` counts operations.
 Refined refine_by_sweeps(const Frozen& frozen, const Reduced& problem, Node& node, double& work);
+/// The same by Newton's method: dearer, but it reaches the optimum of the dual, where sweeps may stall.
+Refined refine_by_newton(const Frozen& frozen, const Reduced& problem, Node& node, double& work);
 
 /// Narrows a node by a bound. What is decided stays valid whatever comes after.
 struct Narrowed {

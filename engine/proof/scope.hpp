@@ -28,6 +28,7 @@ struct Effort {
   std::size_t root_sweeps = 60;  ///< passes of block-coordinate ascent
   std::size_t node_sweeps = 3;
   bool newton = true;
+  double sweeps_work = 1.0;          ///< multiplies the work after which Newton's method takes over; 0: at once
   bool incumbents = true;            ///< local search before the tree and from rounded nodes
   bool strike = true;                ///< actions above the threshold are struck off
   std::uint64_t enumerate_at = 400;  ///< nodes of at most so many candidates are enumerated

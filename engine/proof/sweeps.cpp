@@ -1,14 +1,10 @@
 #include "proof/block_sweep.hpp"
 #include "proof/coordinate_descent.hpp"
-#include "proof/first_blocks.hpp"
-#include "proof/prices.hpp"
 #include "proof/refinement.hpp"
-
-#include <Eigen/Cholesky>
+#include "proof/starting_point.hpp"
 
 #include <algorithm>
 #include <cmath>
-#include <optional>
 
 namespace formsieve::proof {
 
@@ -27,17 +23,10 @@ constexpr double kSmallestGap = 0.05;  ///< of a score
 constexpr std::size_t kRootDescent = 200;
 constexpr std::size_t kNodeDescent = 60;
 
-/// Coefficients of the given columns alone.
-void fit_columns(const Reduced& problem, const std::vector<Eigen::Index>& columns, Eigen::VectorXd& v) {
-  if (columns.empty()) return;
-  const Eigen::LLT<Eigen::MatrixXd> factor(problem.m(columns, columns));
-  if (factor.info() == Eigen::Success) v(columns) = Eigen::VectorXd(factor.solve(Eigen::VectorXd(problem.b(columns))));
-}
-
 class Sweeps {
  public:
   Sweeps(const Frozen& frozen, const Reduced& problem, Node& node, double& work)
-      : frozen_(frozen), problem_(problem), node_(node), work_(work), prices_(frozen, node.response), sweep_(problem) {}
+      : frozen_(frozen), problem_(problem), node_(node), work_(work), price_(frozen, node.response), sweep_(problem) {}
 
   Refined run() {
     Refined refined;
@@ -56,49 +45,9 @@ class Sweeps {
 
  private:
   bool begin() {
-    const auto order = static_cast<double>(problem_.m.rows());
     root_ = node_.depth == 0;
-    if (node_.inherited) {
-      point_ = unpack(*node_.inherited, problem_);
-      work_ += order * order * order;
-      if (!shrink_until_certified()) return false;
-      point_.lambda = prices_.within(node_.new_range ? 0.0 : point_.lambda, node_.fewest_columns, node_.most_columns);
-      barrier_ = kLastBarrier;
-    } else {
-      work_ += 6.0 * order * order * order;
-      if (!first_blocks(problem_, point_.d) || !z_.certify(problem_, point_.d)) return false;
-      point_.lambda = prices_.at_best();
-      point_.v.setZero(problem_.b.size());
-      barrier_ = root_ ? kFirstBarrier : kLastBarrier;
-      fit_strongest();
-    }
-    return true;
-  }
-
-  bool shrink_until_certified() {
-    constexpr int kTrials = 60;
-    constexpr double kShrink = 0.9;
-    for (int trial = 0; trial < kTrials; ++trial, point_.d *= kShrink)
-      if (z_.certify(problem_, point_.d)) return true;
-    return first_blocks(problem_, point_.d) && z_.certify(problem_, point_.d);
-  }
-
-  /// A v to begin with: the form of every predictor that goes best with the response, fitted together.
-  void fit_strongest() {
-    std::vector<Eigen::Index> columns;
-    for (const OpenPredictor& predictor : problem_.open) {
-      const OpenForm* strongest = nullptr;
-      double most = prices_.at_best();
-      for (const OpenForm& form : predictor.forms) {
-        const double gain = problem_.b.segment(form.first, form.n_columns).squaredNorm();
-        if (gain <= most) continue;
-        most = gain;
-        strongest = &form;
-      }
-      if (strongest == nullptr) continue;
-      for (Eigen::Index c = 0; c < strongest->n_columns; ++c) columns.push_back(strongest->first + c);
-    }
-    fit_columns(problem_, columns, point_.v);
+    barrier_ = root_ && !node_.inherited ? kFirstBarrier : kLastBarrier;
+    return starting_point(frozen_, problem_, node_, price_, point_, z_, work_);
   }
 
   Narrowed evaluate(Bound& best) {
@@ -148,7 +97,9 @@ class Sweeps {
   }
 
   Refined leave(Standing standing, Refined& refined) {
-    node_.inherited = std::make_shared<const Inherited>(pack(problem_, best_point_, best_point_.v));
+    // a smaller problem goes on from where the passes stand, children from the best
+    const DualPoint& point = standing == Standing::open ? best_point_ : point_;
+    node_.inherited = std::make_shared<const Inherited>(pack(problem_, point, point.v));
     node_.new_range = false;
     return {standing, std::move(refined.bound)};
   }
@@ -157,7 +108,7 @@ class Sweeps {
   const Reduced& problem_;
   Node& node_;
   double& work_;
-  Prices prices_;
+  ColumnPrice price_;
   BlockSweep sweep_;
   CertifiedDifference z_;
   DualPoint point_, best_point_;

@@ -35,7 +35,12 @@ std::vector<proof::Effort> efforts() {
   proof::Effort idle = weak;
   idle.strike = false;
   idle.batch = 3;
-  return {usual, no_enumeration, weak, idle};
+  proof::Effort newton = no_enumeration;
+  newton.sweeps_work = 0.0;
+  proof::Effort newton_alone = newton;
+  newton_alone.incumbents = false;
+  newton_alone.batch = 1;
+  return {usual, no_enumeration, weak, idle, newton, newton_alone};
 }
 
 /// The same members up to ties: scores agree place by place and every member has its score.

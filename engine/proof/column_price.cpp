@@ -1,11 +1,11 @@
-#include "proof/prices.hpp"
+#include "proof/column_price.hpp"
 
 #include <algorithm>
 #include <cmath>
 
 namespace formsieve::proof {
 
-Prices::Prices(const Frozen& frozen, std::size_t response)
+ColumnPrice::ColumnPrice(const Frozen& frozen, std::size_t response)
     : root_(frozen.root),
       response_(response),
       best_columns_(std::min(frozen.best_columns, frozen.scope->most_columns)),
@@ -18,15 +18,15 @@ Prices::Prices(const Frozen& frozen, std::size_t response)
   step_ = std::max(step_, kSmallestStep) / static_cast<double>(root_->problem().grams->n_rows);
 }
 
-double Prices::tau(std::size_t n_columns) const {
+double ColumnPrice::tau(std::size_t n_columns) const {
   if (!std::isfinite(aim_)) return 1.0;
   const double log_rss = root_->log_rss(response_, aim_, std::min(n_columns, most_columns_));
   return std::exp(std::clamp(log_rss, std::log(kExactFit_rel), 0.0));
 }
 
-double Prices::at_best() const { return tau(best_columns_) * -std::expm1(-step_); }
+double ColumnPrice::at_best() const { return tau(best_columns_) * -std::expm1(-step_); }
 
-double Prices::chord(std::size_t fewest, std::size_t most) const {
+double ColumnPrice::chord(std::size_t fewest, std::size_t most) const {
   if (fewest == most) {
     fewest -= fewest > 0 ? 1 : 0;
     most = std::min(most + 1, most_columns_);
@@ -35,7 +35,7 @@ double Prices::chord(std::size_t fewest, std::size_t most) const {
   return slope > 0.0 ? slope : at_best();
 }
 
-double Prices::within(double lambda, std::size_t fewest, std::size_t most) const {
+double ColumnPrice::within(double lambda, std::size_t fewest, std::size_t most) const {
   if (!(lambda > 0.0)) return chord(fewest, most);
   constexpr double kLowest = 0.3;
   constexpr double kHighest = 4.0;
@@ -43,7 +43,7 @@ double Prices::within(double lambda, std::size_t fewest, std::size_t most) const
   return std::clamp(lambda, low, std::max(low, kHighest * tau(fewest) * std::expm1(step_)));
 }
 
-double Prices::loss(std::size_t fewest, std::size_t most) const {
+double ColumnPrice::loss(std::size_t fewest, std::size_t most) const {
   const auto width = static_cast<double>(most - fewest);
   return step_ * step_ * width * width / 8.0 * static_cast<double>(root_->problem().grams->n_rows);
 }

@@ -8,9 +8,9 @@
 namespace formsieve::proof {
 
 /// RSS_rel that a candidate needs to reach the threshold, and what follows for λ.
-class Prices {
+class ColumnPrice {
  public:
-  Prices(const Frozen& frozen, std::size_t response);
+  ColumnPrice(const Frozen& frozen, std::size_t response);
 
   /// τ_k = exp((threshold − penalty_k − …)/n); the best score where there is no threshold yet.
   double tau(std::size_t n_columns) const;

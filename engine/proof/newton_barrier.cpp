@@ -1,0 +1,144 @@
+#include "proof/newton_barrier.hpp"
+
+#include <Eigen/Cholesky>
+
+#include <algorithm>
+#include <cmath>
+#include <limits>
+
+namespace formsieve::proof {
+
+namespace {
+
+constexpr double kOutside = -std::numeric_limits<double>::infinity();
+/// The bound on λ: so many times the sum of squares that is left, or the λ at the start.
+constexpr double kMostLambda_rel = 10.0;
+/// Halvings of a bracket whose ends differ by a factor of order one from the root's distance to the bound.
+constexpr int kHalvings = 40;
+
+/// ln det D_ff and g_fᵀ D_ff⁻¹ g_f of one form; the latter is NaN where D_ff is not positive definite.
+struct FormValue {
+  double log_determinant = 0.0;
+  double charge = 0.0;
+};
+
+FormValue form_value(const OpenForm& form, const Variables& at) {
+  if (form.n_columns == 1) {
+    const double d = at.d(form.first, form.first), g = at.g(form.first);
+    if (!(d > 0.0)) return {0.0, std::nan("")};
+    return {std::log(d), g * g / d};
+  }
+  const Eigen::Index n = form.n_columns;
+  const Eigen::LLT<Eigen::MatrixXd> factor(at.d.block(form.first, form.first, n, n));
+  if (factor.info() != Eigen::Success) return {0.0, std::nan("")};
+  return {2.0 * factor.matrixLLT().diagonal().array().log().sum(),
+          factor.matrixL().solve(at.g.segment(form.first, n)).squaredNorm()};
+}
+
+/// The t in (0, most] at which a falling function crosses zero.
+template <class Function>
+double crossing(double most, const Function& falling) {
+  double below = 0.0, above = most;
+  for (int i = 0; i < kHalvings; ++i) {
+    const double middle = 0.5 * (below + above);
+    (falling(middle) > 0.0 ? below : above) = middle;
+  }
+  return above;
+}
+
+/// u of one predictor: −u + μ[ln u + Σ_f ln(u + c_f λ − h_f)] is largest, the first logarithm only where it may be
+/// absent. NaN where a D_ff is not positive definite.
+double central_u(const OpenPredictor& predictor, double mu, const Variables& at) {
+  double lowest = predictor.must ? kOutside : 0.0;
+  for (const OpenForm& form : predictor.forms) {
+    const double charge = form_value(form, at).charge;
+    if (std::isnan(charge)) return charge;
+    lowest = std::max(lowest, charge - static_cast<double>(form.n_columns) * at.lambda);
+  }
+  const auto slope = [&](double above_lowest) {
+    double sum = predictor.must ? 0.0 : 1.0 / (lowest + above_lowest);
+    for (const OpenForm& form : predictor.forms) {
+      const double bound = form_value(form, at).charge - static_cast<double>(form.n_columns) * at.lambda;
+      sum += 1.0 / (lowest - bound + above_lowest);
+    }
+    return mu * sum - 1.0;
+  };
+  return lowest + crossing(mu * static_cast<double>(predictor.forms.size() + 1), slope);
+}
+
+double central_s(const Prices& prices, double mu, const Variables& at) {
+  const double fewest = prices.k_fewest * at.lambda + prices.tau_fewest;
+  const double most = prices.k_most * at.lambda + prices.tau_most;
+  const double lowest = std::max(fewest, most);
+  return lowest + crossing(2.0 * mu, [&](double t) {
+           return mu * (1.0 / (lowest - fewest + t) + 1.0 / (lowest - most + t)) - 1.0;
+         });
+}
+
+double prices_barrier(const Prices& prices, const Variables& at) {
+  const double fewest = prices.slack_fewest(at), most = prices.slack_most(at);
+  const double to_bound = prices.most_lambda - at.lambda;
+  if (!(fewest > 0.0 && most > 0.0 && at.lambda > 0.0 && to_bound > 0.0)) return kOutside;
+  return std::log(fewest) + std::log(most) + std::log(at.lambda) + std::log(to_bound);
+}
+
+}  // namespace
+
+void Variables::set_along(const Variables& point, double length, const Variables& direction, const Reduced& problem) {
+  for (const OpenPredictor& predictor : problem.open) {
+    const Eigen::Index i = predictor.first, n = predictor.n_columns;
+    d.block(i, i, n, n) = point.d.block(i, i, n, n) + length * direction.d.block(i, i, n, n);
+  }
+  g = point.g + length * direction.g;
+  u = point.u + length * direction.u;
+  lambda = point.lambda + length * direction.lambda;
+  s = point.s + length * direction.s;
+}
+
+Prices::Prices(const Reduced& problem, const ColumnRange& range, double lambda)
+    : tau_fewest(range.tau_fewest),
+      tau_most(range.tau_most),
+      most_lambda(kMostLambda_rel * std::max(problem.yy, lambda)) {
+  const auto open = [&](std::size_t k) { return static_cast<double>(k - std::min(k, problem.fixed_columns)); };
+  k_fewest = open(range.fewest);
+  k_most = open(range.most);
+}
+
+double predictor_barrier(const OpenPredictor& predictor, double u, const Variables& at) {
+  if (!predictor.must && !(u > 0.0)) return kOutside;
+  double sum = predictor.must ? 0.0 : std::log(u);
+  for (const OpenForm& form : predictor.forms) {
+    const FormValue value = form_value(form, at);
+    const double slack = u + static_cast<double>(form.n_columns) * at.lambda - value.charge;
+    if (!(slack > 0.0)) return kOutside;  // NaN too
+    sum += value.log_determinant + std::log(slack);
+  }
+  return sum;
+}
+
+double merit(const Reduced& problem, const Prices& prices, double mu, const Variables& at, Factor& factor) {
+  double barrier = prices_barrier(prices, at);
+  for (std::size_t j = 0; j < problem.open.size() && barrier > kOutside; ++j)
+    barrier += predictor_barrier(problem.open[j], at.u(static_cast<Eigen::Index>(j)), at);
+  if (!(barrier > kOutside)) return kOutside;
+  factor.lower = problem.m - at.d;
+  const Eigen::LLT<Eigen::Ref<Eigen::MatrixXd>> cholesky(factor.lower);
+  if (cholesky.info() != Eigen::Success) return kOutside;
+  barrier += 2.0 * factor.lower.diagonal().array().log().sum();
+  factor.residual = problem.b - at.g;
+  factor.lower.triangularView<Eigen::Lower>().solveInPlace(factor.residual);
+  const double value = problem.yy - factor.residual.squaredNorm() - at.u.sum() - at.s + mu * barrier;
+  return std::isfinite(value) ? value : kOutside;
+}
+
+bool centre(const Reduced& problem, const Prices& prices, double mu, Variables& at) {
+  for (std::size_t j = 0; j < problem.open.size(); ++j) {
+    const double u = central_u(problem.open[j], mu, at);
+    if (!std::isfinite(u)) return false;
+    at.u(static_cast<Eigen::Index>(j)) = u;
+  }
+  at.s = central_s(prices, mu, at);
+  return std::isfinite(at.s);
+}
+
+}  // namespace formsieve::proof
