@@ -62,7 +62,8 @@ class GuidedSearch {
   void remember(const std::vector<Leg>& legs, bool independent);
   void take_finds(const std::vector<Done>& done);
   void report() const;
-  bool over() const { return options_.stop.stop_requested() || (options_.enough && options_.enough()); }
+  bool stopped() const { return options_.stop.stop_requested(); }
+  bool enough() const { return options_.enough && options_.enough(); }
   By by_of(std::size_t objective) const { return setup_.objectives[objective].in_own_units() ? By::own : By::cv; }
   ResponseLists& lists_of(std::size_t objective) { return lists_[setup_.objectives[objective].response()]; }
   const ResponseLists& lists_of(std::size_t objective) const { return lists_[setup_.objectives[objective].response()]; }
@@ -149,7 +150,7 @@ std::vector<Task> GuidedSearch::expansions() const {
 void GuidedSearch::perform(const std::vector<Task>& tasks) {
   std::vector<Done> done(tasks.size());
   base::parallel_for(tasks.size(), options_.threads, [&](std::size_t i) {
-    if (options_.stop.stop_requested()) return;
+    if (stopped()) return;
     done[i].scout = std::make_unique<Scout>(space_, setup_.objectives, options_.keep, setup_.limit);
     if (tasks[i].expand)
       done[i].scout->look_around(tasks[i].objective, tasks[i].choices);
@@ -239,19 +240,20 @@ GuidedResult GuidedSearch::result(bool complete) const {
 
 GuidedResult GuidedSearch::run() {
   if (!space_.any()) return result(true);
-  // the first round is done in any case, so that there is a list
-  for (bool first = true; n_started_ < options_.restarts + hints_.size() && (first || !over()); first = false) {
+  const std::size_t n_asked = options_.restarts + hints_.size();
+  // one round is done even where there is no time for it, so that there is a list
+  for (bool first = true; n_started_ < n_asked && !stopped() && (first || !enough()); first = false) {
     perform(starts());
-    if (!options_.stop.stop_requested()) perform(expansions());
+    if (!stopped()) perform(expansions());
     report();
   }
-  if (n_started_ < options_.restarts + hints_.size()) return result(false);
+  if (n_started_ < n_asked) return result(false);
   for (std::vector<Task> tasks = expansions(); !tasks.empty(); tasks = expansions()) {
-    if (over()) return result(false);
+    if (stopped() || enough()) return result(false);
     perform(tasks);
     report();
   }
-  return result(!options_.stop.stop_requested());
+  return result(!stopped());
 }
 
 }  // namespace

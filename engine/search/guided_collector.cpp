@@ -58,8 +58,10 @@ double DistinctCount::estimate() const {
   double sum = 0.0;
   double n_empty = 0.0;
   for (const std::uint8_t rank : rank_) {
-    if (rank == 0) n_empty += 1.0;
-    else sum += std::ldexp(1.0, -rank);
+    if (rank == 0)
+      n_empty += 1.0;
+    else
+      sum += std::ldexp(1.0, -rank);
   }
   if (n_empty == m) return 0.0;
   return m * m / (2.0 * std::log(2.0) * (m * of_empty(n_empty / m) + sum));

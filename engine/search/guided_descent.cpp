@@ -1,5 +1,6 @@
 #include "search/guided_descent.hpp"
 
+#include <algorithm>
 #include <cmath>
 #include <limits>
 #include <utility>
@@ -66,28 +67,27 @@ bool Descent::mend(Choices& choices) {
 }
 
 void Descent::descend() {
-  while (!over())
-    if (!pass() && !improve_by_one() && !improve_by_pair()) return;
+  while (!over()) {
+    pass();
+    if (!improve_by_one() && !improve_by_pair()) return;
+  }
 }
 
-/// One go at every predictor present, and at what may enter. True when something improved.
-bool Descent::pass() {
+/// One go at every predictor present, and at what may enter.
+void Descent::pass() {
   const std::size_t n = space_.n_predictors();
   std::vector<std::size_t> slots = {n};  // n: what may enter
   for (std::size_t j = 0; j < n; ++j)
     if (current_[j] != 0) slots.push_back(j);
   base::shuffle(std::span(slots), random_);
-  bool improved = false;
   for (const std::size_t slot : slots) {
-    if (over()) break;
     if (slot == n) {
-      while (!over() && enter()) improved = true;
-    } else if (current_[slot] != 0) {  // it may have been exchanged
+      while (!over() && enter()) continue;
+    } else if (!over() && current_[slot] != 0) {  // it may have been exchanged
       scout_.look_in_place(objective_, current_, slot);
-      if (take_best()) improved = true;
+      take_best();
     }
   }
-  return improved;
 }
 
 bool Descent::enter() {
@@ -101,14 +101,19 @@ bool Descent::improve_by_one() {
   return take_best();
 }
 
+/// The best of all pairs with one predictor, the first that brings anything.
 bool Descent::improve_by_pair() {
   std::vector<std::size_t> present;
   for (std::size_t j = 0; j < current_.size(); ++j)
     if (current_[j] != 0) present.push_back(j);
-  for (std::size_t i = 0; i < present.size(); ++i)
-    for (std::size_t j = i + 1; j < present.size() && !over(); ++j)
-      scout_.look_at_pair(objective_, current_, present[i], present[j]);
-  return take_best();
+  base::shuffle(std::span(present), random_);
+  for (std::size_t i = 1; i < present.size(); ++i) {
+    for (std::size_t j = 0; j < i && !over(); ++j)
+      scout_.look_at_pair(objective_, current_, std::min(present[i], present[j]), std::max(present[i], present[j]));
+    if (over()) return false;
+    if (take_best()) return true;
+  }
+  return false;
 }
 
 /// Another objective under which the same choices are better.

@@ -1,8 +1,9 @@
 // One descent: from a start to a candidate that no single change, exchange or pair of changes improves.
 //
-// Passes first: predictor by predictor, in random order, the best of everything that may stand in its place (another
-// form, another predictor in any form, nothing), and the best that may enter. When a pass brings nothing, one look at
-// all neighbours, then all pairs of predictors present, each in every form. Where the score is comparable across
+// Passes: predictor by predictor, in random order, the best of everything that may stand in its place (another form,
+// another predictor in any form, nothing), and the best that may enter, one after another. After each one look at all
+// neighbours, whose eliminations are shared; where that brings nothing, pairs of the predictors present, each in every
+// form. Where the score is comparable across
 // response forms, the descent then goes on under another response form if the same choices are better there.
 #pragma once
 
@@ -52,7 +53,7 @@ class Descent {
   bool begin(const Choices& start);
   bool mend(Choices& choices);
   void descend();
-  bool pass();
+  void pass();
   bool enter();
   bool improve_by_one();
   bool improve_by_pair();

@@ -7,24 +7,15 @@ namespace formsieve::search {
 
 void SmallFold::resize(std::size_t order) {
   order_ = order;
-  a_.assign(order * order, 0.0);
-  v_.assign(order * order, 0.0);
-  m_.assign(order, 0.0);
+  stride_ = (order + kSmallGrain - 1) / kSmallGrain * kSmallGrain;
+  a_.resize(std::max(a_.size(), order_ * stride_));
+  v_.resize(a_.size());
+  scratch_.resize(std::max(scratch_.size(), 3 * stride_));
 }
 
 bool SmallFold::eliminate(std::size_t c, double least) {
-  const double pivot = a(c, c);
-  if (!(pivot > least)) return false;
-  for (std::size_t i = c + 1; i < order_; ++i) m_[i] = a(i, c) / pivot;
-  const double v_pivot = v(c, c);
-  for (std::size_t i = c + 1; i < order_; ++i) {
-    const double a_i = a(i, c);
-    const double left = v(i, c) - m_[i] * v_pivot;
-    for (std::size_t j = c + 1; j <= i; ++j) {
-      a(i, j) -= a_i * m_[j];
-      v(i, j) -= left * m_[j] + m_[i] * v(j, c);
-    }
-  }
+  if (!(a(c, c) > least)) return false;
+  eliminate_dense(a_.data(), v_.data(), order_, stride_, c, scratch_.data());
   return true;
 }
 

@@ -19,16 +19,15 @@ class SmallFold {
  public:
   /// `order` counts the response; entries are then filled by the caller, i ≥ j alone.
   void resize(std::size_t order);
-  double& a(std::size_t i, std::size_t j) { return a_[i * order_ + j]; }
-  double& v(std::size_t i, std::size_t j) { return v_[i * order_ + j]; }
-  std::size_t order() const { return order_; }
-  double sse() const { return v_.back(); }
+  double& a(std::size_t i, std::size_t j) { return a_[i * stride_ + j]; }
+  double& v(std::size_t i, std::size_t j) { return v_[i * stride_ + j]; }
+  double sse() const { return v_[(order_ - 1) * (stride_ + 1)]; }
   /// Brings column c in; those before it must be in or are lost. False when its pivot is not above `least`.
   bool eliminate(std::size_t c, double least);
 
  private:
-  std::size_t order_ = 0;
-  std::vector<double> a_, v_, m_;
+  std::size_t order_ = 0, stride_ = 0;
+  std::vector<double> a_, v_, scratch_;
 };
 
 /// What is left of the columns of a fold.

@@ -21,6 +21,7 @@ constexpr Tag kTag;
 constexpr std::size_t kLanes = hn::MaxLanes(kTag);
 /// Vectors of each row that stay in registers while the earlier rows go by.
 constexpr std::size_t kBlock = 4;
+static_assert(kSmallGrain % kLanes == 0);
 static_assert(kRowGrain % (kBlock * kLanes) == 0);
 
 void reduce_rows_here(const PivotRowsView& earlier, const double* l, const double* h, double* a, double* v) {
@@ -83,6 +84,34 @@ void add_scores_here(const OpenColumns& open, const double* least, double sse, s
   }
 }
 
+void eliminate_dense_here(double* a, double* v, std::size_t order, std::size_t stride, std::size_t c, double* scratch) {
+  double* const m = scratch;
+  double* const a_column = scratch + stride;
+  double* const v_column = scratch + 2 * stride;
+  std::fill_n(scratch, 3 * stride, 0.0);
+  const double pivot = a[c * stride + c];
+  const double v_pivot = v[c * stride + c];
+  for (std::size_t i = c + 1; i < order; ++i) {
+    a_column[i] = a[i * stride + c];
+    v_column[i] = v[i * stride + c];
+    m[i] = a_column[i] / pivot;
+  }
+  const std::size_t first = (c + 1) / kLanes * kLanes;  // m is 0 up to c
+  for (std::size_t i = c + 1; i < order; ++i) {
+    const Vector a_i = hn::Set(kTag, a_column[i]);
+    const Vector m_i = hn::Set(kTag, m[i]);
+    const Vector v_i = hn::Set(kTag, v_column[i] - m[i] * v_pivot);
+    for (std::size_t j = first; j <= i; j += kLanes) {
+      const Vector m_j = hn::LoadU(kTag, m + j);
+      double* const a_ij = a + i * stride + j;
+      double* const v_ij = v + i * stride + j;
+      hn::StoreU(hn::Sub(hn::LoadU(kTag, a_ij), hn::Mul(a_i, m_j)), kTag, a_ij);
+      const Vector change = hn::Add(hn::Mul(v_i, m_j), hn::Mul(m_i, hn::LoadU(kTag, v_column + j)));
+      hn::StoreU(hn::Sub(hn::LoadU(kTag, v_ij), change), kTag, v_ij);
+    }
+  }
+}
+
 }  // namespace
 }  // namespace formsieve::search::HWY_NAMESPACE
 HWY_AFTER_NAMESPACE();
@@ -94,6 +123,7 @@ namespace formsieve::search {
 HWY_EXPORT(reduce_rows_here);
 HWY_EXPORT(eliminate_pivot_here);
 HWY_EXPORT(add_scores_here);
+HWY_EXPORT(eliminate_dense_here);
 
 void reduce_rows(const PivotRowsView& earlier, const double* l, const double* h, double* a, double* v) {
   HWY_DYNAMIC_DISPATCH(reduce_rows_here)(earlier, l, h, a, v);
@@ -104,6 +134,9 @@ void eliminate_pivot(const PivotScalars& pivot, const double* a, const double* v
 }
 void add_scores(const OpenColumns& open, const double* least, double sse, std::size_t width, double* sums) {
   HWY_DYNAMIC_DISPATCH(add_scores_here)(open, least, sse, width, sums);
+}
+void eliminate_dense(double* a, double* v, std::size_t order, std::size_t stride, std::size_t c, double* scratch) {
+  HWY_DYNAMIC_DISPATCH(eliminate_dense_here)(a, v, order, stride, c, scratch);
 }
 
 }  // namespace formsieve::search

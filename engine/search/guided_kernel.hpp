@@ -43,4 +43,10 @@ void eliminate_pivot(const PivotScalars& pivot, const double* a, const double* v
 /// A_cc is not above least[c].
 void add_scores(const OpenColumns& open, const double* least, double sse, std::size_t width, double* sums);
 
+/// Brings column c into two dense symmetric matrices (walk.hpp), stored by rows of `stride`, a multiple of kSmallGrain:
+/// entries (i, j) with c < j ≤ i < order are right afterwards; others of these rows may hold anything. `scratch`:
+/// [3 · stride].
+inline constexpr std::size_t kSmallGrain = 8;
+void eliminate_dense(double* a, double* v, std::size_t order, std::size_t stride, std::size_t c, double* scratch);
+
 }  // namespace formsieve::search

@@ -8,22 +8,26 @@
 namespace formsieve::search {
 
 Figures figures_of(const GuidedSpace& space, const base::GramSet& grams, std::size_t response, const Choices& choices) {
+  constexpr double kInfinity = std::numeric_limits<double>::infinity();
+  const auto* const own = own_units_of(grams, response);
+  const std::size_t order = grams.order();
+  const std::size_t y = grams.n_columns + response;
   CandidateFit fit;
   std::vector<std::size_t> columns;
   columns_of(space.space(), choices, columns);
+  // the sums of cv_sse_of and own_scores, from the same coefficients
+  double sse = 0.0;
+  OwnScores sums;
+  for (std::size_t f = 0; f < grams.n_folds; ++f) {
+    if (!fit.solve(grams.training[f], order, columns, y)) return {kInfinity, kInfinity, kInfinity, columns.size()};
+    sse += fit.held_out_sse(grams.validation[f], order, columns, y);
+    if (own != nullptr) add_own_sums(grams, *own, f, columns, fit, sums);
+  }
+  if (!fit.solve(grams.all, order, columns, y)) return {kInfinity, kInfinity, kInfinity, columns.size()};
   const double unit = grams.response_scale[response] * grams.response_scale[response];
-  Figures figures;
-  figures.n_columns = columns.size();
-  figures.cv_sse = cv_sse_of(grams, columns, response, fit) * unit;
-  figures.rss = std::numeric_limits<double>::infinity();
-  figures.own_sse = figures.cv_sse;
-  const std::size_t y = grams.n_columns + response;
-  if (fit.solve(grams.all, grams.order(), columns, y))
-    figures.rss = std::max(0.0, fit.held_out_sse(grams.all, grams.order(), columns, y)) * unit;
-  if (own_units_of(grams, response) == nullptr) return figures;
-  const Choice choice{response, choices};
-  figures.own_sse = own_scores(space.space(), grams, std::span(&choice, 1), 1).front().working_response;
-  return figures;
+  const double cv_sse = std::max(sse, 0.0) * unit;
+  return {cv_sse, std::max(0.0, fit.held_out_sse(grams.all, order, columns, y)) * unit,
+          own == nullptr ? cv_sse : own_scores_of(*own, sums).working_response, columns.size()};
 }
 
 void ResponseLists::add(const Choices& choices, const Figures& figures) {

@@ -17,24 +17,33 @@ constexpr std::size_t kGrain = 256;
 OwnScores score(const base::GramSet& grams, const base::GramSet::OwnUnits& own, std::span<const std::size_t> columns,
                 CandidateFit& fit) {
   constexpr double kInfinity = std::numeric_limits<double>::infinity();
-  const std::size_t y = grams.n_columns;
-  const std::size_t shift = grams.n_columns + 1;
-  const std::size_t order = grams.n_columns + 2;
   OwnScores sums;
   for (std::size_t f = 0; f < grams.n_folds; ++f) {
     if (!fit.solve(grams.training[f], grams.order(), columns, grams.n_columns + own.response))
       return {kInfinity, kInfinity};
-    const std::vector<double>& validation = own.validation[f];
-    const double weighted = fit.held_out_sse(validation, order, columns, y);
-    sums.pilot_weight += weighted;
-    sums.working_response +=
-        weighted + 2.0 * fit.held_out_product(validation, order, columns, y, shift) + validation[shift + shift * order];
+    add_own_sums(grams, own, f, columns, fit, sums);
   }
-  // rounding can carry an exact fit below zero
-  return {std::max(sums.pilot_weight, 0.0) * own.sse_factor, std::max(sums.working_response, 0.0) * own.sse_factor};
+  return own_scores_of(own, sums);
 }
 
 }  // namespace
+
+void add_own_sums(const base::GramSet& grams, const base::GramSet::OwnUnits& own, std::size_t f,
+                  std::span<const std::size_t> columns, const CandidateFit& fit, OwnScores& sums) {
+  const std::size_t y = grams.n_columns;
+  const std::size_t shift = grams.n_columns + 1;
+  const std::size_t order = grams.n_columns + 2;
+  const std::vector<double>& validation = own.validation[f];
+  const double weighted = fit.held_out_sse(validation, order, columns, y);
+  sums.pilot_weight += weighted;
+  sums.working_response +=
+      weighted + 2.0 * fit.held_out_product(validation, order, columns, y, shift) + validation[shift + shift * order];
+}
+
+OwnScores own_scores_of(const base::GramSet::OwnUnits& own, const OwnScores& sums) {
+  // rounding can carry an exact fit below zero
+  return {std::max(sums.pilot_weight, 0.0) * own.sse_factor, std::max(sums.working_response, 0.0) * own.sse_factor};
+}
 
 const base::GramSet::OwnUnits* own_units_of(const base::GramSet& grams, std::size_t response) {
   for (const auto& own : grams.own_units)

@@ -2,6 +2,7 @@
 #pragma once
 
 #include "base/gram.hpp"
+#include "search/candidate_fit.hpp"
 #include "search/space.hpp"
 
 #include <cstddef>
@@ -19,6 +20,12 @@ struct OwnScores {
 
 /// The matrices of a response, or null where its scale is own units already.
 const base::GramSet::OwnUnits* own_units_of(const base::GramSet& grams, std::size_t response);
+
+/// Adds the standardised sums of fold f of a candidate whose coefficients there `fit` holds.
+void add_own_sums(const base::GramSet& grams, const base::GramSet::OwnUnits& own, std::size_t f,
+                  std::span<const std::size_t> columns, const CandidateFit& fit, OwnScores& sums);
+/// The scores that sums over all folds are.
+OwnScores own_scores_of(const base::GramSet::OwnUnits& own, const OwnScores& sums);
 
 /// Scores of candidates whose response has own-units matrices, in the order given; the same bits for any number of
 /// threads. Cost O(k³) per candidate and fold for k columns.
