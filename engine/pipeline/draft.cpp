@@ -31,7 +31,7 @@ std::map<std::string, std::string> set_aside(const Prepared& prepared, const Rol
   return reasons;
 }
 
-/// Limits the terms where the whole space is too large to be drafted.
+/// The limit of terms that would let every candidate be scored, where the whole space is too large for that.
 void limit_terms(DraftFindings& findings, const search::Space& space) {
   search::BigCount total = 0;
   const auto by_terms = search::count_by_terms(space);

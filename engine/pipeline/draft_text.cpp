@@ -226,9 +226,9 @@ void write_max_terms(PlanText& text, const run::Plan& plan, const DraftFindings&
   if (plan.search.max_terms)
     text.set("max_terms", std::to_string(*plan.search.max_terms), "predictors in one candidate at most");
   else if (findings.max_terms)
-    text.set("max_terms", std::to_string(*findings.max_terms),
-             "predictors in one candidate at most: the whole space would take too long, this one holds " +
-                 findings.candidates + " candidates");
+    text.off("max_terms", std::to_string(*findings.max_terms),
+             "predictors in one candidate at most: with this every candidate can be scored, " + findings.candidates +
+                 " of them; without a limit the space is searched by proof and local search");
   else
     text.off(
         "max_terms", "8",

@@ -215,7 +215,7 @@ TEST_CASE("pipeline: a draft ignores columns that cannot serve and says why", "[
   CHECK(pipeline::prepare(*pipeline::load_table(plan), plan).ok());
 }
 
-TEST_CASE("pipeline: a draft limits the terms when the whole space is too large", "[pipeline][unit]") {
+TEST_CASE("pipeline: a draft offers a limit of terms when the whole space is too large", "[pipeline][unit]") {
   const TemporaryFolder folder;
   std::mt19937_64 engine(6);
   std::lognormal_distribution<double> draw(0.0, 1.0);
@@ -226,7 +226,12 @@ TEST_CASE("pipeline: a draft limits the terms when the whole space is too large"
     for (int j = 0; j < 40; ++j) table << draw(engine) << ',';
     table << draw(engine) << '\n';
   }
-  const run::Plan plan = parsed(drafted(plan_for(folder.write("wide.csv", table.str()), "y")));
+  std::string text = drafted(plan_for(folder.write("wide.csv", table.str()), "y"));
+  CHECK_FALSE(parsed(text).search.max_terms);
+  const std::size_t offered = text.find("# max_terms");
+  REQUIRE(offered != std::string::npos);
+  text.erase(offered, 2);
+  const run::Plan plan = parsed(text);
   REQUIRE(plan.search.max_terms);
   const auto prepared = pipeline::prepare(*pipeline::load_table(plan), plan);
   REQUIRE(prepared);

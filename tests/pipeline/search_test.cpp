@@ -147,9 +147,11 @@ TEST_CASE("pipeline: a search stopped before anything was scored says so", "[pip
   CHECK_THAT(outcome.error().message, Catch::Contains("stopped before it had examined any candidate"));
 }
 
-TEST_CASE("pipeline: a space beyond the budget is refused with what to change", "[pipeline][unit]") {
+TEST_CASE("pipeline: a space beyond the budget is refused with what to change when every candidate is asked for",
+          "[pipeline][unit]") {
   const TemporaryFolder folder;
   run::Plan plan = plan_for(kDemo, "energy_kwh");
+  plan.search.strategy = "every";
   plan.search.budget_seconds = 0.001;
   pipeline::SearchOptions options;
   options.out = folder.file("refused.run");
