@@ -82,6 +82,21 @@ double prices_barrier(const Prices& prices, const Variables& at) {
   return std::log(fewest) + std::log(most) + std::log(at.lambda) + std::log(to_bound);
 }
 
+/// M − D = LLᵀ and L⁻¹(b − g); false where it is not positive definite.
+bool factor_here(const Reduced& problem, const Variables& at, Factor& factor) {
+  factor.lower.set_lower(problem.m);
+  auto difference = factor.lower.matrix();
+  for (const OpenPredictor& predictor : problem.open) {
+    const Eigen::Index i = predictor.first, n = predictor.n_columns;
+    difference.block(i, i, n, n) -= at.d.block(i, i, n, n);  // above the diagonal anything
+  }
+  if (!factor_lower(factor.lower)) return false;
+  factor.residual.assign(factor.lower.padded_order() / kLineLanes, Line());
+  Eigen::Map<Eigen::VectorXd>(factor.residual_data(), problem.b.size()) = problem.b - at.g;
+  solve_lower(factor.lower, factor.residual_data());
+  return true;
+}
+
 }  // namespace
 
 void Variables::set_along(const Variables& point, double length, const Variables& direction, const Reduced& problem) {
@@ -121,13 +136,11 @@ double merit(const Reduced& problem, const Prices& prices, double mu, const Vari
   for (std::size_t j = 0; j < problem.open.size() && barrier > kOutside; ++j)
     barrier += predictor_barrier(problem.open[j], at.u(static_cast<Eigen::Index>(j)), at);
   if (!(barrier > kOutside)) return kOutside;
-  factor.lower = problem.m - at.d;
-  const Eigen::LLT<Eigen::Ref<Eigen::MatrixXd>> cholesky(factor.lower);
-  if (cholesky.info() != Eigen::Success) return kOutside;
-  barrier += 2.0 * factor.lower.diagonal().array().log().sum();
-  factor.residual = problem.b - at.g;
-  factor.lower.triangularView<Eigen::Lower>().solveInPlace(factor.residual);
-  const double value = problem.yy - factor.residual.squaredNorm() - at.u.sum() - at.s + mu * barrier;
+  if (!factor_here(problem, at, factor)) return kOutside;
+  const auto n = problem.b.size();
+  barrier += 2.0 * factor.lower.matrix().diagonal().array().log().sum();
+  const Eigen::Map<const Eigen::VectorXd> residual(factor.residual_data(), n);
+  const double value = problem.yy - residual.squaredNorm() - at.u.sum() - at.s + mu * barrier;
   return std::isfinite(value) ? value : kOutside;
 }
 
