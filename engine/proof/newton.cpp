@@ -37,7 +37,7 @@ struct Newton::State {
     at.g = start.g;
     at.u.setZero(static_cast<Eigen::Index>(to_solve.open.size()));
     at.lambda = start.lambda;
-    trial = direction = at;
+    trial = kept = direction = at;
     inside = mu > 0.0 && centre(to_solve, prices, mu, at) && evaluate_here();
   }
 
@@ -52,10 +52,16 @@ struct Newton::State {
     return merit(*problem, prices, mu, trial, trial_factor);
   }
 
-  void accept(double trial_value) {
-    std::swap(at, trial);
-    std::swap(factor, trial_factor);
-    value = trial_value;
+  /// What was tried last becomes the best so far.
+  void keep() {
+    std::swap(kept, trial);
+    std::swap(kept_factor, trial_factor);
+  }
+
+  void accept(double kept_value) {
+    std::swap(at, kept);
+    std::swap(factor, kept_factor);
+    value = kept_value;
   }
 
   double search(double decrement);
@@ -64,8 +70,8 @@ struct Newton::State {
   Prices prices;
   NewtonSystem system;
   ConjugateGradients solver;
-  Variables at, trial, direction;
-  Factor factor, trial_factor;
+  Variables at, trial, kept, direction;
+  Factor factor, trial_factor, kept_factor;
   double mu, value = 0.0;
   bool inside = false;  ///< the point lies in the domain, `factor` and `value` are its own
 };
@@ -78,17 +84,16 @@ double Newton::State::search(double decrement) {
     if (length <= kShortestStep) return 0.0;
     reached = try_length(length);
   }
-  if (decrement <= kFarFromCentre * mu) {
-    accept(reached);
-    return length;
-  }
-  for (int i = 0; i < kMostShortenings; ++i) {
-    const double shorter = try_length(length * kFaster);
-    if (!(shorter > reached)) break;
-    length *= kFaster;
-    reached = shorter;
-  }
-  accept(try_length(length));
+  keep();
+  if (decrement > kFarFromCentre * mu)
+    for (int i = 0; i < kMostShortenings; ++i) {
+      const double shorter = try_length(length * kFaster);
+      if (!(shorter > reached)) break;
+      keep();
+      length *= kFaster;
+      reached = shorter;
+    }
+  accept(reached);
   return length;
 }
 

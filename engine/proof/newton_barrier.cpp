@@ -5,6 +5,7 @@
 #include <algorithm>
 #include <cmath>
 #include <limits>
+#include <vector>
 
 namespace formsieve::proof {
 
@@ -47,23 +48,20 @@ double crossing(double most, const Function& falling) {
 }
 
 /// u of one predictor: −u + μ[ln u + Σ_f ln(u + c_f λ − h_f)] is largest, the first logarithm only where it may be
-/// absent. NaN where a D_ff is not positive definite.
-double central_u(const OpenPredictor& predictor, double mu, const Variables& at) {
-  double lowest = predictor.must ? kOutside : 0.0;
+/// absent. NaN where a D_ff is not positive definite. `bounds` is for work.
+double central_u(const OpenPredictor& predictor, double mu, const Variables& at, std::vector<double>& bounds) {
+  bounds.clear();
+  if (!predictor.must) bounds.push_back(0.0);
   for (const OpenForm& form : predictor.forms) {
-    const double charge = form_value(form, at).charge;
-    if (std::isnan(charge)) return charge;
-    lowest = std::max(lowest, charge - static_cast<double>(form.n_columns) * at.lambda);
+    bounds.push_back(form_value(form, at).charge - static_cast<double>(form.n_columns) * at.lambda);
+    if (std::isnan(bounds.back())) return bounds.back();
   }
-  const auto slope = [&](double above_lowest) {
-    double sum = predictor.must ? 0.0 : 1.0 / (lowest + above_lowest);
-    for (const OpenForm& form : predictor.forms) {
-      const double bound = form_value(form, at).charge - static_cast<double>(form.n_columns) * at.lambda;
-      sum += 1.0 / (lowest - bound + above_lowest);
-    }
-    return mu * sum - 1.0;
-  };
-  return lowest + crossing(mu * static_cast<double>(predictor.forms.size() + 1), slope);
+  const double lowest = *std::max_element(bounds.begin(), bounds.end());
+  return lowest + crossing(mu * static_cast<double>(bounds.size()), [&](double above_lowest) {
+           double sum = 0.0;
+           for (const double bound : bounds) sum += 1.0 / (lowest - bound + above_lowest);
+           return mu * sum - 1.0;
+         });
 }
 
 double central_s(const Prices& prices, double mu, const Variables& at) {
@@ -145,8 +143,9 @@ double merit(const Reduced& problem, const Prices& prices, double mu, const Vari
 }
 
 bool centre(const Reduced& problem, const Prices& prices, double mu, Variables& at) {
+  std::vector<double> work;
   for (std::size_t j = 0; j < problem.open.size(); ++j) {
-    const double u = central_u(problem.open[j], mu, at);
+    const double u = central_u(problem.open[j], mu, at, work);
     if (!std::isfinite(u)) return false;
     at.u(static_cast<Eigen::Index>(j)) = u;
   }

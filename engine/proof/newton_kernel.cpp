@@ -32,67 +32,105 @@ struct BlocksView {
   const Line* blocks;
   std::size_t n_rows;  ///< columns of the predictor
   std::size_t n_groups, n_columns;
-  const Line* d;  ///< [group][entry]
+  const Line* d;  ///< [group][column][row]
   const Line* w;  ///< first group's
   std::size_t w_step;
-  Line* work;  ///< [group][column]
+  Line* work;  ///< [group][column][row of two]
+
+  const Line* row(std::size_t g, std::size_t i) const { return blocks + (g * n_rows + i) * n_columns; }
 };
 
-/// work ← row `row` of A_j· times D̃, group by group; returns that row times w.
-template <std::size_t kColumns>
-HWY_INLINE double multiply_row(const BlocksView& view, std::size_t row) {
-  const std::size_t q = kColumns > 0 ? kColumns : view.n_columns, entries = q * (q + 1) / 2;
-  Vector sum = hn::Zero(Tag());
-  for (std::size_t g = 0; g < view.n_groups; ++g) {
-    const Line* HWY_RESTRICT left = view.blocks + (g * view.n_rows + row) * q;
-    const Line* HWY_RESTRICT d = view.d + g * entries;
-    const Line* HWY_RESTRICT w = view.w + g * view.w_step;
-    Line* HWY_RESTRICT out = view.work + g * q;
-    for (std::size_t part = 0; part < kLineLanes; part += kLanes)
-      for (std::size_t k = 0; k < q; ++k) {
-        Vector product = hn::Zero(Tag());
-        for (std::size_t i = 0; i < q; ++i)
-          product = hn::MulAdd(load(left[i], part), load(d[i < k ? upper_index(i, k, q) : upper_index(k, i, q)], part),
-                               product);
-        store(product, out[k], part);
-        sum = hn::MulAdd(load(left[k], part), load(w[k], part), sum);
-      }
-  }
-  return sum_of_lanes(sum);
-}
-
-/// Σ over the groups of work times row `row` of A_j·.
-template <std::size_t kColumns>
-HWY_INLINE double product_with_row(const BlocksView& view, std::size_t row) {
+/// work ← kRows rows of A_j· from `row` times D̃, group by group; sums ← these rows times w. Two rows share what is
+/// loaded of D̃.
+template <std::size_t kColumns, std::size_t kRows>
+HWY_INLINE void multiply_rows(const BlocksView& view, std::size_t row, double* HWY_RESTRICT sums) {
   const std::size_t q = kColumns > 0 ? kColumns : view.n_columns;
-  Vector even = hn::Zero(Tag()), odd = hn::Zero(Tag());
+  constexpr std::size_t kKept = kColumns > 0 ? kColumns : 1;  // entries of a row in registers
+  Vector by_w[kRows];
+  for (Vector& sum : by_w) sum = hn::Zero(Tag());
   for (std::size_t g = 0; g < view.n_groups; ++g) {
-    const Line* HWY_RESTRICT left = view.blocks + (g * view.n_rows + row) * q;
-    const Line* HWY_RESTRICT right = view.work + g * q;
+    const Line* HWY_RESTRICT left = view.row(g, row);
+    const Line* HWY_RESTRICT w = view.w + g * view.w_step;
     for (std::size_t part = 0; part < kLineLanes; part += kLanes) {
-      for (std::size_t k = 0; k + 1 < q; k += 2) {
-        even = hn::MulAdd(load(left[k], part), load(right[k], part), even);
-        odd = hn::MulAdd(load(left[k + 1], part), load(right[k + 1], part), odd);
+      Vector kept[kRows][kKept];
+      for (std::size_t r = 0; r < kRows; ++r)
+        for (std::size_t i = 0; i < kKept; ++i) kept[r][i] = load(left[r * q + i], part);
+      const auto entry = [&](std::size_t r, std::size_t i)
+                             HWY_ATTR { return kColumns > 0 ? kept[r][i] : load(left[r * q + i], part); };
+      for (std::size_t r = 0; r < kRows; ++r)
+        for (std::size_t i = 0; i < q; ++i) by_w[r] = hn::MulAdd(entry(r, i), load(w[i], part), by_w[r]);
+      const Line* HWY_RESTRICT d = view.d + g * q * q;
+      Line* HWY_RESTRICT out = view.work + g * q * kRows;
+      for (std::size_t k = 0; k < q; ++k, d += q, out += kRows) {
+        Vector product[kRows];
+        for (Vector& each : product) each = hn::Zero(Tag());
+        for (std::size_t i = 0; i < q; ++i)
+          for (std::size_t r = 0; r < kRows; ++r) product[r] = hn::MulAdd(entry(r, i), load(d[i], part), product[r]);
+        for (std::size_t r = 0; r < kRows; ++r) store(product[r], out[r], part);
       }
-      if (q % 2 == 1) even = hn::MulAdd(load(left[q - 1], part), load(right[q - 1], part), even);
     }
   }
-  return sum_of_lanes(hn::Add(even, odd));
+  for (std::size_t r = 0; r < kRows; ++r) sums[r] = sum_of_lanes(by_w[r]);
 }
 
-/// Adds (A D̃ A)_jj and (A w)_j to the lane of predictor j; `order` is the q of its group.
-template <std::size_t kColumns>
-void multiply_predictor(const BlocksView& view, double mu, std::size_t order, std::size_t lane, Line* out) {
-  Line* const w = out + order * (order + 1) / 2 + 1;
-  for (std::size_t row = 0; row < view.n_rows; ++row) {
-    w[row].at[lane] += 2.0 * multiply_row<kColumns>(view, row);
-    for (std::size_t other = 0; other < row; ++other)
-      out[upper_index(other, row, order)].at[lane] += mu * kRoot2 * product_with_row<kColumns>(view, other);
-    out[upper_index(row, row, order)].at[lane] += mu * product_with_row<kColumns>(view, row);
+/// products[r][o] ← Σ over the groups of row r of work times row `other` + o of A_j·.
+template <std::size_t kColumns, std::size_t kRows, std::size_t kOthers>
+HWY_INLINE void multiply_pairs(const BlocksView& view, std::size_t other, double (&products)[2][2]) {
+  const std::size_t q = kColumns > 0 ? kColumns : view.n_columns;
+  Vector sum[kRows][kOthers];
+  for (auto& row : sum)
+    for (Vector& each : row) each = hn::Zero(Tag());
+  for (std::size_t g = 0; g < view.n_groups; ++g) {
+    const Line* HWY_RESTRICT right = view.row(g, other);
+    const Line* HWY_RESTRICT left = view.work + g * q * kRows;
+    for (std::size_t part = 0; part < kLineLanes; part += kLanes)
+      for (std::size_t k = 0; k < q; ++k)
+        for (std::size_t o = 0; o < kOthers; ++o)
+          for (std::size_t r = 0; r < kRows; ++r)
+            sum[r][o] = hn::MulAdd(load(left[k * kRows + r], part), load(right[o * q + k], part), sum[r][o]);
+  }
+  for (std::size_t r = 0; r < kRows; ++r)
+    for (std::size_t o = 0; o < kOthers; ++o) products[r][o] = sum_of_lanes(sum[r][o]);
+}
+
+/// Where what belongs to one predictor goes: its group's variables, its lane.
+struct PredictorOut {
+  Line* lines;
+  std::size_t lane, order;  ///< q of the group
+
+  HWY_INLINE void add_d(std::size_t row, std::size_t other, double value) const {
+    if (other <= row) lines[upper_index(other, row, order)].at[lane] += other < row ? kRoot2 * value : value;
+  }
+  HWY_INLINE void add_w(std::size_t row, double value) const {
+    lines[order * (order + 1) / 2 + 1 + row].at[lane] += value;
+  }
+};
+
+template <std::size_t kColumns, std::size_t kRows>
+HWY_INLINE void multiply_with_rows(const BlocksView& view, double mu, std::size_t row, const PredictorOut& out) {
+  double sums[kRows], products[2][2];
+  multiply_rows<kColumns, kRows>(view, row, sums);
+  for (std::size_t r = 0; r < kRows; ++r) out.add_w(row + r, 2.0 * sums[r]);
+  for (std::size_t other = 0; other < row + kRows; other += 2) {
+    const bool two = other + 1 < row + kRows;
+    if (two)
+      multiply_pairs<kColumns, kRows, 2>(view, other, products);
+    else
+      multiply_pairs<kColumns, kRows, 1>(view, other, products);
+    for (std::size_t r = 0; r < kRows; ++r)
+      for (std::size_t o = 0; o < (two ? 2 : 1); ++o) out.add_d(row + r, other + o, mu * products[r][o]);
   }
 }
 
-using MultiplyPredictor = void (*)(const BlocksView&, double, std::size_t, std::size_t, Line*);
+/// Adds (A D̃ A)_jj and (A w)_j.
+template <std::size_t kColumns>
+void multiply_predictor(const BlocksView& view, double mu, const PredictorOut& out) {
+  std::size_t row = 0;
+  for (; row + 2 <= view.n_rows; row += 2) multiply_with_rows<kColumns, 2>(view, mu, row, out);
+  if (row < view.n_rows) multiply_with_rows<kColumns, 1>(view, mu, row, out);
+}
+
+using MultiplyPredictor = void (*)(const BlocksView&, double, const PredictorOut&);
 
 MultiplyPredictor multiply_of(std::size_t n_columns) {
   switch (n_columns) {
@@ -117,23 +155,26 @@ MultiplyPredictor multiply_of(std::size_t n_columns) {
   }
 }
 
-/// The entries of D̃ of a class of groups without their √2.
-void take_out_roots(const Lanes& lanes, const LaneClass& of, const Line* in, Line* out) {
-  const Vector scale = set(1.0 / kRoot2);
-  for (std::size_t g = of.first_group; g < of.first_group + of.n_groups; ++g) {
-    const Line* entry = in + lanes.groups()[g].first;
-    for (std::size_t i = 0; i < of.n_columns; ++i)
-      for (std::size_t k = i; k < of.n_columns; ++k, ++entry, ++out)
-        for (std::size_t part = 0; part < kLineLanes; part += kLanes)
-          store(i == k ? load(*entry, part) : hn::Mul(load(*entry, part), scale), *out, part);
+/// The whole D̃ of a class of groups, without their √2.
+void unpack(const Lanes& lanes, const LaneClass& of, const Line* in, Line* HWY_RESTRICT out) {
+  const std::size_t q = of.n_columns;
+  for (std::size_t g = of.first_group; g < of.first_group + of.n_groups; ++g, out += q * q) {
+    const Line* HWY_RESTRICT entry = in + lanes.groups()[g].first;
+    for (std::size_t i = 0; i < q; ++i)
+      for (std::size_t k = i; k < q; ++k, ++entry)
+        for (std::size_t part = 0; part < kLineLanes; part += kLanes) {
+          const Vector value = hn::Mul(load(*entry, part), set(i == k ? 1.0 : 1.0 / kRoot2));
+          store(value, out[i * q + k], part);
+          store(value, out[k * q + i], part);
+        }
   }
 }
 
 void multiply_all_blocks(const Lanes& lanes, double mu, const Line* in, Line* out, Line* work) {
   for (const LaneClass& of : lanes.classes()) {
     const LaneGroup& first = lanes.groups()[of.first_group];
-    Line* const products = work + of.n_groups * first.n_entries();
-    take_out_roots(lanes, of, in, work);
+    Line* const products = work + of.n_groups * of.n_columns * of.n_columns;
+    unpack(lanes, of, in, work);
     const MultiplyPredictor multiply = multiply_of(of.n_columns);
     for (std::size_t j = 0; j < lanes.places().size(); ++j) {
       const LanePlace& place = lanes.places()[j];
@@ -146,7 +187,7 @@ void multiply_all_blocks(const Lanes& lanes, double mu, const Line* in, Line* ou
                             in + first.w_line(),
                             first.n_variables(),
                             products};
-      multiply(view, mu, group.n_columns, place.lane, out + group.first);
+      multiply(view, mu, {out + group.first, place.lane, group.n_columns});
     }
   }
 }
@@ -362,8 +403,8 @@ void multiply_blocks(const Lanes& lanes, double mu, const Line* in, Line* out, L
 std::size_t kernel_work(const Lanes& lanes) {
   std::size_t entries = 0, columns = 0, most = 0;
   for (const LaneGroup& group : lanes.groups()) {
-    entries += group.n_entries();
-    columns += group.n_columns;
+    entries += group.n_columns * group.n_columns;
+    columns += 2 * group.n_columns;
     most = std::max(most, group.n_columns * group.n_columns);
   }
   return std::max(entries + columns, lanes.groups().empty() ? most : lanes.groups().front().n_columns * most);

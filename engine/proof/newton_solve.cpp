@@ -10,7 +10,7 @@ namespace formsieve::proof {
 namespace {
 
 /// Iterations end when what the preconditioner sees of the residual is this share of the decrement so far.
-constexpr double kTolerance_rel = 3e-3;
+constexpr double kTolerance_rel = 1e-2;
 constexpr int kMostIterations = 150;
 
 /// 2A in the bases of the predictors, lower triangle.
