@@ -19,7 +19,7 @@ ARROWS = {
     "survey": (["base", "table", "forms"], BOOST_MATH),
     "design": (["base", "table", "forms"], ("hwy/",) + EIGEN),
     "search": (["base"], ("boost/multiprecision/", "hwy/")),
-    "proof": (["base", "search"], ("boost/multiprecision/",) + EIGEN),
+    "proof": (["base", "search"], ("boost/multiprecision/", "hwy/") + EIGEN),
     "fit": (["base"], EIGEN),
     "checks": (["base", "design", "forms", "fit:"], EIGEN + BOOST_MATH),
     "backtransform": (["base", "design", "forms", "fit:"], EIGEN + BOOST_MATH),

@@ -4,10 +4,11 @@
 #include "proof/newton_solve.hpp"
 #include "proof/newton_system.hpp"
 
-#include <Eigen/Cholesky>
+#include <Eigen/Core>
 
 #include <cmath>
-#include <limits>
+#include <utility>
+#include <vector>
 
 namespace formsieve::proof {
 
@@ -27,7 +28,7 @@ constexpr int kMostShortenings = 6;
 
 struct Newton::State {
   State(const Reduced& to_solve, const ColumnRange& range, const DualPoint& start)
-      : problem(&to_solve), prices(to_solve, range, start.lambda), system(to_solve), mu(start.mu) {
+      : problem(&to_solve), prices(to_solve, range, start.lambda), system(to_solve), solver(system), mu(start.mu) {
     at.d.setZero(to_solve.m.rows(), to_solve.m.cols());
     for (const OpenPredictor& predictor : to_solve.open) {
       const Eigen::Index i = predictor.first, n = predictor.n_columns;
@@ -36,7 +37,7 @@ struct Newton::State {
     at.g = start.g;
     at.u.setZero(static_cast<Eigen::Index>(to_solve.open.size()));
     at.lambda = start.lambda;
-    trial = direction = at;
+    trial = kept = direction = at;
     inside = mu > 0.0 && centre(to_solve, prices, mu, at) && evaluate_here();
   }
 
@@ -51,10 +52,16 @@ struct Newton::State {
     return merit(*problem, prices, mu, trial, trial_factor);
   }
 
-  void accept(double trial_value) {
-    std::swap(at, trial);
-    std::swap(factor, trial_factor);
-    value = trial_value;
+  /// What was tried last becomes the best so far.
+  void keep() {
+    std::swap(kept, trial);
+    std::swap(kept_factor, trial_factor);
+  }
+
+  void accept(double kept_value) {
+    std::swap(at, kept);
+    std::swap(factor, kept_factor);
+    value = kept_value;
   }
 
   double search(double decrement);
@@ -63,9 +70,8 @@ struct Newton::State {
   Prices prices;
   NewtonSystem system;
   ConjugateGradients solver;
-  Variables at, trial, direction;
-  Factor factor, trial_factor;
-  Eigen::VectorXd solution;
+  Variables at, trial, kept, direction;
+  Factor factor, trial_factor, kept_factor;
   double mu, value = 0.0;
   bool inside = false;  ///< the point lies in the domain, `factor` and `value` are its own
 };
@@ -78,17 +84,16 @@ double Newton::State::search(double decrement) {
     if (length <= kShortestStep) return 0.0;
     reached = try_length(length);
   }
-  if (decrement <= kFarFromCentre * mu) {
-    accept(reached);
-    return length;
-  }
-  for (int i = 0; i < kMostShortenings; ++i) {
-    const double shorter = try_length(length * kFaster);
-    if (!(shorter > reached)) break;
-    length *= kFaster;
-    reached = shorter;
-  }
-  accept(try_length(length));
+  keep();
+  if (decrement > kFarFromCentre * mu)
+    for (int i = 0; i < kMostShortenings; ++i) {
+      const double shorter = try_length(length * kFaster);
+      if (!(shorter > reached)) break;
+      keep();
+      length *= kFaster;
+      reached = shorter;
+    }
+  accept(reached);
   return length;
 }
 
@@ -101,10 +106,11 @@ Newton::Step Newton::step() {
   State& state = *state_;
   Step step;
   if (!state.inside || !state.system.build(state.at, state.factor, state.prices, state.mu)) return step;
-  if (!state.solver.solve(state.system, state.solution)) return step;
-  const double decrement = state.system.gradient().dot(state.solution);
+  if (!state.solver.solve(state.system)) return step;
+  step.iterations = state.solver.n_iterations();
+  const double decrement = state.solver.decrement();
   if (!(decrement >= 0.0)) return step;  // NaN too
-  state.system.expand(state.solution, state.direction);
+  state.system.expand(state.solver.solution(), state.direction);
   step.length = state.search(decrement);
   step.usable = step.length > 0.0;
   step.decrement = decrement / state.mu;
@@ -122,8 +128,9 @@ DualPoint Newton::point() const {
   const State& state = *state_;
   DualPoint point{state.at.d, state.at.g, {}, state.at.lambda, state.mu};
   if (!state.inside) return point;
-  point.v = state.factor.residual;
-  state.factor.lower.triangularView<Eigen::Lower>().transpose().solveInPlace(point.v);
+  std::vector<Line> v = state.factor.residual;
+  solve_transposed(state.factor.lower, v.data()->at);
+  point.v = Eigen::Map<const Eigen::VectorXd>(v.data()->at, state.at.g.size());
   return point;
 }
 

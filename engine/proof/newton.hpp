@@ -29,6 +29,7 @@ class Newton {
     bool usable = false;     ///< false: a factorisation failed or no step length was acceptable; the point is unchanged
     double decrement = 0.0;  ///< Newton decrement over mu
     double length = 0.0;
+    int iterations = 0;  ///< of conjugate gradients
   };
   Step step();
 

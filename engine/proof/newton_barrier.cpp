@@ -5,6 +5,7 @@
 #include <algorithm>
 #include <cmath>
 #include <limits>
+#include <vector>
 
 namespace formsieve::proof {
 
@@ -47,23 +48,20 @@ double crossing(double most, const Function& falling) {
 }
 
 /// u of one predictor: −u + μ[ln u + Σ_f ln(u + c_f λ − h_f)] is largest, the first logarithm only where it may be
-/// absent. NaN where a D_ff is not positive definite.
-double central_u(const OpenPredictor& predictor, double mu, const Variables& at) {
-  double lowest = predictor.must ? kOutside : 0.0;
+/// absent. NaN where a D_ff is not positive definite. `bounds` is for work.
+double central_u(const OpenPredictor& predictor, double mu, const Variables& at, std::vector<double>& bounds) {
+  bounds.clear();
+  if (!predictor.must) bounds.push_back(0.0);
   for (const OpenForm& form : predictor.forms) {
-    const double charge = form_value(form, at).charge;
-    if (std::isnan(charge)) return charge;
-    lowest = std::max(lowest, charge - static_cast<double>(form.n_columns) * at.lambda);
+    bounds.push_back(form_value(form, at).charge - static_cast<double>(form.n_columns) * at.lambda);
+    if (std::isnan(bounds.back())) return bounds.back();
   }
-  const auto slope = [&](double above_lowest) {
-    double sum = predictor.must ? 0.0 : 1.0 / (lowest + above_lowest);
-    for (const OpenForm& form : predictor.forms) {
-      const double bound = form_value(form, at).charge - static_cast<double>(form.n_columns) * at.lambda;
-      sum += 1.0 / (lowest - bound + above_lowest);
-    }
-    return mu * sum - 1.0;
-  };
-  return lowest + crossing(mu * static_cast<double>(predictor.forms.size() + 1), slope);
+  const double lowest = *std::max_element(bounds.begin(), bounds.end());
+  return lowest + crossing(mu * static_cast<double>(bounds.size()), [&](double above_lowest) {
+           double sum = 0.0;
+           for (const double bound : bounds) sum += 1.0 / (lowest - bound + above_lowest);
+           return mu * sum - 1.0;
+         });
 }
 
 double central_s(const Prices& prices, double mu, const Variables& at) {
@@ -80,6 +78,21 @@ double prices_barrier(const Prices& prices, const Variables& at) {
   const double to_bound = prices.most_lambda - at.lambda;
   if (!(fewest > 0.0 && most > 0.0 && at.lambda > 0.0 && to_bound > 0.0)) return kOutside;
   return std::log(fewest) + std::log(most) + std::log(at.lambda) + std::log(to_bound);
+}
+
+/// M − D = LLᵀ and L⁻¹(b − g); false where it is not positive definite.
+bool factor_here(const Reduced& problem, const Variables& at, Factor& factor) {
+  factor.lower.set_lower(problem.m);
+  auto difference = factor.lower.matrix();
+  for (const OpenPredictor& predictor : problem.open) {
+    const Eigen::Index i = predictor.first, n = predictor.n_columns;
+    difference.block(i, i, n, n) -= at.d.block(i, i, n, n);  // above the diagonal anything
+  }
+  if (!factor_lower(factor.lower)) return false;
+  factor.residual.assign(factor.lower.padded_order() / kLineLanes, Line());
+  Eigen::Map<Eigen::VectorXd>(factor.residual_data(), problem.b.size()) = problem.b - at.g;
+  solve_lower(factor.lower, factor.residual_data());
+  return true;
 }
 
 }  // namespace
@@ -121,19 +134,18 @@ double merit(const Reduced& problem, const Prices& prices, double mu, const Vari
   for (std::size_t j = 0; j < problem.open.size() && barrier > kOutside; ++j)
     barrier += predictor_barrier(problem.open[j], at.u(static_cast<Eigen::Index>(j)), at);
   if (!(barrier > kOutside)) return kOutside;
-  factor.lower = problem.m - at.d;
-  const Eigen::LLT<Eigen::Ref<Eigen::MatrixXd>> cholesky(factor.lower);
-  if (cholesky.info() != Eigen::Success) return kOutside;
-  barrier += 2.0 * factor.lower.diagonal().array().log().sum();
-  factor.residual = problem.b - at.g;
-  factor.lower.triangularView<Eigen::Lower>().solveInPlace(factor.residual);
-  const double value = problem.yy - factor.residual.squaredNorm() - at.u.sum() - at.s + mu * barrier;
+  if (!factor_here(problem, at, factor)) return kOutside;
+  const auto n = problem.b.size();
+  barrier += 2.0 * factor.lower.matrix().diagonal().array().log().sum();
+  const Eigen::Map<const Eigen::VectorXd> residual(factor.residual_data(), n);
+  const double value = problem.yy - residual.squaredNorm() - at.u.sum() - at.s + mu * barrier;
   return std::isfinite(value) ? value : kOutside;
 }
 
 bool centre(const Reduced& problem, const Prices& prices, double mu, Variables& at) {
+  std::vector<double> work;
   for (std::size_t j = 0; j < problem.open.size(); ++j) {
-    const double u = central_u(problem.open[j], mu, at);
+    const double u = central_u(problem.open[j], mu, at, work);
     if (!std::isfinite(u)) return false;
     at.u(static_cast<Eigen::Index>(j)) = u;
   }

@@ -1,10 +1,13 @@
 // The variables of the dual of a node and its objective with the barrier (newton.hpp).
 #pragma once
 
+#include "proof/dense_kernel.hpp"
 #include "proof/dual.hpp"
 #include "proof/reduced.hpp"
 
 #include <Eigen/Core>
+
+#include <vector>
 
 namespace formsieve::proof {
 
@@ -35,8 +38,11 @@ struct Prices {
 
 /// M − D = LLᵀ and what follows from it.
 struct Factor {
-  Eigen::MatrixXd lower;     ///< L; above the diagonal anything
-  Eigen::VectorXd residual;  ///< L⁻¹(b − g)
+  PaddedMatrix lower;          ///< L; above the diagonal anything
+  std::vector<Line> residual;  ///< L⁻¹(b − g)
+
+  double* residual_data() { return residual.data()->at; }
+  const double* residual_data() const { return residual.data()->at; }
 };
 
 /// Σ over the forms of ln det [[D_ff, g_f], [g_fᵀ, u + c_f λ]] of one predictor, plus ln u where it may be absent;

@@ -1,10 +1,12 @@
 // Solves the Newton system (newton_system.hpp) by conjugate gradients.
+//
+// What couples D̃ of one predictor with D̃ of another is products of two entries of A between them, small beside the
+// identity that each has by itself, and everything else can be eliminated: a few iterations do what a factorisation of
+// the whole, of five times the order, would do. Every iterate is an ascent direction, and gradientᵀ iterate rises to
+// the decrement of the exact step.
 #pragma once
 
 #include "proof/newton_system.hpp"
-
-#include <Eigen/Cholesky>
-#include <Eigen/Core>
 
 #include <vector>
 
@@ -14,28 +16,30 @@ namespace formsieve::proof {
 /// and w and λ are solved for exactly. Cost: a Cholesky factorisation of order [open columns] + 1.
 class Preconditioner {
  public:
-  bool build(const NewtonSystem& system);
-  void apply(const NewtonSystem& system, const Eigen::VectorXd& in, Eigen::VectorXd& out);
+  bool build(NewtonSystem& system);
+  void apply(const NewtonSystem& system, const Lines& in, Lines& out);
 
  private:
-  struct Block {
-    Eigen::MatrixXd lower;     ///< of the predictor's own D̃ and u
-    Eigen::MatrixXd coupling;  ///< L⁻¹ times what D̃ and u have to do with w and λ
-  };
-  std::vector<Block> blocks_;
-  Eigen::MatrixXd core_;  ///< Cholesky factor for w and λ
-  Eigen::VectorXd right_;
+  void add_group(const Lanes& lanes, const LaneGroup& group);
+
+  PaddedMatrix core_;  ///< Cholesky factor for w and λ
+  Lines right_, rest_;
 };
 
 class ConjugateGradients {
  public:
-  /// False where a factorisation failed. Stops when more iterations would add little to slopeᵀ solution.
-  bool solve(NewtonSystem& system, Eigen::VectorXd& solution);
+  explicit ConjugateGradients(const NewtonSystem& system);
+  /// False where a factorisation failed. Stops when more iterations would add little to gradientᵀ solution.
+  bool solve(NewtonSystem& system);
+  const Lines& solution() const { return solution_; }
+  /// gradientᵀ solution.
+  double decrement() const { return decrement_; }
   int n_iterations() const { return n_iterations_; }
 
  private:
   Preconditioner preconditioner_;
-  Eigen::VectorXd residual_, scaled_, along_, image_;
+  Lines solution_, residual_, scaled_, along_, image_;
+  double decrement_ = 0.0;
   int n_iterations_ = 0;
 };
 

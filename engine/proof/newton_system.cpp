@@ -1,7 +1,10 @@
 #include "proof/newton_system.hpp"
 
+#include "proof/newton_kernel.hpp"
+
 #include <Eigen/Cholesky>
 
+#include <algorithm>
 #include <cmath>
 #include <numbers>
 
@@ -11,186 +14,230 @@ namespace {
 
 constexpr double kRoot2 = std::numbers::sqrt2;
 
-/// Entries of a linear function of a symmetric matrix D̃ ↦ tr(C D̃), C of any shape, in the order of `unpack`.
-template <class Out>
-void pack(const Eigen::MatrixXd& c, Out&& entries) {
-  Eigen::Index at = 0;
-  for (Eigen::Index i = 0; i < c.rows(); ++i) {
-    entries(at++) = c(i, i);
-    for (Eigen::Index k = i + 1; k < c.cols(); ++k) entries(at++) = (c(i, k) + c(k, i)) / kRoot2;
-  }
+bool is_finite(const Lines& lines) {
+  return std::all_of(lines.begin(), lines.end(), [](const Line& line) {
+    return std::all_of(std::begin(line.at), std::end(line.at), [](double value) { return std::isfinite(value); });
+  });
+}
+
+/// The inverse of the transpose of the factor of a positive definite matrix, in its place; false where it is not. Upper
+/// triangular, zero below.
+bool invert_root(Eigen::Ref<Eigen::MatrixXd> matrix, Eigen::Ref<Eigen::MatrixXd> root) {
+  const Eigen::LLT<Eigen::Ref<Eigen::MatrixXd>> cholesky(matrix);
+  if (cholesky.info() != Eigen::Success) return false;
+  root.setIdentity();
+  matrix.triangularView<Eigen::Lower>().transpose().solveInPlace(root);
+  return true;
 }
 
 }  // namespace
 
-void unpack(const double* entries, Eigen::Ref<Eigen::MatrixXd> matrix) {
-  for (Eigen::Index i = 0; i < matrix.rows(); ++i) {
-    matrix(i, i) = *entries++;
-    for (Eigen::Index k = i + 1; k < matrix.cols(); ++k) matrix(i, k) = matrix(k, i) = *entries++ / kRoot2;
+NewtonSystem::NewtonSystem(const Reduced& problem)
+    : problem_(&problem), lanes_(problem), gradient_(lanes_.n_lines()), kernel_work_(kernel_work(lanes_)) {
+  std::size_t most = 1;
+  for (const OpenPredictor& predictor : problem.open) {
+    most = std::max(most, static_cast<std::size_t>(predictor.n_columns) + 1);
   }
+  for (std::vector<double>* work : {&square_, &product_, &v_, &columns_}) work->resize(most * most);
+  z_.resize(most);
 }
 
-NewtonSystem::NewtonSystem(const Reduced& problem) : problem_(&problem) {
-  Eigen::Index offset = 0;
-  for (const OpenPredictor& predictor : problem.open) {
-    PredictorTerms terms;
-    terms.first = predictor.first;
-    terms.n_columns = predictor.n_columns;
-    terms.offset = offset;
-    terms.n_entries = predictor.n_columns * (predictor.n_columns + 1) / 2;
-    Eigen::Index n_rows = 0;
-    for (const OpenForm& form : predictor.forms) n_rows += (form.n_columns + 1) * (form.n_columns + 2) / 2;
-    terms.jacobian.resize(n_rows, terms.n_variables());
-    terms.by_lambda.resize(n_rows);
-    offset += terms.n_variables();
-    terms_.push_back(std::move(terms));
-  }
-  gradient_.resize(offset + 2);
+NewtonSystem::Small NewtonSystem::small(std::vector<double>& work, std::size_t order) const {
+  return {work.data(), static_cast<Eigen::Index>(order), static_cast<Eigen::Index>(order)};
 }
 
 bool NewtonSystem::build(const Variables& at, const Factor& factor, const Prices& prices, double mu) {
   mu_ = mu;
-  if (!change_basis(at, factor)) return false;
-  gradient_.setZero();
-  for (std::size_t j = 0; j < terms_.size(); ++j) {
-    add_main_slope(terms_[j]);
-    add_predictor(j, at);
-  }
+  invert_factored(factor.lower, inverse_work_, inverse_);
+  x_ = factor.residual;
+  solve_transposed(factor.lower, x_.data()->at);
+  for (std::size_t j = 0; j < lanes_.places().size(); ++j)
+    if (!set_basis(j)) return false;
+  gather_blocks();
+  for (std::size_t j = 0; j < lanes_.places().size(); ++j) change_basis(lanes_, j, kernel_work_.data());
+  std::fill(gradient_.begin(), gradient_.end(), Line());
+  for (std::size_t j = 0; j < lanes_.places().size(); ++j) add_predictor(j, at);
   add_prices(at, prices);
-  return gradient_.allFinite();
+  return is_finite(gradient_);
 }
 
-bool NewtonSystem::change_basis(const Variables&, const Factor& factor) {
-  const Eigen::Index n = factor.lower.rows();
-  a_.setIdentity(n, n);
-  factor.lower.triangularView<Eigen::Lower>().solveInPlace(a_);  // A = L⁻ᵀL⁻¹
-  x_ = a_.transpose() * factor.residual;
-  product_.setZero(n, n);
-  product_.selfadjointView<Eigen::Lower>().rankUpdate(a_.transpose());
-  a_ = product_.selfadjointView<Eigen::Lower>();
-  for (PredictorTerms& terms : terms_) {
-    const Eigen::LLT<Eigen::MatrixXd> cholesky(a_.block(terms.first, terms.first, terms.n_columns, terms.n_columns));
-    if (cholesky.info() != Eigen::Success) return false;
-    terms.basis.setIdentity(terms.n_columns, terms.n_columns);
-    cholesky.matrixU().solveInPlace(terms.basis);
-  }
-  for (const PredictorTerms& terms : terms_) {
-    x_.segment(terms.first, terms.n_columns) =
-        (terms.basis.transpose() * x_.segment(terms.first, terms.n_columns)).eval();
-    a_.middleRows(terms.first, terms.n_columns) =
-        (terms.basis.transpose() * a_.middleRows(terms.first, terms.n_columns)).eval();
-    a_.middleCols(terms.first, terms.n_columns) = (a_.middleCols(terms.first, terms.n_columns) * terms.basis).eval();
+/// R of one predictor, and x in it.
+bool NewtonSystem::set_basis(std::size_t j) {
+  const LanePlace& place = lanes_.places()[j];
+  const auto first = static_cast<Eigen::Index>(place.first), q = static_cast<Eigen::Index>(place.n_columns);
+  Small block = small(product_, place.n_columns), root = small(square_, place.n_columns);
+  block = inverse_.matrix().block(first, first, q, q);
+  if (!invert_root(block, root)) return false;
+  LaneGroup& group = lanes_.groups()[place.group];
+  for (std::size_t i = 0; i < place.n_columns; ++i)
+    for (std::size_t k = i; k < place.n_columns; ++k)
+      group.basis[i * group.n_columns + k].at[place.lane] = square_[i + k * place.n_columns];
+  double* const x = x_.data()->at + place.first;
+  for (std::size_t k = place.n_columns; k-- > 0;) {
+    double sum = 0.0;
+    for (std::size_t i = 0; i <= k; ++i) sum += square_[i + k * place.n_columns] * x[i];
+    x[k] = sum;
   }
   return true;
 }
 
-/// In D̃ and w the slopes are x xᵀ − μI and 2x: w takes −2x xᵀ out of D̃'s own −x xᵀ … with g̃ = w + D̃x.
-void NewtonSystem::add_main_slope(const PredictorTerms& terms) {
-  const auto x = x_.segment(terms.first, terms.n_columns);
-  Eigen::MatrixXd slope = x * x.transpose();
-  slope.diagonal().array() -= mu_;
-  pack(slope, gradient_.segment(terms.offset, terms.n_entries));
-  gradient_.segment(terms.w(), terms.n_columns) = 2.0 * x;
+void NewtonSystem::gather_blocks() {
+  for (std::size_t j = 0; j < lanes_.places().size(); ++j)
+    for (std::size_t k = 0; k <= j; ++k) {
+      const LanePlace& below = lanes_.places()[j];
+      const LanePlace& right = lanes_.places()[k];
+      const std::size_t below_order = lanes_.groups()[below.group].n_columns;
+      const std::size_t right_order = lanes_.groups()[right.group].n_columns;
+      Line* const by_below = lanes_.block(j, right.group);
+      Line* const by_right = lanes_.block(k, below.group);
+      for (std::size_t b = 0; b < right.n_columns; ++b) {
+        const double* const column = inverse_.column(right.first + b) + below.first;
+        for (std::size_t a = j == k ? b : 0; a < below.n_columns; ++a) {
+          by_below[a * right_order + b].at[right.lane] = column[a];
+          by_right[b * below_order + a].at[below.lane] = column[a];
+        }
+      }
+    }
 }
 
+/// The slopes in D̃ and w are x xᵀ − μI and 2x, since −x xᵀ in D̃ is joined by 2x xᵀ through g̃ = w + D̃x; then the
+/// barrier.
 void NewtonSystem::add_predictor(std::size_t j, const Variables& at) {
-  PredictorTerms& terms = terms_[j];
-  const double u = at.u(static_cast<Eigen::Index>(j));
-  double& u_slope = gradient_(terms.u());
-  u_slope -= 1.0;
-  terms.u_curvature = 0.0;
-  if (!problem_->open[j].must) {
-    u_slope += mu_ / u;
-    terms.u_curvature = mu_ / (u * u);
+  const LanePlace& place = lanes_.places()[j];
+  LaneGroup& group = lanes_.groups()[place.group];
+  const double* const x = x_.data()->at + place.first;
+  Line* const slope = gradient_.data() + group.first;
+  for (std::size_t i = 0; i < place.n_columns; ++i) {
+    for (std::size_t k = i; k < place.n_columns; ++k)
+      slope[upper_index(i, k, group.n_columns)].at[place.lane] = i == k ? x[i] * x[i] - mu_ : kRoot2 * x[i] * x[k];
+    slope[group.n_own() + i].at[place.lane] = 2.0 * x[i];
   }
-  Eigen::Index row = 0;
-  for (const OpenForm& form : problem_->open[j].forms) add_form(form, at, u, terms, row);
+  const double u = at.u(static_cast<Eigen::Index>(j));
+  const OpenPredictor& predictor = problem_->open[j];
+  slope[group.n_entries()].at[place.lane] = predictor.must ? -1.0 : mu_ / u - 1.0;
+  group.u_curvature.at[place.lane] = predictor.must ? 0.0 : mu_ / (u * u);
+  std::size_t row = 0;
+  for (const OpenForm& form : predictor.forms) {
+    factor_form(form, at, u);
+    add_form(j, form, row);
+  }
 }
 
-void NewtonSystem::add_form(const OpenForm& form, const Variables& at, double u, PredictorTerms& terms,
-                            Eigen::Index& row) {
-  const Eigen::Index c = form.n_columns, q = terms.n_columns;
-  const auto x = x_.segment(terms.first, q);
-  Eigen::MatrixXd b(c + 1, c + 1);
+/// V of one form.
+bool NewtonSystem::factor_form(const OpenForm& form, const Variables& at, double u) {
+  const Eigen::Index c = form.n_columns;
+  form_order_ = static_cast<std::size_t>(c) + 1;
+  if (c == 1) {
+    const double d = at.d(form.first, form.first), g = at.g(form.first);
+    const double root = std::sqrt(d), rest = std::sqrt(u + at.lambda - g * g / d);
+    v_[0] = 1.0 / root;
+    v_[1] = 0.0;
+    v_[2] = -g / (d * rest);
+    v_[3] = 1.0 / rest;
+    return true;
+  }
+  Small b = small(product_, form_order_);
   b.topLeftCorner(c, c) = at.d.block(form.first, form.first, c, c);
   b.bottomLeftCorner(1, c) = at.g.segment(form.first, c).transpose();
   b(c, c) = u + static_cast<double>(c) * at.lambda;
-  Eigen::MatrixXd v = Eigen::MatrixXd::Identity(c + 1, c + 1);
-  const Eigen::LLT<Eigen::MatrixXd> cholesky(b);
-  cholesky.matrixU().solveInPlace(v);
-  const Eigen::MatrixXd p = terms.basis.middleRows(form.first - terms.first, c).transpose() * v.topRows(c);
-  for (Eigen::Index k = 0; k <= c; ++k)
-    for (Eigen::Index l = 0; l <= k; ++l, ++row) {
-      const double weight = k == l ? 1.0 : kRoot2;
-      const double both = v(c, k) * v(c, l);
-      const Eigen::VectorXd z = weight * (v(c, l) * p.col(k) + v(c, k) * p.col(l));
-      const Eigen::MatrixXd by_d = weight * p.col(k) * p.col(l).transpose() + z * x.transpose();
-      auto jacobian = terms.jacobian.row(row);
-      pack(by_d, jacobian.head(terms.n_entries));
-      jacobian.tail(q) = z.transpose();
-      jacobian(terms.n_entries) = weight * both;
-      terms.by_lambda(row) = weight * both * static_cast<double>(c);
-      if (k != l) continue;
-      gradient_.segment(terms.offset, terms.n_variables()) += mu_ * jacobian.transpose();
-      gradient_(gradient_.size() - 2) += mu_ * terms.by_lambda(row);
+  return invert_root(b, small(v_, form_order_));
+}
+
+void NewtonSystem::add_form(std::size_t j, const OpenForm& form, std::size_t& row) {
+  const LanePlace& place = lanes_.places()[j];
+  LaneGroup& group = lanes_.groups()[place.group];
+  const std::size_t c = form_order_ - 1, q = place.n_columns;
+  const std::size_t own = static_cast<std::size_t>(form.first) - place.first;
+  for (std::size_t k = 0; k <= c; ++k)
+    for (std::size_t i = 0; i < q; ++i) {
+      double sum = 0.0;
+      for (std::size_t f = 0; f < c && own + f <= i; ++f)
+        sum += group.basis[(own + f) * group.n_columns + i].at[place.lane] * v_[f + k * form_order_];
+      columns_[i + k * q] = sum;
     }
+  for (std::size_t k = 0; k <= c; ++k)
+    for (std::size_t l = 0; l <= k; ++l, ++row) add_row(j, row, k, l, static_cast<double>(c));
+}
+
+void NewtonSystem::add_row(std::size_t j, std::size_t row, std::size_t k, std::size_t l, double n_columns) {
+  const LanePlace& place = lanes_.places()[j];
+  LaneGroup& group = lanes_.groups()[place.group];
+  const std::size_t q = place.n_columns, lane = place.lane;
+  const double weight = k == l ? 1.0 : kRoot2;
+  const double by_k = weight * v_[form_order_ - 1 + k * form_order_], by_l = v_[form_order_ - 1 + l * form_order_];
+  const double* const left = columns_.data() + k * q;
+  const double* const right = columns_.data() + l * q;
+  const double* const x = x_.data()->at + place.first;
+  Line* const jacobian = group.jacobian.data() + row * group.n_variables();
+  for (std::size_t i = 0; i < q; ++i) z_[i] = weight * by_l * left[i] + by_k * right[i];
+  for (std::size_t i = 0; i < q; ++i) {
+    jacobian[upper_index(i, i, group.n_columns)].at[lane] = weight * left[i] * right[i] + z_[i] * x[i];
+    for (std::size_t m = i + 1; m < q; ++m)
+      jacobian[upper_index(i, m, group.n_columns)].at[lane] =
+          (weight * (left[i] * right[m] + left[m] * right[i]) + z_[i] * x[m] + z_[m] * x[i]) / kRoot2;
+    jacobian[group.n_own() + i].at[lane] = z_[i];
+  }
+  jacobian[group.n_entries()].at[lane] = by_k * by_l;
+  group.by_lambda[row].at[lane] = by_k * by_l * n_columns;
+  if (k != l) return;
+  Line* const slope = gradient_.data() + group.first;
+  for (std::size_t i = 0; i < group.n_variables(); ++i) slope[i].at[lane] += mu_ * jacobian[i].at[lane];
+  gradient_.back().at[kLambdaLane] += mu_ * group.by_lambda[row].at[lane];
 }
 
 void NewtonSystem::add_prices(const Variables& at, const Prices& prices) {
   const double fewest = 1.0 / prices.slack_fewest(at), most = 1.0 / prices.slack_most(at);
   const double inside = 1.0 / at.lambda, to_bound = 1.0 / (prices.most_lambda - at.lambda);
   const Eigen::Vector2d by_fewest(-prices.k_fewest * fewest, fewest), by_most(-prices.k_most * most, most);
-  gradient_.tail(2) += mu_ * (by_fewest + by_most);
-  gradient_(gradient_.size() - 2) += mu_ * (inside - to_bound);
-  gradient_(gradient_.size() - 1) -= 1.0;
+  const Eigen::Vector2d slope = mu_ * (by_fewest + by_most);
+  gradient_.back().at[kLambdaLane] += slope(0) + mu_ * (inside - to_bound);
+  gradient_.back().at[kSLane] = slope(1) - 1.0;
   price_curvature_ = mu_ * (by_fewest * by_fewest.transpose() + by_most * by_most.transpose());
   price_curvature_(0, 0) += mu_ * (inside * inside + to_bound * to_bound);
 }
 
-void NewtonSystem::multiply(const Eigen::VectorXd& in, Eigen::VectorXd& out) {
-  const Eigen::Index n = a_.rows(), lambda = in.size() - 2;
-  out.resize(in.size());
-  out.tail(2) = price_curvature_ * in.tail(2);
-  product_.resize(n, n);
-  w_.resize(n);
-  for (const PredictorTerms& terms : terms_) {
-    Eigen::MatrixXd d(terms.n_columns, terms.n_columns);
-    unpack(in.data() + terms.offset, d);
-    product_.middleCols(terms.first, terms.n_columns).noalias() = a_.middleCols(terms.first, terms.n_columns) * d;
-    w_.segment(terms.first, terms.n_columns) = in.segment(terms.w(), terms.n_columns);
-  }
-  image_.noalias() = 2.0 * (a_ * w_);
-  for (const PredictorTerms& terms : terms_) {
-    const Eigen::MatrixXd d =
-        mu_ * product_.middleRows(terms.first, terms.n_columns) * a_.middleCols(terms.first, terms.n_columns);
-    pack(d, out.segment(terms.offset, terms.n_entries));
-    out.segment(terms.w(), terms.n_columns) = image_.segment(terms.first, terms.n_columns);
-    out(terms.u()) = terms.u_curvature * in(terms.u());
-    const Eigen::VectorXd rows =
-        mu_ * (terms.jacobian * in.segment(terms.offset, terms.n_variables()) + in(lambda)*terms.by_lambda);
-    out.segment(terms.offset, terms.n_variables()) += terms.jacobian.transpose() * rows;
-    out(lambda) += terms.by_lambda.dot(rows);
-  }
+void NewtonSystem::multiply(const Lines& in, Lines& out) {
+  const Line& in_prices = in.back();
+  const Eigen::Vector2d prices(in_prices.at[kLambdaLane], in_prices.at[kSLane]);
+  const Eigen::Vector2d image = price_curvature_ * prices;
+  double to_lambda = image(0);
+  for (const LaneGroup& group : lanes_.groups())
+    to_lambda += multiply_own(group, mu_, prices(0), in.data() + group.first, out.data() + group.first);
+  multiply_blocks(lanes_, mu_, in.data(), out.data(), kernel_work_.data());
+  out.back() = Line();
+  out.back().at[kLambdaLane] = to_lambda;
+  out.back().at[kSLane] = image(1);
 }
 
-void NewtonSystem::expand(const Eigen::VectorXd& solution, Variables& direction) const {
-  direction.d.setZero(a_.rows(), a_.cols());
-  direction.g.resize(a_.rows());
-  direction.u.resize(static_cast<Eigen::Index>(terms_.size()));
-  for (std::size_t j = 0; j < terms_.size(); ++j) {
-    const PredictorTerms& terms = terms_[j];
-    const Eigen::Index q = terms.n_columns;
-    Eigen::MatrixXd d(q, q);
-    unpack(solution.data() + terms.offset, d);
-    auto block = direction.d.block(terms.first, terms.first, q, q);
-    block = terms.basis * d * terms.basis.transpose();
+void NewtonSystem::expand(const Lines& solution, Variables& direction) {
+  for (std::size_t j = 0; j < lanes_.places().size(); ++j) {
+    const LanePlace& place = lanes_.places()[j];
+    const LaneGroup& group = lanes_.groups()[place.group];
+    const std::size_t q = place.n_columns;
+    Small d = small(square_, q), product = small(product_, q), root = small(columns_, q);
+    const Line* const from = solution.data() + group.first;
+    const auto at = [&](std::size_t line) { return from[line].at[place.lane]; };
+    root.setZero();
+    for (std::size_t i = 0; i < q; ++i)
+      for (std::size_t k = i; k < q; ++k) {
+        const double entry = at(upper_index(i, k, group.n_columns));
+        square_[i + k * q] = square_[k + i * q] = i == k ? entry : entry / kRoot2;
+        columns_[i + k * q] = group.basis[i * group.n_columns + k].at[place.lane];
+      }
+    const auto first = static_cast<Eigen::Index>(place.first), n = static_cast<Eigen::Index>(q);
+    const Eigen::Map<const Eigen::VectorXd> x(x_.data()->at + place.first, n);
+    Eigen::Map<Eigen::VectorXd> w(z_.data(), n);
+    for (std::size_t i = 0; i < q; ++i) z_[i] = at(group.n_own() + i);
+    w += d.lazyProduct(x);
+    direction.g.segment(first, n) = root.lazyProduct(w);
+    product = root.lazyProduct(d);
+    auto block = direction.d.block(first, first, n, n);
+    block = product.lazyProduct(root.transpose());
     block.triangularView<Eigen::StrictlyUpper>() = block.transpose();  // to the last bit
-    const Eigen::VectorXd g = solution.segment(terms.w(), q) + d * x_.segment(terms.first, q);
-    direction.g.segment(terms.first, q) = terms.basis * g;
-    direction.u(static_cast<Eigen::Index>(j)) = solution(terms.u());
+    direction.u(static_cast<Eigen::Index>(j)) = at(group.n_entries());
   }
-  direction.lambda = solution(solution.size() - 2);
-  direction.s = solution(solution.size() - 1);
+  direction.lambda = solution.back().at[kLambdaLane];
+  direction.s = solution.back().at[kSLane];
 }
 
 }  // namespace formsieve::proof

@@ -10,32 +10,16 @@
 //   - the entries of D̃ off the diagonal are times √2, so that tr(D̃²) is a plain sum of squares.
 // The barrier of a form, ln det B with B = [[D_ff, g_f], [g_fᵀ, u + c_f λ]], has with B⁻¹ = VVᵀ the curvature
 // ‖VᵀB′V‖²: c + 1 columns make (c + 1)(c + 2)/2 rows of a Jacobian J, and a predictor's curvature is μJᵀJ.
-//
-// The order of the variables: for each open predictor D̃ (upper triangle by rows), u, w; then λ and s.
 #pragma once
 
 #include "proof/newton_barrier.hpp"
+#include "proof/newton_lanes.hpp"
 
 #include <Eigen/Core>
 
 #include <vector>
 
 namespace formsieve::proof {
-
-/// What one predictor adds to the Hessian by itself: μJᵀJ, and u's own barrier.
-struct PredictorTerms {
-  Eigen::Index first = 0, n_columns = 0;  ///< its columns in the reduced matrix
-  Eigen::Index offset = 0;                ///< of its variables
-  Eigen::Index n_entries = 0;             ///< of D̃: n_columns (n_columns + 1) / 2
-  Eigen::MatrixXd basis;                  ///< R
-  Eigen::MatrixXd jacobian;               ///< J by D̃, u and w
-  Eigen::VectorXd by_lambda;              ///< J by λ
-  double u_curvature = 0.0;               ///< μ / u², or 0 where the predictor must be in
-
-  Eigen::Index n_variables() const { return n_entries + 1 + n_columns; }
-  Eigen::Index u() const { return offset + n_entries; }
-  Eigen::Index w() const { return offset + n_entries + 1; }
-};
 
 class NewtonSystem {
  public:
@@ -45,35 +29,40 @@ class NewtonSystem {
   /// Cost: the inverse of a matrix of order [open columns].
   bool build(const Variables& at, const Factor& factor, const Prices& prices, double mu);
 
-  Eigen::Index n_variables() const { return gradient_.size(); }
   double mu() const { return mu_; }
-  const Eigen::VectorXd& gradient() const { return gradient_; }
-  /// out = (−Hessian) in, positive definite. Cost: 2 · [open columns]² · [columns of a predictor].
-  void multiply(const Eigen::VectorXd& in, Eigen::VectorXd& out);
-  /// A direction in the variables of the dual.
-  void expand(const Eigen::VectorXd& solution, Variables& direction) const;
+  /// In the order of Lanes.
+  const Lines& gradient() const { return gradient_; }
+  /// out = (−Hessian) in, positive definite. Cost: 1.6 · [open columns]² · [columns of a predictor].
+  void multiply(const Lines& in, Lines& out);
+  /// A direction in the variables of the dual. `direction` must have their sizes, and D zero outside the blocks.
+  void expand(const Lines& solution, Variables& direction);
 
-  const std::vector<PredictorTerms>& predictors() const { return terms_; }
-  const Eigen::MatrixXd& inverse() const { return a_; }  ///< A in the predictors' bases
+  Lanes& lanes() { return lanes_; }
+  const Lanes& lanes() const { return lanes_; }
+  /// Curvature of λ and s by their own constraints.
   const Eigen::Matrix2d& price_curvature() const { return price_curvature_; }
 
  private:
-  bool change_basis(const Variables& at, const Factor& factor);
-  void add_main_slope(const PredictorTerms& terms);
+  using Small = Eigen::Map<Eigen::MatrixXd>;
+  Small small(std::vector<double>& work, std::size_t order) const;
+  bool set_basis(std::size_t j);
+  void gather_blocks();
   void add_predictor(std::size_t j, const Variables& at);
-  void add_form(const OpenForm& form, const Variables& at, double u, PredictorTerms& terms, Eigen::Index& row);
+  bool factor_form(const OpenForm& form, const Variables& at, double u);
+  void add_form(std::size_t j, const OpenForm& form, std::size_t& row);
+  void add_row(std::size_t j, std::size_t row, std::size_t k, std::size_t l, double n_columns);
   void add_prices(const Variables& at, const Prices& prices);
 
   const Reduced* problem_;
-  std::vector<PredictorTerms> terms_;
-  Eigen::MatrixXd a_, product_;
-  Eigen::VectorXd x_;  ///< A(b − g) in the predictors' bases
-  Eigen::VectorXd gradient_, w_, image_;
-  Eigen::Matrix2d price_curvature_;  ///< of λ and s, by their own constraints
+  Lanes lanes_;
+  PaddedMatrix inverse_, inverse_work_;
+  Lines x_;  ///< A(b − g) in the predictors' bases
+  Lines gradient_, kernel_work_;
+  Eigen::Matrix2d price_curvature_;
   double mu_ = 0.0;
+  // of one predictor or form: R or D̃; a product; V; the columns of V in the predictor's basis
+  std::vector<double> square_, product_, v_, columns_, z_;
+  std::size_t form_order_ = 0;  ///< c + 1 of the form in v_
 };
-
-/// The symmetric matrix of its upper triangle by rows with √2 off the diagonal.
-void unpack(const double* entries, Eigen::Ref<Eigen::MatrixXd> matrix);
 
 }  // namespace formsieve::proof

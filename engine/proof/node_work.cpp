@@ -151,6 +151,10 @@ NodeResult work_on(const Frozen& frozen, Node node) {
       result.unfinished = std::move(node);
     else
       result.children = branch(frozen, problem, node, refined.bound);
+    if (node.depth == 0 && !result.unfinished) {
+      node.inherited.reset();
+      result.root = std::move(node);
+    }
     return result;
   }
   return result;

@@ -30,6 +30,7 @@ struct NodeResult {
   std::vector<Found> found;             ///< enumerated candidates at or below the threshold
   std::vector<search::Choice> rounded;  ///< candidates that the bounds suggest, not scored
   std::vector<Node> children;           ///< cover what is left of the node
+  std::optional<Node> root;             ///< of a root that was branched on: what was left of it, nothing inherited
   std::optional<Node> unfinished;       ///< time ran out: the node as far as it came
   double work = 0.0;                    ///< about how many floating-point operations
 };

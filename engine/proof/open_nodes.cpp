@@ -65,4 +65,9 @@ double OpenNodes::lower(std::size_t response) const {
   return lower;
 }
 
+bool OpenNodes::has(std::size_t response) const {
+  const auto of_it = [&](const Node& node) { return node.response == response; };
+  return std::any_of(queue_.begin(), queue_.end(), of_it) || std::any_of(stack_.begin(), stack_.end(), of_it);
+}
+
 }  // namespace formsieve::proof

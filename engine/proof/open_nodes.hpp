@@ -29,6 +29,7 @@ class OpenNodes {
   /// The lowest bound; +infinity when empty.
   double lower() const;
   double lower(std::size_t response) const;
+  bool has(std::size_t response) const;
 
  private:
   static bool later(const Node& a, const Node& b);

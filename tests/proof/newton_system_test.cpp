@@ -1,7 +1,9 @@
 // The Newton system against differences of the merit, and its solution against a plain dense solution.
 #include "nodes.hpp"
+#include "proof/newton.hpp"
 #include "proof/newton_solve.hpp"
 #include "proof/newton_system.hpp"
+#include "targets.hpp"
 
 #include <catch2/catch.hpp>
 
@@ -9,6 +11,8 @@
 
 #include <cmath>
 #include <random>
+#include <utility>
+#include <vector>
 
 using namespace formsieve;
 
@@ -33,27 +37,61 @@ struct Setting {
     at.s += 0.01;
     REQUIRE(std::isfinite(proof::merit(node, prices, mu, at, factor)));
     REQUIRE(system.build(at, factor, prices, mu));
+    find_slots();
+    REQUIRE(slots.size() == proof::Newton::n_variables(node));
   }
 
-  Eigen::VectorXd unit(Eigen::Index i) const { return Eigen::VectorXd::Unit(system.n_variables(), i); }
+  Eigen::Index n_variables() const { return static_cast<Eigen::Index>(slots.size()); }
+  Eigen::VectorXd unit(Eigen::Index i) const { return Eigen::VectorXd::Unit(n_variables(), i); }
+
+  /// Of the variables that the padding of the lanes leaves.
+  proof::Lines in_lanes(const Eigen::VectorXd& values) const {
+    proof::Lines lines(system.lanes().n_lines());
+    for (Eigen::Index i = 0; i < values.size(); ++i) *slot(lines, i) = values(i);
+    return lines;
+  }
+  Eigen::VectorXd from_lanes(const proof::Lines& lines) const {
+    return Eigen::VectorXd::NullaryExpr(n_variables(), [&](Eigen::Index i) { return *slot(lines, i); });
+  }
+  template <class LinesType>
+  auto slot(LinesType& lines, Eigen::Index i) const -> decltype(&lines[0].at[0]) {
+    const auto [line, lane] = slots[static_cast<std::size_t>(i)];
+    return &lines[line].at[lane];
+  }
 
   /// The merit at a displacement in the variables of the system.
-  double merit_at(const Eigen::VectorXd& displacement) const {
-    proof::Variables direction, moved = at;
+  double merit_at(const Eigen::VectorXd& displacement) {
+    proof::Variables direction = at, moved = at;
     proof::Factor unused;
-    system.expand(displacement, direction);
+    system.expand(in_lanes(displacement), direction);
     moved.set_along(at, 1.0, direction, node);
     return proof::merit(node, prices, mu, moved, unused);
   }
 
   Eigen::MatrixXd dense() {
-    Eigen::MatrixXd matrix(system.n_variables(), system.n_variables());
-    Eigen::VectorXd column;
+    Eigen::MatrixXd matrix(n_variables(), n_variables());
+    proof::Lines column(system.lanes().n_lines());
     for (Eigen::Index i = 0; i < matrix.cols(); ++i) {
-      system.multiply(unit(i), column);
-      matrix.col(i) = column;
+      system.multiply(in_lanes(unit(i)), column);
+      matrix.col(i) = from_lanes(column);
+      CHECK((in_lanes(matrix.col(i)) == column));  // the padding stays zero
     }
     return matrix;
+  }
+
+  void find_slots() {
+    const proof::Lanes& lanes = system.lanes();
+    for (const proof::LanePlace& place : lanes.places()) {
+      const proof::LaneGroup& group = lanes.groups()[place.group];
+      for (std::size_t i = 0; i < place.n_columns; ++i) {
+        for (std::size_t k = i; k < place.n_columns; ++k)
+          slots.emplace_back(group.first + proof::upper_index(i, k, group.n_columns), place.lane);
+        slots.emplace_back(group.w_line() + i, place.lane);
+      }
+      slots.emplace_back(group.u_line(), place.lane);
+    }
+    slots.emplace_back(lanes.prices_line(), proof::kLambdaLane);
+    slots.emplace_back(lanes.prices_line(), proof::kSLane);
   }
 
   proof::Reduced node;
@@ -62,9 +100,13 @@ struct Setting {
   proof::Variables at;
   proof::Factor factor;
   double mu;
+  std::vector<std::pair<std::size_t, std::size_t>> slots;  ///< line and lane of every variable
 };
 
 const std::vector<test::PredictorShape> kMixed = {{{1, 1}}, {{2, 1}, true}, {{1, 3, 1}}, {{1}}, {{1, 1, 1}, true}};
+const std::vector<test::PredictorShape> kMany = {{{1, 1}},    {{1, 1, 1}}, {{1}},          {{2, 1}, true},
+                                                 {{1, 1}},    {{1}},       {{1, 1, 1, 1}}, {{1, 1}},
+                                                 {{1}, true}, {{1, 1, 1}}, {{1}},          {{1, 1}}};
 const std::vector<test::PredictorShape> kPlain = {{{1, 1, 1}}, {{1, 1}}, {{1}, true}, {{1, 1, 1, 1}}};
 
 /// A length at which the merit changes by a small part of μ in a variable with this curvature.
@@ -73,22 +115,24 @@ double small_step(double curvature, double mu) { return 0.003 * std::sqrt(mu / c
 }  // namespace
 
 TEST_CASE("proof: the slope of the merit equals differences when forms have one or several columns", "[proof][unit]") {
-  const auto& shapes = GENERATE(kMixed, kPlain);
-  Setting setting(shapes, 3, 0.004);
-  const Eigen::VectorXd curvature = setting.dense().diagonal();
-  for (Eigen::Index i = 0; i < setting.system.n_variables(); ++i) {
-    const double h = small_step(curvature(i), setting.mu);
-    const double difference =
-        (setting.merit_at(h * setting.unit(i)) - setting.merit_at(-h * setting.unit(i))) / (2.0 * h);
-    INFO("variable " << i);
-    CHECK(setting.system.gradient()(i) ==
-          Approx(difference).epsilon(1e-4).margin(1e-4 * std::sqrt(curvature(i) * 0.004)));
-  }
+  const auto& shapes = GENERATE(kMixed, kPlain, kMany);
+  test::on_every_target([&] {
+    Setting setting(shapes, 3, 0.004);
+    const Eigen::VectorXd curvature = setting.dense().diagonal(),
+                          gradient = setting.from_lanes(setting.system.gradient());
+    for (Eigen::Index i = 0; i < setting.n_variables(); ++i) {
+      const double h = small_step(curvature(i), setting.mu);
+      const double difference =
+          (setting.merit_at(h * setting.unit(i)) - setting.merit_at(-h * setting.unit(i))) / (2.0 * h);
+      INFO("variable " << i);
+      CHECK(gradient(i) == Approx(difference).epsilon(1e-4).margin(1e-4 * std::sqrt(curvature(i) * 0.004)));
+    }
+  });
 }
 
 TEST_CASE("proof: the curvature of the merit equals differences when forms have one or several columns",
           "[proof][unit]") {
-  const auto& shapes = GENERATE(kMixed, kPlain);
+  const auto& shapes = GENERATE(kMixed, kPlain, kMany);
   Setting setting(shapes, 4, 0.004);
   const Eigen::MatrixXd dense = setting.dense();
   CHECK((dense - dense.transpose()).norm() < 1e-12 * dense.norm());
@@ -106,16 +150,18 @@ TEST_CASE("proof: the curvature of the merit equals differences when forms have 
 }
 
 TEST_CASE("proof: conjugate gradients promise what a dense solution promises", "[proof][unit]") {
-  const auto& shapes = GENERATE(kMixed, kPlain);
+  const auto& shapes = GENERATE(kMixed, kPlain, kMany);
   const double mu = GENERATE(0.1, 1e-3, 1e-6);
-  Setting setting(shapes, 5, mu);
-  const Eigen::LLT<Eigen::MatrixXd> factor(setting.dense());
-  REQUIRE(factor.info() == Eigen::Success);
-  const double exact = setting.system.gradient().dot(factor.solve(setting.system.gradient()));
-  proof::ConjugateGradients solver;
-  Eigen::VectorXd solution;
-  REQUIRE(solver.solve(setting.system, solution));
-  const double reached = setting.system.gradient().dot(solution);
-  CHECK(reached <= exact * (1.0 + 1e-6));
-  CHECK(reached >= 0.9 * exact);
+  test::on_every_target([&] {
+    Setting setting(shapes, 5, mu);
+    const Eigen::LLT<Eigen::MatrixXd> factor(setting.dense());
+    REQUIRE(factor.info() == Eigen::Success);
+    const Eigen::VectorXd gradient = setting.from_lanes(setting.system.gradient());
+    const double exact = gradient.dot(factor.solve(gradient));
+    proof::ConjugateGradients solver(setting.system);
+    REQUIRE(solver.solve(setting.system));
+    CHECK(solver.decrement() == Approx(gradient.dot(setting.from_lanes(solver.solution()))));
+    CHECK(solver.decrement() <= exact * (1.0 + 1e-6));
+    CHECK(solver.decrement() >= 0.9 * exact);
+  });
 }
