@@ -172,7 +172,7 @@ void GuidedSearch::remember(const std::vector<Leg>& legs, bool independent) {
   if (legs.empty() || !legs.back().ending) return;  // stopped, or without a separable start
   for (const Leg& leg : legs)
     for (const Choices& passed : leg.path) setup_.known[leg.objective].try_emplace(passed, *leg.ending);
-  tally_.record(legs, independent, setup_.comparable);
+  tally_.record(legs, independent);
 }
 
 /// Figures of the best candidates found, and the lists with them.
@@ -214,24 +214,18 @@ GuidedResult GuidedSearch::result(bool complete) const {
   GuidedResult result;
   result.by_cv.resize(space_.space().n_responses);
   result.by_own.resize(space_.space().n_responses);
-  const Choices* best_of_all = nullptr;
-  std::size_t best_objective = 0;
   double least = std::numeric_limits<double>::infinity();
   for (std::size_t o = 0; o < setup_.objectives.size(); ++o) {
     const std::size_t response = setup_.objectives[o].response();
     GuidedList& list = (by_of(o) == By::own ? result.by_own : result.by_cv)[response];
     list = lists_of(o).list(by_of(o), space_, response);
     list.n_starts = tally_.n_starts(o);
-    const Choices* const best = lists_of(o).best(by_of(o));
-    if (best == nullptr) continue;
-    list.n_found_best = tally_.n_ended(o, *best);
+    if (list.candidates.empty()) continue;
+    list.n_found_best = tally_.n_ended(o, list.candidates.front().choice.choice);
     if (!setup_.comparable[o] || !(list.sse.front() < least)) continue;
     least = list.sse.front();
-    best_of_all = best;
-    best_objective = o;
+    result.best_response = response;
   }
-  result.n_starts = tally_.n_starts();
-  if (best_of_all != nullptr) result.n_found_best = tally_.n_led(best_objective, *best_of_all);
   result.n_restarts = n_started_;
   result.n_scored = n_scored();
   result.complete = complete;

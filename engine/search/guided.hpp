@@ -14,6 +14,7 @@
 #include <cstddef>
 #include <cstdint>
 #include <functional>
+#include <optional>
 #include <stop_token>
 #include <vector>
 
@@ -58,9 +59,8 @@ struct GuidedList {
 struct GuidedResult {
   std::vector<GuidedList> by_cv;   ///< [response]
   std::vector<GuidedList> by_own;  ///< [response]; empty without own_units, whose list, if any, is that by cv_sse
-  /// Over all response forms that are comparable in own units: independent starts, and how many led to the best
-  /// candidate of all, changes of the response form included.
-  std::size_t n_starts = 0, n_found_best = 0;
+  /// Of the response forms that are comparable in own units, that of the best candidate by that score.
+  std::optional<std::size_t> best_response;
   std::size_t n_restarts = 0;  ///< done, hints included
   std::uint64_t n_scored = 0;  ///< distinct candidates scored, estimated to about one in a hundred
   bool complete = true;        ///< all restarts and expansions were done: neither stopped nor enough

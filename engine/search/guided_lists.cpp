@@ -92,8 +92,6 @@ GuidedList ResponseLists::list(By by, const GuidedSpace& space, std::size_t resp
   return list;
 }
 
-const Choices* ResponseLists::best(By by) const { return ranked(by).empty() ? nullptr : &ranked(by).front()->first; }
-
 std::vector<Found> merged(std::span<const std::vector<Found>* const> finds, std::size_t keep) {
   std::vector<const Found*> all;
   for (const auto* some : finds)

@@ -41,8 +41,6 @@ class ResponseLists {
   std::size_t n_unexpanded(By by, std::size_t leading) const;
   /// The list with the candidates' numbers; n_starts and n_found_best are left to the caller.
   GuidedList list(By by, const GuidedSpace& space, std::size_t response) const;
-  /// The first candidate, or null.
-  const Choices* best(By by) const;
 
  private:
   struct Entry {

@@ -1,34 +1,24 @@
 #include "search/guided_tally.hpp"
 
 #include <algorithm>
+#include <utility>
 
 namespace formsieve::search {
 
-void Tally::record(std::span<const Leg> legs, bool independent, const std::vector<bool>& comparable) {
-  Place last{legs.back().objective, *legs.back().ending};
-  if (const auto found = last_.find(last); found != last_.end()) last = found->second;
+void Tally::record(std::span<const Leg> legs, bool independent) {
   for (const Leg& leg : legs) {
     if (!leg.known) endings_[leg.objective].try_emplace(*leg.ending, Ending{leg.score, 0});
-    last_.try_emplace(Place{leg.objective, *leg.ending}, last);
     most_terms_ = std::max(most_terms_, GuidedSpace::n_terms(*leg.ending));
   }
   if (!independent) return;
   const Leg& first = legs.front();
   ++n_starts_[first.objective];
   ++endings_[first.objective].at(*first.ending).n_independent;
-  if (!comparable[first.objective]) return;
-  ++n_comparable_starts_;
-  ++n_led_[last];
 }
 
 std::size_t Tally::n_ended(std::size_t objective, const Choices& choices) const {
   const auto found = endings_[objective].find(choices);
   return found == endings_[objective].end() ? 0 : found->second.n_independent;
-}
-
-std::size_t Tally::n_led(std::size_t objective, const Choices& choices) const {
-  const auto found = n_led_.find({objective, choices});
-  return found == n_led_.end() ? 0 : found->second;
 }
 
 std::vector<Choices> Tally::best_endings(std::size_t objective, std::size_t most) const {

@@ -6,7 +6,6 @@
 #include <cstddef>
 #include <map>
 #include <span>
-#include <utility>
 #include <vector>
 
 namespace formsieve::search {
@@ -16,15 +15,12 @@ class Tally {
   explicit Tally(std::size_t n_objectives) : endings_(n_objectives), n_starts_(n_objectives, 0) {}
 
   /// Records the legs, each with an ending, of one descent. `independent`: its start owed nothing to what was found
-  /// before.
-  void record(std::span<const Leg> legs, bool independent, const std::vector<bool>& comparable);
+  /// before; its first leg then counts.
+  void record(std::span<const Leg> legs, bool independent);
 
   /// Independent descents by an objective that came to an end, and those that ended in a candidate.
   std::size_t n_starts(std::size_t objective) const { return n_starts_[objective]; }
   std::size_t n_ended(std::size_t objective, const Choices& choices) const;
-  /// The same over all comparable objectives, with changes from one to another.
-  std::size_t n_starts() const { return n_comparable_starts_; }
-  std::size_t n_led(std::size_t objective, const Choices& choices) const;
 
   /// Terms of the largest ending; 0 without one.
   std::size_t most_terms() const { return most_terms_; }
@@ -36,13 +32,9 @@ class Tally {
     double score = 0.0;
     std::size_t n_independent = 0;
   };
-  using Place = std::pair<std::size_t, Choices>;  ///< objective, candidate
 
   std::vector<std::map<Choices, Ending>> endings_;  ///< [objective]
-  std::map<Place, Place> last_;                     ///< where a descent went on to from an ending
-  std::map<Place, std::size_t> n_led_;
-  std::vector<std::size_t> n_starts_;
-  std::size_t n_comparable_starts_ = 0;
+  std::vector<std::size_t> n_starts_;               ///< [objective]
   std::size_t most_terms_ = 0;
 };
 

@@ -112,6 +112,9 @@ TEST_CASE("search: a look has the same bits on every instruction set", "[search]
     scores.emplace_back();
     for (const auto& extensions : look.around({1, 2, 0, 1}))
       scores.back().insert(scores.back().end(), extensions.with.begin(), extensions.with.end());
+    search::PairLook pairs(space, objective);
+    const auto& of_pair = pairs.look({1, 0, 0, 1}, 1, 2);
+    scores.back().insert(scores.back().end(), of_pair.begin(), of_pair.end());
   }
   (void)base::force_instruction_set("best");
   REQUIRE(!scores.empty());

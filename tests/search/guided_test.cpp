@@ -4,6 +4,7 @@
 #include "problem.hpp"
 #include "search/candidate_fit.hpp"
 #include "search/guided.hpp"
+#include "search/guided_descent.hpp"
 #include "search/own_score.hpp"
 
 #include <catch2/catch.hpp>
@@ -11,7 +12,6 @@
 #include <algorithm>
 #include <atomic>
 #include <cmath>
-#include <limits>
 #include <map>
 #include <thread>
 
@@ -23,8 +23,6 @@ using search::GuidedResult;
 using test::Shape;
 
 namespace {
-
-constexpr double kInfinity = std::numeric_limits<double>::infinity();
 
 struct Made {
   test::Problem problem;
@@ -132,27 +130,25 @@ void check_figures(const Made& made, const GuidedList& list, bool own) {
 void check_all(const Made& made, const GuidedOptions& options) {
   const GuidedResult result = search::guided(made.space(), made.grams, options);
   CHECK(result.complete);
-  double best = kInfinity;
+  std::vector<double> best;
   for (std::size_t r = 0; r < made.space().n_responses; ++r) {
     check_list(result.by_cv[r], by_cv(made, r), options.keep);
     check_figures(made, result.by_cv[r], false);
     if (r == 0) {
-      best = result.by_cv[r].sse.front();
+      best.push_back(result.by_cv[r].sse.front());
       CHECK(result.by_own[r].candidates.empty());
       continue;
     }
     check_list(result.by_own[r], by_own(made, r), options.keep);
     check_figures(made, result.by_own[r], true);
-    best = std::min(best, result.by_own[r].sse.front());
+    best.push_back(result.by_own[r].sse.front());
   }
-  CHECK(result.n_found_best > 0);
-  CHECK(result.n_found_best <= result.n_starts);
+  CHECK(result.best_response == std::min_element(best.begin(), best.end()) - best.begin());
   CHECK(result.n_scored <= search::count(made.space()));
 }
 
 void check_same(const GuidedResult& a, const GuidedResult& b) {
   CHECK(a.n_scored == b.n_scored);
-  CHECK(a.n_found_best == b.n_found_best);
   for (std::size_t r = 0; r < a.by_cv.size(); ++r)
     for (const auto& [one, other] : {std::pair{&a.by_cv[r], &b.by_cv[r]}, {&a.by_own[r], &b.by_own[r]}}) {
       REQUIRE(one->sse == other->sse);
@@ -359,13 +355,67 @@ TEST_CASE("search: the guided search starts from hints", "[search][unit]") {
 }
 
 TEST_CASE("search: response forms are compared only where scores are in own units", "[search][unit]") {
-  const Made made = make(541, kPlainShapes, 3);
+  Made made = make(541, kPlainShapes, 2);
   GuidedOptions options = options_of(5, 64);
-  const GuidedResult compared = search::guided(made.space(), made.grams, options);
-  const auto bests = {compared.by_cv[0].sse.front(), compared.by_own[1].sse.front(), compared.by_own[2].sse.front()};
-  CHECK(compared.n_starts > compared.by_own[1].n_starts + compared.by_own[2].n_starts);
-  CHECK(std::min(bests) < std::max(bests));
+  made.grams.own_units.front().sse_factor = 1e-9;
+  CHECK(search::guided(made.space(), made.grams, options).best_response == 1);
+  made.grams.own_units.front().sse_factor = 1e9;
+  CHECK(search::guided(made.space(), made.grams, options).best_response == 0);
   options.own_scale.clear();
-  const GuidedResult apart = search::guided(made.space(), made.grams, options);
-  CHECK(apart.n_starts == apart.by_own[1].n_starts + apart.by_own[2].n_starts);
+  CHECK(search::guided(made.space(), made.grams, options).best_response == 1);
+  made.grams.own_units.clear();
+  CHECK_FALSE(search::guided(made.space(), made.grams, options).best_response.has_value());
+}
+
+TEST_CASE("search: a descent goes on under a response form that is better", "[search][unit]") {
+  const Made made = make(542, kPlainShapes, 2);
+  const search::GuidedSpace space(made.space());
+  search::DescentSetup setup{space, {}, {true, true}, 10, {}, {{}, {}}, {1e300, 1e300}};
+  setup.objectives.emplace_back(made.grams, 0, nullptr);
+  setup.objectives.emplace_back(made.grams, 1, &made.grams.own_units.front());
+  const auto legs_from = [&](std::size_t objective) {
+    search::Scout scout(space, setup.objectives, setup.keep, setup.limit);
+    return search::Descent(setup, scout, 1).run(objective, {0, 0, 0, 0, 0});
+  };
+  const auto first = legs_from(0);
+  const auto second = legs_from(1);
+  const bool second_is_better = second.back().score < first.front().score;
+  CHECK(first.size() + second.size() == 3);  // from one of the two, not from the other
+  const auto& both = first.size() == 2 ? first : second;
+  CHECK(both.front().objective == (second_is_better ? 0u : 1u));
+  CHECK(both.back().score < both.front().score);
+  CHECK(both.back().path.front() == *both.front().ending);
+  setup.comparable = {true, false};
+  CHECK(legs_from(0).size() == 1);
+  CHECK(legs_from(1).size() == 1);
+}
+
+TEST_CASE("search: a descent ends where no change of one or two predictors is an improvement", "[search][property]") {
+  for (std::uint64_t seed = 560; seed < 566; ++seed) {
+    const Made made = make(seed, std::vector<Shape>(6, Shape{{1, 1, 1}}), 2, 50, 4);
+    const search::GuidedSpace space(made.space());
+    search::DescentSetup setup{space, {}, {false}, 10, {}, {{}}, {1e300}};
+    setup.objectives.emplace_back(made.grams, 1, &made.grams.own_units.front());
+    search::Scout scout(space, setup.objectives, setup.keep, setup.limit);
+    const auto legs = search::Descent(setup, scout, seed).run(0, {0, 0, 0, 0, 0, 0});
+    REQUIRE(legs.size() == 1);
+    const search::Choices& end = *legs[0].ending;
+    const Oracle oracle = by_own(made, 1);
+    CHECK(legs[0].path.back() == end);
+    for (std::size_t i = 0; i < oracle.sse.size() && oracle.choices[i].choice != end; ++i) {
+      // what is better differs from the ending in three predictors, or in two of which one is not in it
+      const search::Choices& better = oracle.choices[i].choice;
+      std::size_t n_changes = 0, n_absent = 0;
+      for (std::size_t j = 0; j < end.size(); ++j) {
+        if (better[j] == end[j]) continue;
+        ++n_changes;
+        if (end[j] == 0) ++n_absent;
+      }
+      const bool exchange =
+          n_changes == 2 && n_absent == 1 && search::GuidedSpace::n_terms(better) == search::GuidedSpace::n_terms(end);
+      CHECK(n_changes >= 2);
+      CHECK_FALSE(exchange);
+      if (n_changes == 2) CHECK(n_absent > 0);
+    }
+  }
 }
