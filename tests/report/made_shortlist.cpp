@@ -41,6 +41,8 @@ class Maker {
   judge::PredictorMenu menu();
   Candidate candidate();
   judge::SpaceSummary summary(std::size_t n_responses);
+  judge::ProvedReach proved_reach(std::size_t n_responses);
+  judge::ProofReport proof(std::size_t n_responses);
 
  private:
   judge::Reach reach() { return {maybe(), maybe(), maybe(), maybe()}; }
@@ -170,6 +172,36 @@ judge::ScoreDistribution Maker::scores() {
   return scores;
 }
 
+judge::ProvedReach Maker::proved_reach(std::size_t n_responses) {
+  judge::ProvedReach reach{maybe(), maybe(), maybe(), coin(), std::nullopt};
+  if (coin()) reach.response = below(n_responses);
+  return reach;
+}
+
+judge::ProofReport Maker::proof(std::size_t n_responses) {
+  judge::ProofReport proof;
+  if (n_responses == 0) return proof;
+  proof.criterion = static_cast<judge::Criterion>(below(4));
+  proof.proved = coin();
+  proof.gap = number();
+  proof.tolerance = number();
+  proof.within = number();
+  proof.n_near = count();
+  proof.near_complete = coin();
+  for (std::size_t r = 0; r < n_responses; ++r) proof.responses.push_back(proved_reach(n_responses));
+  const auto choice = [&] {
+    judge::ProvedChoice made;
+    if (coin()) made.form = form();
+    made.reach = proved_reach(n_responses);
+    made.near_share = number();
+    return made;
+  };
+  proof.predictors = several([&] { return judge::ProvedPredictor{text(), coin(), several(choice)}; });
+  proof.by_terms = several([&] { return judge::ProvedTerms{count(), proved_reach(n_responses)}; });
+  proof.words = texts();
+  return proof;
+}
+
 judge::SpaceSummary Maker::summary(std::size_t n_responses) {
   judge::SpaceSummary summary;
   if (n_responses == 0) return summary;
@@ -255,6 +287,22 @@ class Printer {
   Printer& operator<<(const judge::SpaceSummary& s) {
     return *this << static_cast<std::uint64_t>(s.criterion) << s.responses << s.predictors << s.by_terms;
   }
+  Printer& operator<<(const judge::ProvedReach& r) {
+    *this << r.criterion << r.loss << r.loss_at_least << r.proved << r.response.has_value();
+    return *this << static_cast<std::uint64_t>(r.response.value_or(0));
+  }
+  Printer& operator<<(const judge::ProvedChoice& c) {
+    *this << c.form.has_value();
+    if (c.form) *this << *c.form;
+    return *this << c.reach << c.near_share;
+  }
+  Printer& operator<<(const judge::ProvedPredictor& p) { return *this << p.column << p.always << p.choices; }
+  Printer& operator<<(const judge::ProvedTerms& t) { return *this << static_cast<std::uint64_t>(t.n_terms) << t.reach; }
+  Printer& operator<<(const judge::ProofReport& p) {
+    return *this << static_cast<std::uint64_t>(p.criterion) << p.proved << p.gap << p.tolerance << p.within
+                 << static_cast<std::uint64_t>(p.n_near) << p.near_complete << p.responses << p.predictors << p.by_terms
+                 << p.words;
+  }
   Printer& operator<<(const Candidate& c);
   std::string text() const { return text_; }
 
@@ -286,8 +334,9 @@ Shortlist made_shortlist(std::uint64_t seed) {
             make.text(),  make.text(),
             make.text(),  make.count(),
             make.count(), make.several([&] { return std::pair{make.text(), make.count()}; })};
-  s.space = {make.digits(), make.digits(), make.digits(), make.text(),  make.coin(), make.coin(), make.number(),
-             make.count(),  make.count(),  make.count(),  make.count(), make.text(), make.text(), 1.5};
+  s.space = {make.digits(), make.digits(), make.digits(), make.text(),  make.text(),
+             make.coin(),   make.coin(),   make.number(), make.count(), make.count(),
+             make.count(),  make.count(),  make.text(),   make.text(),  1.5};
   s.folds = {make.count(), make.count(), make.coin() ? ~std::uint64_t{0} : make.below(100), make.text()};
   s.criterion = static_cast<judge::Criterion>(make.below(4));
   s.near_tie = make.number();
@@ -295,6 +344,7 @@ Shortlist made_shortlist(std::uint64_t seed) {
   s.response_notes = make.texts();
   s.menus = make.several([&] { return make.menu(); });
   s.summary = make.summary(make.coin() ? s.responses.size() : 0);
+  s.proof = make.proof(make.coin() ? s.responses.size() : 0);
   s.candidates = make.several([&] { return make.candidate(); });
   s.remarks = make.texts();
   s.cautions = make.texts();
@@ -383,12 +433,12 @@ std::string print_out(const Shortlist& s) {
   Printer out;
   out << s.formsieve << s.data.file << s.data.sha256 << s.data.response << s.data.weight << s.data.group << s.data.order
       << s.data.fold << s.data.rows_read << s.data.rows_used << s.data.dropped;
-  out << s.space.candidates << s.space.scored << s.space.inseparable << s.space.strategy << s.space.complete
-      << s.space.proved << s.space.gap << s.space.pooled << s.space.examined << s.space.set_aside_direction
-      << s.space.set_aside_require << s.space.pool_formed << s.space.pool_margin;
+  out << s.space.candidates << s.space.scored << s.space.inseparable << s.space.strategy << s.space.strategy_why
+      << s.space.complete << s.space.proved << s.space.gap << s.space.pooled << s.space.examined
+      << s.space.set_aside_direction << s.space.set_aside_require << s.space.pool_formed << s.space.pool_margin;
   out << s.folds.count << s.folds.repeats << s.folds.seed << s.folds.kind;
   out << static_cast<std::uint64_t>(s.criterion) << s.near_tie << s.responses << s.response_notes << s.menus
-      << s.summary << s.candidates << s.remarks << s.cautions;
+      << s.summary << s.proof << s.candidates << s.remarks << s.cautions;
   return out.text();
 }
 
