@@ -30,6 +30,8 @@ constexpr std::size_t kStartTerms = 2;
 constexpr std::size_t kFewestStartTerms = 8;
 /// Best endings of which one is shaken.
 constexpr std::size_t kGoodEndings = 5;
+/// Candidates of each list whose figures are still worked out after a stop: a usable list within seconds.
+constexpr std::size_t kListedAfterStop = 256;
 /// Candidates whose figures one worker works out at a time.
 constexpr std::size_t kFiguresGrain = 16;
 
@@ -177,12 +179,13 @@ void GuidedSearch::remember(const std::vector<Leg>& legs, bool independent) {
 
 /// Figures of the best candidates found, and the lists with them.
 void GuidedSearch::take_finds(const std::vector<Done>& done) {
+  const std::size_t most = stopped() ? std::min(options_.keep, kListedAfterStop) : options_.keep;
   std::set<std::pair<std::size_t, Choices>> fresh;  // response, candidate
   for (std::size_t o = 0; o < setup_.objectives.size(); ++o) {
     std::vector<const std::vector<Found>*> finds;
     for (const Done& one : done)
       if (one.scout) finds.push_back(&one.scout->found(o));
-    for (Found& found : merged(finds, options_.keep))
+    for (Found& found : merged(finds, most))
       if (!lists_of(o).holds(found.choices)) fresh.emplace(setup_.objectives[o].response(), std::move(found.choices));
   }
   const std::vector<std::pair<std::size_t, Choices>> all(fresh.begin(), fresh.end());

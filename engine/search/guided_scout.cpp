@@ -93,6 +93,11 @@ void Scout::meet(std::size_t objective, const Choices& candidate, double score) 
   collectors_[objective].offer(score, hash, candidate);
 }
 
+void Scout::rest() {
+  for (auto& look : looks_) look.reset();
+  for (auto& look : pair_looks_) look.reset();
+}
+
 void Scout::propose(double score, const Choices& choices) {
   Found move{score, choices};
   const auto at = std::lower_bound(moves_.begin(), moves_.end(), move, better);

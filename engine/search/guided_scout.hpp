@@ -37,6 +37,9 @@ class Scout {
   /// The best kMostMoves met since the last call with a score below `below`, best first.
   std::vector<Found> take_moves(double below);
 
+  /// Gives back the memory of the looks; what was found stays.
+  void rest();
+
   const std::vector<Found>& found(std::size_t objective) const { return collectors_[objective].found(); }
   const DistinctCount& distinct() const { return distinct_; }
 
