@@ -15,6 +15,9 @@ namespace formsieve::pipeline {
 
 namespace {
 
+/// A best candidate that one start in so many or more ends in is hardly missed by all of them.
+constexpr std::size_t kReassuring = 10;
+
 /// Candidates scored by one task.
 constexpr std::size_t kGrain = 64;
 
@@ -138,10 +141,13 @@ std::string beyond_pool_words(const run::Plan& plan, const Beyond& beyond, const
 std::string guided_words(const search::GuidedResult& guided) {
   std::string words = "Guided local search: " + judge::counted(guided.n_restarts, "start") + ", " +
                       judge::grouped_digits(std::to_string(guided.n_scored)) + " candidates scored";
-  if (guided.n_starts > 0) {
-    words += "; of " + judge::counted(guided.n_starts, "independent descent") + " by error in own units, " +
-             count_words(guided.n_found_best) + " ended in the best one found";
-    words += guided.n_found_best * 10 >= guided.n_starts
+  if (guided.best_response) {
+    const auto& lists =
+        guided.by_own.empty() || guided.by_own[*guided.best_response].candidates.empty() ? guided.by_cv : guided.by_own;
+    const search::GuidedList& list = lists[*guided.best_response];
+    words += "; of " + judge::counted(list.n_starts, "independent descent") + " by error in own units, " +
+             count_words(list.n_found_best) + " ended in the best one found";
+    words += list.n_found_best * kReassuring >= list.n_starts
                  ? ", which makes it likely, though not certain, that nothing better exists"
                  : ", so that better ones may exist";
   }
