@@ -158,6 +158,7 @@ void GuidedSearch::perform(const std::vector<Task>& tasks) {
       done[i].scout->look_around(tasks[i].objective, tasks[i].choices);
     else
       done[i].legs = Descent(setup_, *done[i].scout, tasks[i].seed).run(tasks[i].objective, tasks[i].choices);
+    done[i].scout->rest();
   });
   for (std::size_t i = 0; i < tasks.size(); ++i) {
     if (!done[i].scout) continue;

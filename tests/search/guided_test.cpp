@@ -10,9 +10,9 @@
 #include <catch2/catch.hpp>
 
 #include <algorithm>
-#include <atomic>
+#include <chrono>
 #include <cmath>
-#include <map>
+#include <optional>
 #include <thread>
 
 using namespace formsieve;

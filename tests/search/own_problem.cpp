@@ -2,6 +2,7 @@
 
 #include <Eigen/Core>
 
+#include <algorithm>
 #include <cmath>
 
 namespace formsieve::test {
