@@ -92,7 +92,7 @@ BlockSweep::Outcome BlockSweep::operator()(const Eigen::VectorXd& v, double lamb
     outcome = Outcome::reconditioned;
     z.certify(*problem_, d);
   }
-  inverse_ = z.factor().solve(Eigen::MatrixXd::Identity(d.rows(), d.cols()));
+  inverse_ = z.inverse();
   for (std::size_t j = 0; j < problem_->open.size(); ++j) {
     Eigen::MatrixXd w = weight_of(j, v, lambda, scales);
     weight_[j] =

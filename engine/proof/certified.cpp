@@ -8,7 +8,7 @@ namespace formsieve::proof {
 namespace {
 
 constexpr double kUnitRoundoff = std::numeric_limits<double>::epsilon() / 2;
-/// Covers the roundings of the margin itself and of its subtraction.
+/// Covers the roundings of the margin and of its subtraction, and multiplications by reciprocals in place of divisions.
 constexpr double kMarginFactor = 2.0;
 
 }  // namespace
@@ -20,15 +20,30 @@ bool CertifiedDifference::certify(const Reduced& problem, const Eigen::MatrixXd&
   if (!std::isfinite(largest)) return false;
   entry_error_ = problem.entry_error + 2.0 * kUnitRoundoff * largest;
   const double margin = kMarginFactor * order * ((order + 3.0) * kUnitRoundoff * largest + entry_error_);
-  shifted_ = z_;
-  shifted_.diagonal().array() -= margin;
-  factor_.compute(shifted_);
-  if (factor_.info() != Eigen::Success) return false;
-  return z_.size() == 0 || factor_.matrixLLT().diagonal().minCoeff() > 0.0;
+  factor_.set_lower(z_);
+  factor_.matrix().diagonal().array() -= margin;
+  return factor_lower(factor_);
+}
+
+Eigen::VectorXd CertifiedDifference::solve(const Eigen::VectorXd& right) const {
+  Eigen::VectorXd padded = Eigen::VectorXd::Zero(static_cast<Eigen::Index>(factor_.padded_order()));
+  padded.head(right.size()) = right;
+  solve_lower(factor_, padded.data());
+  solve_transposed(factor_, padded.data());
+  return padded.head(right.size());
+}
+
+Eigen::MatrixXd CertifiedDifference::inverse() const {
+  PaddedMatrix work;
+  PaddedMatrix lower;
+  invert_factored(factor_, work, lower);
+  Eigen::MatrixXd inverse = lower.matrix();
+  inverse.triangularView<Eigen::StrictlyUpper>() = inverse.transpose();
+  return inverse;
 }
 
 double CertifiedDifference::pivot_ratio() const {
-  const auto pivots = factor_.matrixLLT().diagonal().array();
+  const auto pivots = factor_.matrix().diagonal().array();
   const double ratio = pivots.minCoeff() / pivots.maxCoeff();
   return ratio * ratio;
 }

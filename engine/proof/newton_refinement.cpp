@@ -75,7 +75,7 @@ class NewtonRefinement {
       point_.mu = kFirstBarrier * unit;
     } else {
       // v itself is not inherited: that of forms with a tiny d would be far off
-      point_.v = z_.factor().solve(problem_.b - point_.g);
+      point_.v = z_.solve(problem_.b - point_.g);
       if (node_.new_range) point_.mu = std::max(point_.mu, kRangeBarrier * unit);
     }
     point_.mu = std::max(point_.mu, last_barrier_);
