@@ -14,6 +14,10 @@ namespace {
 constexpr std::size_t kClosedEntries = 300;
 /// About a candidate met at a node; the list is closed again at the end of the first search anyway.
 constexpr std::size_t kClosedAboutNode = 30;
+/// All looks of the first closure together may take about so many operations, or a few of them what they take.
+constexpr double kClosureWork = 2e10;
+constexpr double kFewestLooks = 100;
+constexpr double kMostLooks = 3000;
 /// What a score by updates may be off.
 constexpr double kScoreError = 1e-6;
 /// A change that lowers a score by less is not followed: descents must end.
@@ -83,6 +87,13 @@ void Incumbents::close(std::size_t most_entries) {
   }
 }
 
+std::size_t Incumbents::affordable_looks() const {
+  const Listed* best = list_->best();
+  const double k = best == nullptr ? 1.0 : static_cast<double>(best->n_columns) + 1.0;
+  const double work = 2.0 * k * k * static_cast<double>(root_->gram().rows() + 1);
+  return static_cast<std::size_t>(std::clamp(kClosureWork / work, kFewestLooks, kMostLooks));
+}
+
 void Incumbents::start() {
   for (const std::size_t response : scope_->responses) {
     search::Choice smallest{response, {}};
@@ -112,7 +123,7 @@ void Incumbents::start() {
       if (terms <= scope_->most_terms && terms <= kLargestStart) descend(begin);
     }
   }
-  close(10 * kClosedEntries);
+  close(affordable_looks());
 }
 
 void Incumbents::improve(const search::Choice& candidate, bool force) {

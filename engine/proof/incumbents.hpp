@@ -27,6 +27,7 @@ class Incumbents {
   bool offer(const search::Choice& candidate);
   void descend(search::Choice at);
   void close(std::size_t most_entries);
+  std::size_t affordable_looks() const;
   bool look(const search::Choice& from, search::Choice& best, double& best_score);
 
   const RootGram* root_;

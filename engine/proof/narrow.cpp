@@ -8,7 +8,9 @@ CountRange range_of(const Frozen& frozen, const Node& node) {
   return {node.fewest_columns, node.most_columns, frozen.scope->fewest_terms, frozen.scope->most_terms};
 }
 
-Narrowed narrow(const Frozen& frozen, const Reduced& problem, const Bound& bound, Node& node) {
+namespace {
+
+Narrowed apply(const Frozen& frozen, const Reduced& problem, const Bound& bound, Node& node) {
   const double limit = frozen.threshold + kTolerance;
   Narrowed narrowed;
   node.lower = std::max(node.lower, bound.lower);
@@ -28,6 +30,31 @@ Narrowed narrow(const Frozen& frozen, const Reduced& problem, const Bound& bound
     }
     narrowed.cut = narrowed.cut || actions == 0;
   }
+  return narrowed;
+}
+
+/// What a reduced problem was made of.
+std::vector<Actions> actions_of(const Reduced& problem) {
+  std::vector<Actions> actions;
+  for (const std::uint16_t choice : problem.fixed) actions.push_back(Actions{1} << choice);
+  for (const OpenPredictor& predictor : problem.open) {
+    Actions& own = actions[predictor.predictor];
+    own = predictor.must ? 0 : 1;
+    for (const OpenForm& form : predictor.forms) own |= Actions{2} << form.form;
+  }
+  return actions;
+}
+
+}  // namespace
+
+Narrowed narrow(const Frozen& frozen, const Reduced& problem, const Bound& bound, const Eigen::MatrixXd& d,
+                const Eigen::VectorXd& v, Node& node, Account& account) {
+  if (account.steps == nullptr) return apply(frozen, problem, bound, node);
+  Certificate::Step step{Certificate::Reason::bound, part_of(node), {}, false, actions_of(problem), d, v};
+  const Narrowed narrowed = apply(frozen, problem, bound, node);
+  step.after = part_of(node);
+  step.nothing_left = narrowed.cut;
+  account.steps->push_back(std::move(step));
   return narrowed;
 }
 

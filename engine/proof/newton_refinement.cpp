@@ -44,8 +44,8 @@ constexpr std::size_t kNodeDescent = 60;
 
 class NewtonRefinement {
  public:
-  NewtonRefinement(const Frozen& frozen, const Reduced& problem, Node& node, double& work)
-      : frozen_(frozen), problem_(problem), node_(node), work_(work), price_(frozen, node.response) {}
+  NewtonRefinement(const Frozen& frozen, const Reduced& problem, Node& node, Account& account)
+      : frozen_(frozen), problem_(problem), node_(node), account_(account), price_(frozen, node.response) {}
 
   Refined run() {
     if (!begin()) return {};
@@ -65,7 +65,7 @@ class NewtonRefinement {
   bool begin() {
     root_ = node_.depth == 0;
     thorough_ = root_ || node_.new_range;
-    if (!starting_point(frozen_, problem_, node_, price_, point_, z_, work_)) return false;
+    if (!starting_point(frozen_, problem_, node_, price_, point_, z_, account_.work)) return false;
     const double unit = point_.lambda / static_cast<double>(problem_.m.rows());
     last_barrier_ = kLastBarrier * unit;
     polished_ = point_.v;
@@ -91,7 +91,7 @@ class NewtonRefinement {
     const auto order = static_cast<double>(problem_.m.rows());
     const std::size_t sweeps =
         coordinate_descent(problem_, z_.z(), point_.d, point_.lambda, root_ ? kRootDescent : kNodeDescent, polished_);
-    work_ += order * order * (order / 3.0 + 2.0 * static_cast<double>(sweeps + 2));
+    account_.work += order * order * (order / 3.0 + 2.0 * static_cast<double>(sweeps + 2));
     const BoundEvaluator evaluator(*frozen_.root, problem_, range_of(frozen_, node_));
     const DualValue direct = dual_value(problem_, z_, point_.d, point_.v);
     const DualValue polished = dual_value(problem_, z_, point_.d, polished_);
@@ -100,7 +100,8 @@ class NewtonRefinement {
     Bound bound = evaluator(better ? polished : direct, frozen_.threshold);
     const std::size_t fewest = node_.fewest_columns;
     const std::size_t most = node_.most_columns;
-    const Narrowed narrowed = narrow(frozen_, problem_, bound, node_);
+    const Narrowed narrowed =
+        narrow(frozen_, problem_, bound, point_.d, better ? polished_ : point_.v, node_, account_);
     if (narrowed.cut) return true;
     n_struck_ += narrowed.n_struck;
     if (node_.fewest_columns != fewest || node_.most_columns != most) newton_.reset();
@@ -148,7 +149,7 @@ class NewtonRefinement {
   void count_step() {
     const auto order = static_cast<double>(problem_.m.rows());
     constexpr double kFactorisations = 20.0;  // with the products of conjugate gradients
-    work_ += kFactorisations * order * order * order / 3.0;
+    account_.work += kFactorisations * order * order * order / 3.0;
   }
 
   /// Newton's point, if its M − D can be certified.
@@ -173,7 +174,7 @@ class NewtonRefinement {
   const Frozen& frozen_;
   const Reduced& problem_;
   Node& node_;
-  double& work_;
+  Account& account_;
   ColumnPrice price_;
   CertifiedDifference z_;
   DualPoint point_;
@@ -188,8 +189,8 @@ class NewtonRefinement {
 
 }  // namespace
 
-Refined refine_by_newton(const Frozen& frozen, const Reduced& problem, Node& node, double& work) {
-  return NewtonRefinement(frozen, problem, node, work).run();
+Refined refine_by_newton(const Frozen& frozen, const Reduced& problem, Node& node, Account& account) {
+  return NewtonRefinement(frozen, problem, node, account).run();
 }
 
 }  // namespace formsieve::proof

@@ -49,4 +49,8 @@ DualPoint unpack(const Inherited& inherited, const Reduced& problem) {
   return point;
 }
 
+Certificate::Part part_of(const Node& node) {
+  return {node.number, node.response, node.actions, node.fewest_columns, node.most_columns};
+}
+
 }  // namespace formsieve::proof

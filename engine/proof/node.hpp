@@ -1,6 +1,7 @@
 // A node of the tree: a response form, what every predictor may still do, and how many columns.
 #pragma once
 
+#include "proof/certificate.hpp"
 #include "proof/dual.hpp"
 #include "proof/problem.hpp"
 #include "proof/reduced.hpp"
@@ -40,5 +41,7 @@ struct Node {
   std::shared_ptr<const Inherited> inherited;        ///< null at a root
   bool new_range = false;                            ///< the range of columns was just cut: λ starts anew
 };
+
+Certificate::Part part_of(const Node& node);
 
 }  // namespace formsieve::proof

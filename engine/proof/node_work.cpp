@@ -18,19 +18,6 @@ constexpr std::size_t kMostParts = 8;
 /// branched on has the smallest sum of weights.
 constexpr double kBranchDecay = 4.0;
 
-/// True when a form went.
-bool drop_inseparable(const Reduced& problem, Node& node) {
-  bool dropped = false;
-  for (const OpenPredictor& predictor : problem.open) {
-    for (const OpenForm& form : predictor.forms) {
-      if (form.separable) continue;
-      node.actions[predictor.predictor] &= ~(Actions{2} << form.form);
-      dropped = true;
-    }
-  }
-  return dropped;
-}
-
 Actions bit_of(const OpenPredictor& predictor, std::size_t action) {
   return action == predictor.forms.size() ? Actions{1} : Actions{2} << predictor.forms[action].form;
 }
@@ -126,38 +113,115 @@ std::vector<Node> branch(const Frozen& frozen, const Reduced& problem, const Nod
 
 }  // namespace
 
-NodeResult work_on(const Frozen& frozen, Node node) {
-  NodeResult result;
-  if (node.lower > frozen.threshold + kTolerance) return result;
-  while (settle(*frozen.root, *frozen.scope, node)) {
-    const Reduced problem = reduce(*frozen.root, node.response, node.actions);
-    const auto order = static_cast<double>(problem.m.rows());
-    result.work += order * order * static_cast<double>(problem.fixed_columns + 1);
-    if (!problem.separable) return result;
-    if (drop_inseparable(problem, node)) continue;
-    if (count_candidates(problem, frozen.effort.enumerate_at) <=
-        std::max<std::uint64_t>(frozen.effort.enumerate_at, 1)) {
-      const std::uint64_t met =
-          enumerate(*frozen.root, problem, range_of(frozen, node), frozen.threshold, result.found);
-      result.work += order * order * static_cast<double>(met);
-      return result;
-    }
-    Refined refined = frozen.newton ? refine_by_newton(frozen, problem, node, result.work)
-                                    : refine_by_sweeps(frozen, problem, node, result.work);
-    if (refined.standing == Standing::cut) return result;
-    if (!refined.bound.action.empty()) result.rounded.push_back(round_off(problem, refined.bound));
-    if (refined.standing == Standing::changed) continue;
-    if (refined.standing == Standing::expired)
-      result.unfinished = std::move(node);
-    else
-      result.children = branch(frozen, problem, node, refined.bound);
-    if (node.depth == 0 && !result.unfinished) {
-      node.inherited.reset();
-      result.root = std::move(node);
-    }
-    return result;
+namespace {
+
+/// The steps that the numbers of columns and terms, or pivots, decide, recorded as those of bounds are.
+class Worker {
+ public:
+  Worker(const Frozen& frozen, Node node) : frozen_(frozen), node_(std::move(node)) {
+    if (!frozen.record) return;
+    result_.record = Certificate::Node{part_of(node_), {}, Certificate::End::nothing_left, {}};
+    account_.steps = &result_.record->steps;
   }
-  return result;
+
+  NodeResult run() {
+    while (count()) {
+      const Reduced problem = reduce(*frozen_.root, node_.response, node_.actions);
+      const auto order = static_cast<double>(problem.m.rows());
+      account_.work += order * order * static_cast<double>(problem.fixed_columns + 1);
+      if (!separable(problem)) break;
+      if (drop_inseparable(problem)) continue;
+      if (small(problem)) {
+        enumerate_all(problem);
+        break;
+      }
+      const Refined refined = frozen_.newton ? refine_by_newton(frozen_, problem, node_, account_)
+                                             : refine_by_sweeps(frozen_, problem, node_, account_);
+      if (refined.standing == Standing::cut) break;
+      if (!refined.bound.action.empty()) result_.rounded.push_back(round_off(problem, refined.bound));
+      if (refined.standing == Standing::changed) continue;
+      leave(problem, refined);
+      break;
+    }
+    result_.work = account_.work;
+    return std::move(result_);
+  }
+
+ private:
+  void note(Certificate::Reason reason, Certificate::Part before, bool nothing_left) {
+    if (account_.steps != nullptr)
+      account_.steps->push_back({reason, std::move(before), part_of(node_), nothing_left, {}, {}, {}});
+  }
+
+  /// False: nothing is left.
+  bool count() {
+    Certificate::Part before = part_of(node_);
+    const bool any = settle(*frozen_.root, *frozen_.scope, node_);
+    note(Certificate::Reason::counting, std::move(before), !any);
+    return any;
+  }
+
+  bool separable(const Reduced& problem) {
+    if (!problem.separable) note(Certificate::Reason::inseparable, part_of(node_), true);
+    return problem.separable;
+  }
+
+  /// True when a form went.
+  bool drop_inseparable(const Reduced& problem) {
+    Certificate::Part before = part_of(node_);
+    bool dropped = false;
+    for (const OpenPredictor& predictor : problem.open) {
+      for (const OpenForm& form : predictor.forms) {
+        if (form.separable) continue;
+        node_.actions[predictor.predictor] &= ~(Actions{2} << form.form);
+        dropped = true;
+      }
+    }
+    if (dropped) note(Certificate::Reason::inseparable, std::move(before), false);
+    return dropped;
+  }
+
+  bool small(const Reduced& problem) const {
+    const std::uint64_t most = std::max<std::uint64_t>(frozen_.effort.enumerate_at, 1);
+    return count_candidates(problem, most) <= most;
+  }
+
+  void enumerate_all(const Reduced& problem) {
+    const auto order = static_cast<double>(problem.m.rows());
+    const std::uint64_t met =
+        enumerate(*frozen_.root, problem, range_of(frozen_, node_), frozen_.threshold, result_.found);
+    account_.work += order * order * static_cast<double>(met);
+    end(Certificate::End::enumerated);
+  }
+
+  void leave(const Reduced& problem, const Refined& refined) {
+    if (refined.standing == Standing::expired) {
+      end(Certificate::End::open);
+      result_.unfinished = std::move(node_);
+      return;
+    }
+    end(Certificate::End::branched);
+    result_.children = branch(frozen_, problem, node_, refined.bound);
+    if (node_.depth > 0) return;
+    node_.inherited.reset();
+    result_.root = std::move(node_);
+  }
+
+  void end(Certificate::End end) {
+    if (result_.record) result_.record->end = end;
+  }
+
+  const Frozen& frozen_;
+  Node node_;
+  NodeResult result_;
+  Account account_{0.0, nullptr};
+};
+
+}  // namespace
+
+NodeResult work_on(const Frozen& frozen, Node node) {
+  if (node.lower > frozen.threshold + kTolerance) return {};
+  return Worker(frozen, std::move(node)).run();
 }
 
 }  // namespace formsieve::proof

@@ -16,14 +16,15 @@ void OpenNodes::limit(std::size_t bytes, std::size_t n_predictors, std::size_t n
   most_queued_ = std::max<std::size_t>(bytes / (sizeof(Node) + sizeof(Actions) * n_predictors + inherited), 1);
 }
 
-void OpenNodes::push(Node node) {
+std::uint64_t OpenNodes::push(Node node) {
   node.number = next_number_++;
   if (queue_.size() >= most_queued_) {
     stack_.push_back(std::move(node));
-    return;
+  } else {
+    queue_.push_back(std::move(node));
+    std::push_heap(queue_.begin(), queue_.end(), later);
   }
-  queue_.push_back(std::move(node));
-  std::push_heap(queue_.begin(), queue_.end(), later);
+  return next_number_ - 1;
 }
 
 std::vector<Node> OpenNodes::pop(std::size_t most) {

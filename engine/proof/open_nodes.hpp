@@ -16,7 +16,8 @@ class OpenNodes {
   /// Bytes for all of them; a node's share is estimated from the numbers of predictors and columns.
   void limit(std::size_t bytes, std::size_t n_predictors, std::size_t n_columns);
 
-  void push(Node node);
+  /// The number that the node is given.
+  std::uint64_t push(Node node);
   /// At most so many, best first; nodes stacked beyond the limit come first.
   std::vector<Node> pop(std::size_t most);
   /// Drops nodes whose bound lies above.

@@ -26,6 +26,7 @@ RootGram::RootGram(const Problem& problem) : problem_(&problem) {
   const Eigen::VectorXd scale = all.diagonal().unaryExpr([](double s) { return unit_scale(s); });
   gram_ =
       scale.head(n_columns).asDiagonal() * all.topLeftCorner(n_columns, n_columns) * scale.head(n_columns).asDiagonal();
+  gram_.triangularView<Eigen::StrictlyUpper>() = gram_.transpose();  // rounding may differ between the halves
   gram_.diagonal() = scale.head(n_columns).unaryExpr([](double s) { return s > 0.0 ? 1.0 : 0.0; });
   products_ = scale.head(n_columns).asDiagonal() * all.topRightCorner(n_columns, n_responses) *
               scale.tail(n_responses).asDiagonal();

@@ -1,6 +1,7 @@
 #include "proof/prove.hpp"
 
 #include "base/parallel.hpp"
+#include "proof/certificate.hpp"
 #include "proof/incumbents.hpp"
 #include "proof/node_work.hpp"
 #include "proof/open_nodes.hpp"
@@ -58,10 +59,12 @@ class Tree {
   }
 
   void begin() {
+    if (limits_.certificate) *limits_.certificate = {};
     std::size_t n_columns = 0;
     for (const std::size_t response : scope_.responses) {
       roots_.push_back(root_node(response));
-      open_.push(roots_.back());
+      roots_.back().number = open_.push(roots_.back());
+      if (limits_.certificate) limits_.certificate->roots.push_back(part_of(roots_.back()));
     }
     for (const search::PredictorChoices& predictor : root_.space().predictors)
       for (const search::FormBlock& form : predictor.forms) n_columns += form.n_columns;
@@ -89,7 +92,23 @@ class Tree {
       if (open_.has(root.response)) roots.push_back(root);
     }
     open_.clear();
-    for (Node& root : roots) open_.push(std::move(root));
+    for (Node& root : roots) {
+      const std::uint64_t old = root.number;
+      root.number = open_.push(root);
+      replace_children(old, root);
+    }
+  }
+
+  /// In the certificate what was left of a root becomes its only child.
+  void replace_children(std::uint64_t number, const Node& root) {
+    if (!limits_.certificate) return;
+    for (Certificate::Node& node : limits_.certificate->nodes) {
+      if (node.part.number != number) continue;
+      node.children = {part_of(root)};
+      return;
+    }
+    for (Certificate::Part& part : limits_.certificate->roots)  // not worked on yet
+      if (part.number == number) part.number = root.number;
   }
 
   Frozen freeze() const {
@@ -98,6 +117,7 @@ class Tree {
     frozen.scope = &scope_;
     frozen.effort = effort_;
     frozen.newton = newton_;
+    frozen.record = limits_.certificate != nullptr;
     frozen.threshold = list_.threshold();
     if (const Listed* best = list_.best()) {
       frozen.best_score = best->score;
@@ -125,7 +145,13 @@ class Tree {
     for (const Found& found : result.found) list_.offer(found.choice, found.score);
     if (effort_.incumbents)
       for (const search::Choice& rounded : result.rounded) incumbents_.improve(rounded, false);
-    for (Node& child : result.children) open_.push(std::move(child));
+    for (Node& child : result.children) {
+      Certificate::Part part;
+      if (result.record) part = part_of(child);
+      part.number = open_.push(std::move(child));
+      if (result.record) result.record->children.push_back(std::move(part));
+    }
+    if (result.record) limits_.certificate->nodes.push_back(std::move(*result.record));
     if (result.unfinished) open_.push(std::move(*result.unfinished));
     if (result.root)
       for (Node& root : roots_)

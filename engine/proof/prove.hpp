@@ -31,6 +31,8 @@ struct Progress {
   double lower_bound = -std::numeric_limits<double>::infinity();  ///< of every candidate that is not listed
 };
 
+struct Certificate;  // certificate.hpp
+
 struct Limits {
   std::size_t keep = 100;  ///< candidates listed at most
   /// Candidates whose score lies further above the best are not listed.
@@ -40,6 +42,9 @@ struct Limits {
   unsigned threads = 0;  ///< 0: all that the process may use
   std::stop_token stop;
   std::function<void(const Progress&)> progress;  ///< called between batches; may be empty
+  /// Where the proof is to be written down; may be null. Takes memory for a matrix of the order of the open columns and
+  /// more for every bound.
+  Certificate* certificate = nullptr;
 };
 
 struct Listed {

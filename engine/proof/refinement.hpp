@@ -19,17 +19,18 @@ struct Refined {
 };
 
 /// Improves the bound of `node`; narrows its actions and its range of columns, raises `lower`, and leaves in it what
-/// the children inherit. `work` counts operations.
-Refined refine_by_sweeps(const Frozen& frozen, const Reduced& problem, Node& node, double& work);
+/// the children inherit.
+Refined refine_by_sweeps(const Frozen& frozen, const Reduced& problem, Node& node, Account& account);
 /// The same by Newton's method: dearer, but it reaches the optimum of the dual, where sweeps may stall.
-Refined refine_by_newton(const Frozen& frozen, const Reduced& problem, Node& node, double& work);
+Refined refine_by_newton(const Frozen& frozen, const Reduced& problem, Node& node, Account& account);
 
-/// Narrows a node by a bound. What is decided stays valid whatever comes after.
+/// Narrows a node by the bound at (d, v). What is decided stays valid whatever comes after.
 struct Narrowed {
   bool cut = false;
   std::size_t n_struck = 0;  ///< actions
 };
-Narrowed narrow(const Frozen& frozen, const Reduced& problem, const Bound& bound, Node& node);
+Narrowed narrow(const Frozen& frozen, const Reduced& problem, const Bound& bound, const Eigen::MatrixXd& d,
+                const Eigen::VectorXd& v, Node& node, Account& account);
 
 CountRange range_of(const Frozen& frozen, const Node& node);
 

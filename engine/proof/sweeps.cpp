@@ -25,8 +25,13 @@ constexpr std::size_t kNodeDescent = 60;
 
 class Sweeps {
  public:
-  Sweeps(const Frozen& frozen, const Reduced& problem, Node& node, double& work)
-      : frozen_(frozen), problem_(problem), node_(node), work_(work), price_(frozen, node.response), sweep_(problem) {}
+  Sweeps(const Frozen& frozen, const Reduced& problem, Node& node, Account& account)
+      : frozen_(frozen),
+        problem_(problem),
+        node_(node),
+        account_(account),
+        price_(frozen, node.response),
+        sweep_(problem) {}
 
   Refined run() {
     Refined refined;
@@ -47,17 +52,17 @@ class Sweeps {
   bool begin() {
     root_ = node_.depth == 0;
     barrier_ = root_ && !node_.inherited ? kFirstBarrier : kLastBarrier;
-    return starting_point(frozen_, problem_, node_, price_, point_, z_, work_);
+    return starting_point(frozen_, problem_, node_, price_, point_, z_, account_.work);
   }
 
   Narrowed evaluate(Bound& best) {
     const std::size_t sweeps =
         coordinate_descent(problem_, z_.z(), point_.d, point_.lambda, root_ ? kRootDescent : kNodeDescent, point_.v);
     const auto order = static_cast<double>(problem_.m.rows());
-    work_ += 2.0 * static_cast<double>(sweeps + 1) * order * order;
+    account_.work += 2.0 * static_cast<double>(sweeps + 1) * order * order;
     const BoundEvaluator evaluator(*frozen_.root, problem_, range_of(frozen_, node_));
     Bound bound = evaluator(dual_value(problem_, z_, point_.d, point_.v), frozen_.threshold);
-    const Narrowed narrowed = narrow(frozen_, problem_, bound, node_);
+    const Narrowed narrowed = narrow(frozen_, problem_, bound, point_.d, point_.v, node_, account_);
     note_gain(bound.lower);
     if (best.action.empty() || bound.lower >= best_lower_) {
       best_lower_ = bound.lower;
@@ -85,7 +90,7 @@ class Sweeps {
 
   bool sweep() {
     const auto order = static_cast<double>(problem_.m.rows());
-    work_ += 4.0 * order * order * order;
+    account_.work += 4.0 * order * order * order;
     const double mu = barrier_ * point_.lambda / order;
     const BlockSweep::Outcome outcome = sweep_(point_.v, point_.lambda, mu, point_.d, z_);
     if (outcome == BlockSweep::Outcome::reconditioned) {
@@ -107,7 +112,7 @@ class Sweeps {
   const Frozen& frozen_;
   const Reduced& problem_;
   Node& node_;
-  double& work_;
+  Account& account_;
   ColumnPrice price_;
   BlockSweep sweep_;
   CertifiedDifference z_;
@@ -120,8 +125,8 @@ class Sweeps {
 
 }  // namespace
 
-Refined refine_by_sweeps(const Frozen& frozen, const Reduced& problem, Node& node, double& work) {
-  return Sweeps(frozen, problem, node, work).run();
+Refined refine_by_sweeps(const Frozen& frozen, const Reduced& problem, Node& node, Account& account) {
+  return Sweeps(frozen, problem, node, account).run();
 }
 
 }  // namespace formsieve::proof
