@@ -23,9 +23,11 @@ constexpr std::size_t kGrain = 64;
 
 using List = std::vector<search::Scored>;
 
-/// The near-best set with its held-out errors.
+/// The near-best set and the best beyond it, with held-out errors.
 List score_near(const Prepared& prepared, const base::GramSet& grams, const Proved& proved, unsigned threads) {
-  const auto& near = proved.near.best.empty() ? proved.best.best : proved.near.best;
+  std::vector<proof::Listed> near = proved.near.best;
+  for (const proof::Listed& listed : proved.best.best)
+    if (near.empty() || listed.score > near.back().score) near.push_back(listed);
   List scored(near.size());
   base::parallel_for((near.size() + kGrain - 1) / kGrain, threads, [&](std::size_t part) {
     search::CandidateFit fit;
@@ -89,7 +91,7 @@ std::string near_pool_words(const run::Plan& plan, const Proved& proved, const s
                           (proved.criterion == judge::Criterion::bic    ? "BIC"
                            : proved.criterion == judge::Criterion::aicc ? "AICc"
                                                                         : "AIC");
-  if (both == proved.near.best.size()) return "all of " + set;
+  if (both == proved.near.best.size()) return "those of lowest criterion, among them all of " + set;
   return "of " + set + " the " + count_words(both) +
          " that come first by the criterion or by held-out error from the Gram matrices";
 }

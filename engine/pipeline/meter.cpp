@@ -29,6 +29,11 @@ void Meter::begin(const std::string& phase, double total, const std::string& uni
   next_news_ms_ = 0;
 }
 
+void Meter::rename(const std::string& phase) {
+  const std::lock_guard lock(sending_);
+  phase_ = phase;
+}
+
 void Meter::add(std::uint64_t units) {
   done_.fetch_add(units, std::memory_order_relaxed);
   const double elapsed = seconds();

@@ -20,6 +20,8 @@ class Meter {
   Meter(ProgressSink sink, double budget_seconds, std::stop_token outer);
 
   void begin(const std::string& phase, double total, const std::string& unit);
+  /// Another name for the phase, which goes on.
+  void rename(const std::string& phase);
   void add(std::uint64_t units);
   /// Sends the last news of a phase.
   void end();

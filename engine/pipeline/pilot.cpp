@@ -82,11 +82,15 @@ struct Good {
 };
 
 Good good_candidates(const Prepared& prepared, const base::GramSet& grams, std::size_t response,
-                     const Eigen::VectorXd& z, unsigned threads) {
-  search::DescentOptions options;
-  options.keep = kPilotCandidates;
-  options.threads = threads;
-  const auto found = search::descend(prepared.space, grams, response, options);
+                     const Eigen::VectorXd& z, std::span<const search::Choice> candidates, unsigned threads) {
+  std::vector<search::Choice> found(candidates.begin(),
+                                    candidates.begin() + std::min(candidates.size(), kPilotCandidates));
+  if (found.empty()) {
+    search::DescentOptions options;
+    options.keep = kPilotCandidates;
+    options.threads = threads;
+    found = search::descend(prepared.space, grams, response, options);
+  }
   std::vector<std::optional<Refits>> refits(found.size());
   base::parallel_for(found.size(), threads, [&](std::size_t m) { refits[m] = refit(prepared, found[m], z); });
   Good good;
@@ -194,9 +198,9 @@ std::vector<Tangent> tangents_at(const std::vector<double>& predictions, const s
 bool is_linear(const forms::Form& response) { return forms::equivalent(response, forms::Form{}); }
 
 std::optional<design::Pilot> make_pilot(const Prepared& prepared, const base::GramSet& grams, std::size_t response,
-                                        unsigned threads) {
+                                        unsigned threads, std::span<const search::Choice> candidates) {
   const Eigen::VectorXd z = design::response_vector(prepared.data, response, all_rows(prepared));
-  const Good good = good_candidates(prepared, grams, response, z, threads);
+  const Good good = good_candidates(prepared, grams, response, z, candidates, threads);
   if (good.choices.empty()) return std::nullopt;
   const Medians medians = medians_of(prepared, good, threads);
   const Eigen::VectorXd residuals = z - medians.fitted;
@@ -219,11 +223,14 @@ std::optional<design::Pilot> make_pilot(const Prepared& prepared, const base::Gr
   return pilot;
 }
 
-Status add_own_units(const Prepared& prepared, base::GramSet& grams, unsigned threads) {
+Status add_own_units(const Prepared& prepared, base::GramSet& grams, unsigned threads,
+                     std::span<const std::vector<search::Choice>> candidates) {
   std::vector<design::Pilot> pilots;
   for (std::size_t r = 0; r < prepared.data.response_forms.size(); ++r) {
     if (is_linear(prepared.data.response_forms[r])) continue;
-    if (auto pilot = make_pilot(prepared, grams, r, threads)) pilots.push_back(std::move(*pilot));
+    const auto known =
+        r < candidates.size() ? std::span<const search::Choice>(candidates[r]) : std::span<const search::Choice>();
+    if (auto pilot = make_pilot(prepared, grams, r, threads, known)) pilots.push_back(std::move(*pilot));
   }
   auto own = design::build_own_units_grams(prepared.data, prepared.folds, pilots, threads);
   if (!own) return own.error();

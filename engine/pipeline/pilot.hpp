@@ -6,9 +6,11 @@
 #include "base/gram.hpp"
 #include "design/own_units.hpp"
 #include "pipeline/prepare.hpp"
+#include "search/space.hpp"
 
 #include <cstddef>
 #include <optional>
+#include <span>
 #include <vector>
 
 namespace formsieve::pipeline {
@@ -20,20 +22,22 @@ inline constexpr std::size_t kPilotCandidates = 25;
 /// Whether a response form's scale is own units up to a constant slope: it needs no pilot.
 bool is_linear(const forms::Form& response);
 
-/// The pilot of one response form: the median, row by row, of the predictions of the best candidates that a descent
-/// meets (search::descend). Predictions p of a row come from refits without its fold, once a repeat; the back-transform
-/// H smears the residuals of the medians of the refits on all rows, and its slope is a central difference.
+/// The pilot of one response form: the median, row by row, of the predictions of good `candidates` of it (at most
+/// kPilotCandidates are used), or, where none are given, of the best that a descent meets (search::descend).
+/// Predictions p of a row come from refits without its fold, once a repeat; the back-transform H smears the residuals
+/// of the medians of the refits on all rows, and its slope is a central difference.
 ///
 /// Rows where H or its slope does not exist at p, or where the slope is more than kSlopeRange times larger or smaller
 /// than the median slope, take the p, H(p) and H′(p) of the row with the nearest p where they do. Nothing when no
 /// candidate can be fitted in every fold or no row has a slope. The same for any number of threads. Cost that of
 /// examining kPilotCandidates candidates.
 std::optional<design::Pilot> make_pilot(const Prepared& prepared, const base::GramSet& grams, std::size_t response,
-                                        unsigned threads);
+                                        unsigned threads, std::span<const search::Choice> candidates = {});
 inline constexpr double kSlopeRange = 1e6;
 
 /// Makes the pilots of all response forms that need one and fills grams.own_units. Response forms without a pilot are
-/// left out of it.
-Status add_own_units(const Prepared& prepared, base::GramSet& grams, unsigned threads);
+/// left out of it. `candidates` by response form, as in make_pilot; may be empty.
+Status add_own_units(const Prepared& prepared, base::GramSet& grams, unsigned threads,
+                     std::span<const std::vector<search::Choice>> candidates = {});
 
 }  // namespace formsieve::pipeline

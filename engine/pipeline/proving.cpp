@@ -7,6 +7,7 @@
 #include <algorithm>
 #include <chrono>
 #include <cmath>
+#include <cstdio>
 #include <limits>
 #include <numbers>
 
@@ -26,10 +27,11 @@ constexpr std::size_t kMostNear = 20'000;
 /// Shares of the time: for the best, for the near-best set, and the rest for the profile. Time that one leaves goes to
 /// those after it.
 constexpr double kShareOfBest = 0.5;
-constexpr double kShareOfNear = 0.5;  // of what is left then
+constexpr double kShareOfNear = 0.3;  // of what is left then
 
-/// The longest that one forced choice may take while others wait, as a share of the time that is left for each.
-constexpr double kPatience = 8.0;
+/// In the first round a forced choice may take this share of its part of the time, so that something is known of each
+/// before any takes long; what is still open then is gone on with in a second round.
+constexpr double kFirstRound = 0.4;
 
 /// Leading candidates that a forced choice begins from.
 constexpr std::size_t kHints = 12;
@@ -98,6 +100,7 @@ struct Task {
   proof::Restriction restriction;
   std::vector<search::Choice> hints;
   Forced* result = nullptr;
+  std::uint64_t nodes = 0;
 };
 
 class Prover {
@@ -111,9 +114,11 @@ class Prover {
 
  private:
   double seconds_left() const { return limits_.seconds - std::chrono::duration<double>(Clock::now() - start_).count(); }
+  std::function<void(const proof::Progress&)> news(const std::string& phase) const;
   proof::Proof run(proof::Restriction restriction, proof::Limits limits,
                    const std::vector<search::Choice>& hints) const;
-  void run(std::vector<Task>& tasks, Proved& proved) const;
+  void run(Task& task, double seconds) const;
+  void run_open(std::vector<Task>& tasks, double share) const;
   std::vector<Task> choice_tasks(Proved& proved) const;
   std::vector<Task> terms_tasks(Proved& proved) const;
   std::vector<Task> response_tasks(Proved& proved) const;
@@ -129,21 +134,28 @@ class Prover {
   Clock::time_point start_;
 };
 
+/// Counts nodes, and names the gap as it closes.
+std::function<void(const proof::Progress&)> Prover::news(const std::string& phase) const {
+  return [this, phase, said = std::uint64_t{0}](const proof::Progress& progress) mutable {
+    const double gap = progress.best_score - progress.lower_bound;
+    char text[32];
+    std::snprintf(text, sizeof text, ", gap %.1f", std::max(0.0, gap));
+    if (std::isfinite(gap)) limits_.rename(phase + text);
+    limits_.progress(progress.nodes - said);
+    said = progress.nodes;
+  };
+}
+
 proof::Proof Prover::run(proof::Restriction restriction, proof::Limits limits,
                          const std::vector<search::Choice>& hints) const {
-  std::uint64_t said = 0;
-  if (limits_.progress) {
-    limits.progress = [this, &said](const proof::Progress& progress) {
-      limits_.progress(progress.nodes - said);
-      said = progress.nodes;
-    };
-  }
   limits.stop = limits_.stop;
   return proof::prove(root_, restriction, limits, hints);
 }
 
 void Prover::prove_best(Proved& proved, std::vector<search::Choice> hints) {
+  limits_.begin("proving", 0.0, "nodes");
   proof::Limits limits;
+  limits.progress = news("proving");
   limits.keep = std::max(kFewestListed, plan_.rank.shortlist);
   limits.seconds = kShareOfBest * limits_.seconds;
   limits.threads = limits_.threads;
@@ -154,7 +166,9 @@ void Prover::prove_best(Proved& proved, std::vector<search::Choice> hints) {
 void Prover::prove_near(Proved& proved) {
   std::vector<search::Choice> hints;
   for (const auto& listed : proved.best.best) hints.push_back(listed.choice);
+  limits_.begin("near-best set", 0.0, "nodes");
   proof::Limits limits;
+  limits.progress = news("near-best set");
   limits.keep = std::max(kMostNear, plan_.search.pool);
   limits.within = plan_.search.within;
   limits.seconds = kShareOfNear * std::max(0.0, seconds_left());
@@ -245,36 +259,44 @@ std::vector<Task> Prover::response_tasks(Proved& proved) const {
   return tasks;
 }
 
-/// Runs the tasks side by side, each on one thread, for as long as there is time.
-void Prover::run(std::vector<Task>& tasks, Proved& proved) const {
+void Prover::run(Task& task, double seconds) const {
+  if (seconds <= 0.0 || limits_.stop.stop_requested()) return;
+  proof::Limits limits;
+  limits.keep = 1;
+  limits.threads = 1;
+  limits.seconds = seconds;
+  const proof::Proof one = run(task.restriction, limits, task.hints);
+  Forced& forced = *task.result;
+  if (!one.best.empty() && (!forced.best || one.best.front().score < forced.best->score))
+    forced.best = one.best.front();
+  forced.lower_bound = std::max(forced.lower_bound, one.lower_bound);
+  if (forced.best) forced.lower_bound = std::min(forced.lower_bound, forced.best->score);
+  forced.proved = one.proved;
+  task.nodes += one.nodes;
+}
+
+/// Runs the tasks that are still open side by side, each on one thread for at most its part of a share of the time.
+void Prover::run_open(std::vector<Task>& tasks, double share) const {
+  std::vector<Task*> open;
+  for (Task& task : tasks)
+    if (!task.result->proved) open.push_back(&task);
+  if (open.empty()) return;
+  limits_.begin("proving what each choice costs", static_cast<double>(open.size()), "choices");
   const double threads = limits_.threads == 0 ? base::available_threads() : limits_.threads;
-  const double each =
-      kPatience * std::max(0.0, seconds_left()) * threads / static_cast<double>(std::max<std::size_t>(1, tasks.size()));
-  std::vector<std::uint64_t> nodes(tasks.size());
-  base::parallel_for(tasks.size(), limits_.threads, [&](std::size_t i) {
-    const double left = std::min(each, seconds_left());
-    if (left <= 0.0 || limits_.stop.stop_requested()) return;
-    proof::Limits limits;
-    limits.keep = 1;
-    limits.threads = 1;
-    limits.seconds = left;
-    const proof::Proof one = run(tasks[i].restriction, limits, tasks[i].hints);
-    Forced& forced = *tasks[i].result;
-    if (!one.best.empty() && (!forced.best || one.best.front().score < forced.best->score))
-      forced.best = one.best.front();
-    forced.lower_bound = std::max(forced.lower_bound, one.lower_bound);
-    if (forced.best) forced.lower_bound = std::min(forced.lower_bound, forced.best->score);
-    forced.proved = one.proved;
-    nodes[i] = one.nodes;
+  const double each = share * std::max(0.0, seconds_left()) * threads / static_cast<double>(open.size());
+  base::parallel_for(open.size(), limits_.threads, [&](std::size_t i) {
+    run(*open[i], std::min(each, seconds_left()));
+    limits_.progress(1);
   });
-  for (const std::uint64_t n : nodes) proved.nodes += n;
 }
 
 void Prover::prove_profile(Proved& proved) {
   std::vector<Task> tasks = response_tasks(proved);
   for (auto& task : terms_tasks(proved)) tasks.push_back(std::move(task));
   for (auto& task : choice_tasks(proved)) tasks.push_back(std::move(task));
-  run(tasks, proved);
+  run_open(tasks, kFirstRound);
+  run_open(tasks, 1.0);
+  for (const Task& task : tasks) proved.nodes += task.nodes;
 }
 
 /// Back to the response forms of the search.
@@ -324,6 +346,16 @@ Proved prove_space(const Prepared& prepared, const run::Plan& plan, const base::
   prover.prove_profile(proved);
   rename(proved, stage->responses, grams.n_responses);
   return proved;
+}
+
+std::vector<std::vector<search::Choice>> lowest_by_response(const Proved& proved, std::size_t most) {
+  std::vector<std::vector<search::Choice>> lowest(proved.by_response.size());
+  const auto& listed = proved.near.best.size() > proved.best.best.size() ? proved.near.best : proved.best.best;
+  for (const proof::Listed& one : listed)
+    if (lowest[one.choice.response].size() < most) lowest[one.choice.response].push_back(one.choice);
+  for (std::size_t r = 0; r < lowest.size(); ++r)
+    if (lowest[r].empty() && proved.by_response[r].best) lowest[r].push_back(proved.by_response[r].best->choice);
+  return lowest;
 }
 
 }  // namespace formsieve::pipeline

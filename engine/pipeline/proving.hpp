@@ -14,6 +14,7 @@
 #include <memory>
 #include <optional>
 #include <stop_token>
+#include <string>
 #include <vector>
 
 namespace formsieve::pipeline {
@@ -37,11 +38,15 @@ struct Proved {
   std::uint64_t nodes = 0;
 };
 
+/// All callbacks must be set.
 struct ProvingLimits {
   double seconds = 0.0;  ///< for all of it
   unsigned threads = 0;
   std::stop_token stop;
-  std::function<void(std::uint64_t nodes)> progress;  ///< increments; may be called from several threads
+  /// A part of the work begins, of `total` units (0: nobody knows).
+  std::function<void(const std::string& phase, double total, const std::string& unit)> begin;
+  std::function<void(const std::string& phase)> rename;  ///< the part says how far it is
+  std::function<void(std::uint64_t units)> progress;     ///< increments; may be called from several threads
 };
 
 /// Proves by the criterion that the plan ranks by, or AIC where that is none. Response forms without a likelihood (a
@@ -51,5 +56,8 @@ struct ProvingLimits {
 Proved prove_space(const Prepared& prepared, const run::Plan& plan, const base::GramSet& grams,
                    const LikelihoodConstants& constants, const ProvingLimits& limits,
                    std::vector<search::Choice> hints = {});
+
+/// The candidates of lowest score by response form, best first, at most `most` each: what is known of each.
+std::vector<std::vector<search::Choice>> lowest_by_response(const Proved& proved, std::size_t most);
 
 }  // namespace formsieve::pipeline

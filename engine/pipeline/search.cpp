@@ -88,7 +88,7 @@ class Search {
   Strategy strategy_;
   std::optional<Proved> proved_;
   std::optional<search::GuidedResult> guided_;
-  double examine_seconds_ = 0.0;
+  double reserved_seconds_ = 0.0;  ///< for what follows the search itself
   search::WalkResult walked_;
   std::vector<PoolList> lists_;
   std::vector<search::Scored> pool_;
@@ -169,7 +169,7 @@ Status Search::count_and_announce() {
   auto strategy = choose_strategy(time, *prepared_, plan_);
   if (!strategy) return strategy.error();
   strategy_ = std::move(*strategy);
-  examine_seconds_ = time.examine_seconds;
+  reserved_seconds_ = time.examine_seconds + time.own_units_seconds;
 
   Announcement news;
   news.candidates = time.candidates.str();
@@ -205,13 +205,16 @@ void Search::visit_every() {
 }
 
 void Search::prove() {
-  meter_.begin("proving", 0.0, "nodes");
   ProvingLimits limits;
-  const double left = plan_.search.budget_seconds - meter_.seconds() - examine_seconds_;
+  const double left = plan_.search.budget_seconds - meter_.seconds() - reserved_seconds_;
   limits.seconds = std::max(0.0, left) * (strategy_.guides ? kShareOfProof : 1.0);
   limits.threads = options_.threads;
   limits.stop = meter_.token();
-  limits.progress = [this](std::uint64_t nodes) { meter_.add(nodes); };
+  limits.begin = [this](const std::string& phase, double total, const std::string& unit) {
+    meter_.begin(phase, total, unit);
+  };
+  limits.rename = [this](const std::string& phase) { meter_.rename(phase); };
+  limits.progress = [this](std::uint64_t units) { meter_.add(units); };
   const double start = meter_.seconds();
   proved_ = prove_space(*prepared_, plan_, grams_, examiner_->likelihood_constants(), limits);
   meter_.end();
@@ -226,7 +229,7 @@ void Search::guide() {
   options.seed = plan_.search.seed;
   options.threads = options_.threads;
   options.stop = meter_.token();
-  const double until = plan_.search.budget_seconds - examine_seconds_;
+  const double until = plan_.search.budget_seconds - reserved_seconds_;
   options.enough = [this, until] { return meter_.seconds() > until; };
   if (proved_)
     for (std::size_t i = 0; i < std::min(kGuidedHints, proved_->best.best.size()); ++i)
@@ -251,7 +254,9 @@ Beyond Search::beyond() const { return {proved_ ? &*proved_ : nullptr, guided_ ?
 Status Search::screen() {
   if (strategy_.proves) prove();
   meter_.begin("building Gram matrices in own units", 0.0, "rows");
-  if (auto status = add_own_units(*prepared_, grams_, options_.threads); !status) return status.error();
+  const auto pilots =
+      proved_ ? lowest_by_response(*proved_, kPilotCandidates) : std::vector<std::vector<search::Choice>>();
+  if (auto status = add_own_units(*prepared_, grams_, options_.threads, pilots); !status) return status.error();
   if (strategy_.every) visit_every();
   if (strategy_.guides) guide();
   if (!strategy_.every) walked_ = beyond_lists(*prepared_, plan_, grams_, beyond(), options_.threads);
