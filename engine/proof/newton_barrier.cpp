@@ -109,6 +109,20 @@ bool factor_here(const Reduced& problem, const Variables& at, Factor& factor) {
   return true;
 }
 
+/// Σ over the forms of ln det [[D_ff, g_f], [g_fᵀ, u + c_f λ]] of one predictor, plus ln u where it may be absent;
+/// −infinity outside the domain. `work` holds anything.
+double predictor_barrier(const OpenPredictor& predictor, double u, const Variables& at, std::vector<double>& work) {
+  if (!predictor.must && !(u > 0.0)) return kOutside;
+  double sum = predictor.must ? 0.0 : std::log(u);
+  for (const OpenForm& form : predictor.forms) {
+    const FormValue value = form_value(form, at, work);
+    const double slack = u + static_cast<double>(form.n_columns) * at.lambda - value.charge;
+    if (!(slack > 0.0)) return kOutside;  // NaN too
+    sum += value.log_determinant + std::log(slack);
+  }
+  return sum;
+}
+
 }  // namespace
 
 void Variables::set_along(const Variables& point, double length, const Variables& direction, const Reduced& problem) {
@@ -129,18 +143,6 @@ Prices::Prices(const Reduced& problem, const ColumnRange& range, double lambda)
   const auto open = [&](std::size_t k) { return static_cast<double>(k - std::min(k, problem.fixed_columns)); };
   k_fewest = open(range.fewest);
   k_most = open(range.most);
-}
-
-double predictor_barrier(const OpenPredictor& predictor, double u, const Variables& at, std::vector<double>& work) {
-  if (!predictor.must && !(u > 0.0)) return kOutside;
-  double sum = predictor.must ? 0.0 : std::log(u);
-  for (const OpenForm& form : predictor.forms) {
-    const FormValue value = form_value(form, at, work);
-    const double slack = u + static_cast<double>(form.n_columns) * at.lambda - value.charge;
-    if (!(slack > 0.0)) return kOutside;  // NaN too
-    sum += value.log_determinant + std::log(slack);
-  }
-  return sum;
 }
 
 double merit(const Reduced& problem, const Prices& prices, double mu, const Variables& at, Factor& factor) {

@@ -46,10 +46,6 @@ struct Factor {
   const double* residual_data() const { return residual.data()->at; }
 };
 
-/// Σ over the forms of ln det [[D_ff, g_f], [g_fᵀ, u + c_f λ]] of one predictor, plus ln u where it may be absent;
-/// −infinity outside the domain. `work` holds anything.
-double predictor_barrier(const OpenPredictor& predictor, double u, const Variables& at, std::vector<double>& work);
-
 /// yy − (b − g)ᵀ(M − D)⁻¹(b − g) − Σu − s + μ · (barrier); −infinity outside the domain. Fills in `factor`. Cost: a
 /// Cholesky factorisation of order [open columns].
 double merit(const Reduced& problem, const Prices& prices, double mu, const Variables& at, Factor& factor);
