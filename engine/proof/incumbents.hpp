@@ -28,7 +28,7 @@ class Incumbents {
   void descend(search::Choice at);
   void close(std::size_t most_entries);
   std::size_t affordable_looks() const;
-  bool look(const search::Choice& from, search::Choice& best, double& best_score);
+  void offer_changes(const search::Choice& from);
 
   const RootGram* root_;
   const Scope* scope_;
@@ -36,7 +36,9 @@ class Incumbents {
   std::function<bool()> expired_;
   CandidateScorer scorer_;
   SingleChanges changes_;
-  std::set<std::pair<std::size_t, std::vector<std::uint16_t>>> looked_at_;  ///< their single changes were offered
+  using Seen = std::set<std::pair<std::size_t, std::vector<std::uint16_t>>>;
+  Seen descended_from_;
+  Seen looked_at_;  ///< their single changes were offered
 };
 
 }  // namespace formsieve::proof
