@@ -64,6 +64,12 @@ std::string grouped(std::string_view digits) {
   if (digits.size() == sign || digits.find_first_not_of("0123456789", sign) != std::string_view::npos) {
     return std::string(digits);
   }
+  constexpr std::size_t kMost = 18;  // longer ones nobody can read
+  if (digits.size() - sign > kMost) {
+    std::string text(digits.substr(0, sign + 1));
+    return text.append(".").append(digits.substr(sign + 1, 2)).append("·10^") +
+           std::to_string(digits.size() - sign - 1);
+  }
   std::string text(digits.substr(0, sign));
   for (std::size_t i = sign; i < digits.size(); ++i) {
     if (i > sign && (digits.size() - i) % 3 == 0) text += ',';

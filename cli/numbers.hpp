@@ -7,7 +7,8 @@
 
 namespace formsieve::cli {
 
-/// "1234567890" as "1,234,567,890"; a leading sign is kept, anything else returned as it is.
+/// "1234567890" as "1,234,567,890", beyond 18 digits as "1.22·10^349"; a leading sign is kept, anything else returned
+/// as it is.
 std::string grouped(std::string_view digits);
 std::string grouped(std::size_t count);
 

@@ -37,6 +37,8 @@ std::string percent_words(double share) {
 }
 
 std::string grouped_digits(std::string_view digits) {
+  if (digits.size() > kMostGroupedDigits)
+    return std::string{digits[0], '.', digits[1], digits[2]} + "·10^" + std::to_string(digits.size() - 1);
   std::string result;
   for (std::size_t i = 0; i < digits.size(); ++i) {
     if (i > 0 && (digits.size() - i) % 3 == 0) result += ',';

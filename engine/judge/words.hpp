@@ -16,7 +16,9 @@ std::string exact_words(double value);
 /// A share as a percentage with two significant digits, "0.84 %", "12 %".
 std::string percent_words(double share);
 
-/// Digits in groups of three: "1234567" → "1,234,567". For decimal counts of any length.
+/// Digits in groups of three: "1234567" → "1,234,567"; a count that nobody can read, of more than kMostGroupedDigits
+/// digits, as its first three and a power: "1.22·10^349".
+inline constexpr std::size_t kMostGroupedDigits = 18;
 std::string grouped_digits(std::string_view digits);
 
 /// "1 candidate", "2,000 candidates".

@@ -3,10 +3,15 @@
 #include "fit/least_squares.hpp"
 
 #include <algorithm>
+#include <limits>
 
 namespace formsieve::pipeline {
 
 namespace {
+
+/// With fewer residual degrees of freedom the RSS, and any criterion with it, is rounding noise
+/// (tests/proof: random spaces of 9 to 14 rows).
+constexpr std::size_t kLeastResidualDegrees = 2;
 
 std::size_t most_columns(const search::Space& space) {
   std::size_t columns = 0;
@@ -40,8 +45,11 @@ judge::Criterion criterion_of(const std::string& name) {
 
 std::vector<double> penalties(const Prepared& prepared, judge::Criterion criterion) {
   std::vector<double> penalty;
-  for (std::size_t k = 0; k <= most_columns(prepared.space); ++k)
-    penalty.push_back(penalty_of(criterion, k + 1, prepared.data.n_rows));
+  for (std::size_t k = 0; k <= most_columns(prepared.space); ++k) {
+    const bool saturated = k + 1 + kLeastResidualDegrees > prepared.data.n_rows;
+    penalty.push_back(saturated ? std::numeric_limits<double>::infinity()
+                                : penalty_of(criterion, k + 1, prepared.data.n_rows));
+  }
   return penalty;
 }
 

@@ -120,6 +120,9 @@ std::string Reporter::lead_words(const judge::ProofReport& report) const {
   if (report.proved)
     return "Proved: none of the candidates has a lower " + name + " than " + value +
            " (rounding allowed for; a difference below " + short_number(report.tolerance) + " is none)";
+  if (!std::isfinite(report.gap))
+    return "Not proved: the lowest " + name + " found is " + value +
+           "; nothing is known yet of the candidates that were not seen. A larger search.budget (--budget) helps";
   return "Not proved: the lowest " + name + " found is " + value + "; a candidate that was not seen may lie up to " +
          decimal(report.gap, report.gap < 10.0 ? 2 : 0) + " below it. A larger search.budget (--budget) narrows that";
 }

@@ -29,6 +29,11 @@ constexpr std::size_t kMostNear = 20'000;
 constexpr double kShareOfBest = 0.5;
 constexpr double kShareOfNear = 0.3;  // of what is left then
 
+/// The profile takes at most so long, or so many times as long as what came before it: its hardest choices could take
+/// hours that nobody asked for. What is open then is said.
+constexpr double kProfileSeconds = 30.0;
+constexpr double kProfileShare = 4.0;
+
 /// In the first round a forced choice may take this share of its part of the time, so that something is known of each
 /// before any takes long; what is still open then is gone on with in a second round.
 constexpr double kFirstRound = 0.4;
@@ -106,14 +111,21 @@ struct Task {
 class Prover {
  public:
   Prover(const Prepared& prepared, const run::Plan& plan, const Stage& stage, const ProvingLimits& limits)
-      : prepared_(prepared), plan_(plan), stage_(stage), limits_(limits), root_(stage.problem), start_(Clock::now()) {}
+      : prepared_(prepared),
+        plan_(plan),
+        stage_(stage),
+        limits_(limits),
+        root_(stage.problem),
+        start_(Clock::now()),
+        end_(limits.seconds) {}
 
   void prove_best(Proved& proved, std::vector<search::Choice> hints);
   void prove_near(Proved& proved);
   void prove_profile(Proved& proved);
 
  private:
-  double seconds_left() const { return limits_.seconds - std::chrono::duration<double>(Clock::now() - start_).count(); }
+  double seconds() const { return std::chrono::duration<double>(Clock::now() - start_).count(); }
+  double seconds_left() const { return end_ - seconds(); }
   std::function<void(const proof::Progress&)> news(const std::string& phase) const;
   proof::Proof run(proof::Restriction restriction, proof::Limits limits,
                    const std::vector<search::Choice>& hints) const;
@@ -132,6 +144,7 @@ class Prover {
   const ProvingLimits& limits_;
   proof::RootGram root_;
   Clock::time_point start_;
+  double end_;  ///< seconds from the start
 };
 
 /// Counts nodes, and names the gap as it closes.
@@ -294,6 +307,7 @@ void Prover::prove_profile(Proved& proved) {
   std::vector<Task> tasks = response_tasks(proved);
   for (auto& task : terms_tasks(proved)) tasks.push_back(std::move(task));
   for (auto& task : choice_tasks(proved)) tasks.push_back(std::move(task));
+  end_ = std::min(end_, seconds() + std::max(kProfileSeconds, kProfileShare * seconds()));
   run_open(tasks, kFirstRound);
   run_open(tasks, 1.0);
   for (const Task& task : tasks) proved.nodes += task.nodes;

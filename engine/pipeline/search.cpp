@@ -39,6 +39,11 @@ constexpr std::size_t kExamineChunk = 64;
 /// usable shortlist within seconds.
 constexpr std::size_t kExamineAfterStop = 256;
 
+/// Shares of the budget that are kept back for the examination and for what estimates leave out: at least and at most,
+/// since estimates for many predictors are far too cautious.
+constexpr double kLeastReserve = 0.02;
+constexpr double kMostReserve = 0.15;
+
 /// Share of the budget that the proof may take where a guided search follows.
 constexpr double kShareOfProof = 0.6;
 
@@ -169,7 +174,9 @@ Status Search::count_and_announce() {
   auto strategy = choose_strategy(time, *prepared_, plan_);
   if (!strategy) return strategy.error();
   strategy_ = std::move(*strategy);
-  reserved_seconds_ = time.examine_seconds + time.own_units_seconds;
+  reserved_seconds_ =
+      std::min(time.examine_seconds + time.own_units_seconds + kLeastReserve * plan_.search.budget_seconds,
+               kMostReserve * plan_.search.budget_seconds);
 
   Announcement news;
   news.candidates = time.candidates.str();

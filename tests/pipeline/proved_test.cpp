@@ -27,7 +27,7 @@ json searched(run::Plan plan, const std::string& strategy, const std::string& by
 run::Plan small_demo() {
   run::Plan plan = plan_for(kDemo, "energy_kwh");
   plan.data.ignore = {"visit_day", "paint_batch", "volume_m3", "outdoor_c"};
-  plan.search.pool = 100;
+  plan.search.pool = 600;
   return plan;
 }
 
