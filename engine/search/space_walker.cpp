@@ -52,10 +52,16 @@ std::vector<std::size_t> strong_predictors(const Space& space, const base::GramS
 }  // namespace
 
 WalkSetup::WalkSetup(const Space& space_, const base::GramSet& grams, const WalkOptions& options_,
-                     std::size_t first_response, std::size_t n_responses)
+                     std::size_t first_response_, std::size_t n_responses)
+    : WalkSetup(space_, grams, options_, first_response_, n_responses,
+                strong_predictors(space_, grams, options_, first_response_)) {}
+
+WalkSetup::WalkSetup(const Space& space_, const base::GramSet& grams, const WalkOptions& options_,
+                     std::size_t first_response_, std::size_t n_responses, const std::vector<std::size_t>& strong)
     : space(space_),
       options(options_),
-      tree(space_, strong_predictors(space_, grams, options_, first_response)),
+      first_response(first_response_),
+      tree(space_, strong),
       root(outer_root(tree, grams, first_response, n_responses)),
       smallest(smallest_pivots(root, options_.smallest_pivot_rel)),
       root_diagonal(smallest_pivots(root, 1.0)),
@@ -78,6 +84,10 @@ WalkSetup::WalkSetup(const Space& space_, const base::GramSet& grams, const Walk
   }
 }
 
+double WalkSetup::limit(const PoolRule& rule, std::size_t response) const {
+  return rule.limit.empty() ? kInfinity : rule.limit[first_response + response];
+}
+
 SpaceWalker::SpaceWalker(const WalkSetup& setup)
     : setup_(setup),
       largest_shape_(largest_shape(setup.tree)),
@@ -92,7 +102,8 @@ SpaceWalker::SpaceWalker(const WalkSetup& setup)
     assert(rule.score == Score::cv_sse || rule.penalty.size() > tree.most_columns());
     criteria_.push_back({rule.score, factors(rule.penalty, setup.n_rows)});
     const auto keep = static_cast<std::size_t>(std::min<std::uint64_t>(rule.keep, n_candidates));
-    for (std::size_t r = 0; r < setup.root.n_responses(); ++r) lists_.emplace_back(keep, tree.most_terms());
+    for (std::size_t r = 0; r < setup.root.n_responses(); ++r)
+      lists_.emplace_back(keep, tree.most_terms(), setup.limit(rule, r));
   }
   terms_.reserve(tree.most_terms());
   pairs_.limit_rss().assign((tree.most_columns() + 1) * setup.root.n_responses(), kInfinity);

@@ -22,9 +22,16 @@ namespace formsieve::search {
 struct WalkSetup {
   WalkSetup(const Space& space, const base::GramSet& grams, const WalkOptions& options, std::size_t first_response,
             std::size_t n_responses);
+  /// The same with the order of the predictors given (OuterTree).
+  WalkSetup(const Space& space, const base::GramSet& grams, const WalkOptions& options, std::size_t first_response,
+            std::size_t n_responses, const std::vector<std::size_t>& strong);
+
+  /// The limit of a rule's list for a response of this setup.
+  double limit(const PoolRule& rule, std::size_t response) const;
 
   const Space& space;
   const WalkOptions& options;
+  std::size_t first_response;
   OuterTree tree;
   OuterGrams root;
   std::vector<std::vector<double>> smallest;       ///< [fold][column] pivots must be larger
