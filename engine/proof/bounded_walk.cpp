@@ -87,13 +87,13 @@ class ResponseWalk {
   }
 
   std::vector<search::Scored> list() const {
-    const double scale = grams_.response_scale[response_] * grams_.response_scale[response_];
+    const double scale = grams_.response_scale[response_];
     std::vector<search::Scored> result;
     for (const search::Held& held : search::scored_as_in_walk(space_, grams_, response_, list_.entries())) {
       if (result.size() == options_.keep) break;
       const search::Choice choice{response_, held.choice};
-      result.push_back(
-          {choice, search::number_of(space_, choice), held.cv_sse * scale, held.rss * scale, held.n_columns});
+      result.push_back({choice, search::number_of(space_, choice), held.cv_sse * scale * scale,
+                        held.rss * scale * scale, held.n_columns});
     }
     return result;
   }

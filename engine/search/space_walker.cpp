@@ -156,6 +156,25 @@ WeightLogs SpaceWalker::walk(const Part& part, std::uint64_t largest) {
   return logs;
 }
 
+void SpaceWalker::walk_node(const OuterPath& outer, std::span<const std::size_t> lanes, std::uint64_t largest) {
+  assert(!setup_.summary.wanted);
+  if (!enter(outer)) return;
+  if (lanes.empty()) score_own();
+  if (!setup_.tree.is_candidate(path_)) return;
+  // a part begins at a node that is stored, others are scored while they are made
+  const PairShape& shape = kernel().shape;
+  const bool begins_part =
+      lanes.empty() || (setup_.tree.size(path_) > largest &&
+                        shape.size(shape.most_picks - lanes.size(), shape.predictor_of_lane[lanes.back()]) > largest);
+  if (begins_part) {
+    run_kernel(lanes, 0);
+  } else {
+    load_kernel();
+    const auto parent = lanes.first(lanes.size() - 1);
+    if (pairs_.enter(parent) == parent.size()) pairs_.run_child(lanes.back());
+  }
+}
+
 /// The node, the kernel below it, and all outer nodes below.
 void SpaceWalker::visit_all() {
   if (setup_.options.stop.stop_requested()) stopped_ = true;
@@ -222,14 +241,18 @@ const SpaceWalker::Kernel& SpaceWalker::kernel() {
   return *kernel_;
 }
 
+void SpaceWalker::load_kernel() {
+  if (loaded_ && loaded_path_ == path_) return;
+  const Kernel& below = kernel();
+  pairs_.load(below.shape, below.first_column, node(), setup_.root_diagonal, n_columns_);
+  loaded_path_ = path_;
+  loaded_ = true;
+}
+
 void SpaceWalker::run_kernel(std::span<const std::size_t> lanes, std::uint64_t largest) {
   const Kernel& below = kernel();
   if (below.simple.empty() || below.shape.most_picks == 0) return;
-  if (!loaded_ || loaded_path_ != path_) {
-    pairs_.load(below.shape, below.first_column, node(), setup_.root_diagonal, n_columns_);
-    loaded_path_ = path_;
-    loaded_ = true;
-  }
+  load_kernel();
   const std::size_t entered = pairs_.enter(lanes);
   if (entered < lanes.size()) {
     if (entered + 1 < lanes.size()) return;  // a part above has counted it

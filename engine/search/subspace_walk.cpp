@@ -5,6 +5,7 @@
 
 #include <algorithm>
 #include <set>
+#include <compare>
 #include <utility>
 
 namespace formsieve::search {
@@ -32,35 +33,31 @@ Held held_of(const Listed& listed, std::size_t n_predictors) {
   return held;
 }
 
-/// The part of the whole walk in which a candidate is scored.
-Part part_of(const OuterTree& tree, const std::vector<std::uint16_t>& choice) {
-  Part part;
+/// The node of the whole walk at which a candidate is scored.
+struct WalkNode {
+  OuterPath outer;
+  std::vector<std::size_t> lanes;
+  auto operator<=>(const WalkNode&) const = default;
+};
+
+WalkNode node_of(const OuterTree& tree, const std::vector<std::uint16_t>& choice) {
+  WalkNode node;
   for (std::size_t form = 0; form < tree.forms().size(); ++form) {
     const OuterForm& outer = tree.forms()[form];
-    if (choice[outer.predictor] == outer.choice) part.outer.push_back(form);
+    if (choice[outer.predictor] == outer.choice) node.outer.push_back(form);
   }
-  std::reverse(part.outer.begin(), part.outer.end());  // groups fall, and forms stand by rising groups
-  const std::vector<std::size_t> open = tree.open_simple(part.outer);
-  const PairShape shape = tree.shape(open, tree.most_terms() - part.outer.size());
+  std::reverse(node.outer.begin(), node.outer.end());  // groups fall, and forms stand by rising groups
+  const std::vector<std::size_t> open = tree.open_simple(node.outer);
+  const PairShape shape = tree.shape(open, tree.most_terms() - node.outer.size());
   for (std::size_t p = open.size(); p-- > 0;) {
     const SimplePredictor& simple = tree.simple()[open[p]];
     const auto at = std::find(simple.choices.begin(), simple.choices.end(), choice[simple.predictor]);
     if (at == simple.choices.end()) continue;
-    part.lanes.push_back(shape.first_lane[p] + static_cast<std::size_t>(at - simple.choices.begin()));
+    node.lanes.push_back(shape.first_lane[p] + static_cast<std::size_t>(at - simple.choices.begin()));
   }
   // the last two are scored as a pair of the node before them
-  part.lanes.resize(part.lanes.size() - std::min<std::size_t>(part.lanes.size(), 2));
-  return part;
-}
-
-std::vector<Part> parts_of(const OuterTree& tree, std::span<const Held> candidates) {
-  std::vector<Part> parts;
-  std::set<std::pair<OuterPath, std::vector<std::size_t>>> known;
-  for (const Held& candidate : candidates) {
-    Part part = part_of(tree, candidate.choice);
-    if (known.emplace(part.outer, part.lanes).second) parts.push_back(std::move(part));
-  }
-  return parts;
+  node.lanes.resize(node.lanes.size() - std::min<std::size_t>(node.lanes.size(), 2));
+  return node;
 }
 
 }  // namespace
@@ -121,7 +118,10 @@ std::vector<Held> scored_as_in_walk(const Space& space, const base::GramSet& gra
   options.rules = {rule};
   const WalkSetup setup(space, grams, options, first, n);
   SpaceWalker walker(setup);
-  for (const Part& part : parts_of(setup.tree, candidates)) walker.walk(part, 0);
+  std::set<WalkNode> nodes;
+  for (const Held& candidate : candidates) nodes.insert(node_of(setup.tree, candidate.choice));
+  const std::uint64_t largest_part = largest_subtree(setup.tree);
+  for (const WalkNode& node : nodes) walker.walk_node(node.outer, node.lanes, largest_part);
   std::vector<Held> result;
   for (const Listed& listed : walker.list(0, response - first).entries()) {
     Held held = held_of(listed, space.predictors.size());
