@@ -127,6 +127,30 @@ void work_through(const Frozen& frozen, const LeafEffort& effort, Node& node, Le
 
 }  // namespace
 
+Scope scope_of_response(const RootGram& root, std::size_t response) {
+  Restriction restriction;
+  restriction.response = response;
+  return scope_of(root, restriction);
+}
+
+Node root_of(const Scope& scope) {
+  Node node;
+  node.response = scope.responses.front();
+  node.most_columns = scope.most_columns;
+  node.actions = scope.actions;
+  return node;
+}
+
+Frozen freeze(const RootGram& root, const Scope& scope, double largest_rss, const std::function<bool()>& expired) {
+  Frozen frozen;
+  frozen.root = &root;
+  frozen.scope = &scope;
+  frozen.threshold = largest_rss > 0.0 ? static_cast<double>(root.problem().grams->n_rows) * std::log(largest_rss)
+                                       : -std::numeric_limits<double>::infinity();
+  frozen.expired = expired;
+  return frozen;
+}
+
 LeafWork work_on_leaves(const Frozen& frozen, const LeafEffort& effort, Node node) {
   LeafWork work;
   work.n_cut = count_candidates(frozen.root->space(), node.actions);

@@ -36,23 +36,9 @@ search::BigCount count_candidates(const search::Space& space, std::span<const Ac
   return total;
 }
 
-namespace {
-
-Scope scope_of_response(const RootGram& root, std::size_t response) {
-  Restriction restriction;
-  restriction.response = response;
-  return scope_of(root, restriction);
-}
-
-}  // namespace
-
 LeafTree::LeafTree(const RootGram& root, std::size_t response, const LeafEffort& effort)
     : root_(&root), effort_(effort), scope_(scope_of_response(root, response)) {
-  Node node;
-  node.response = response;
-  node.most_columns = scope_.most_columns;
-  node.actions = scope_.actions;
-  open_.push_back(std::move(node));
+  open_.push_back(root_of(scope_));
 }
 LeafTree::~LeafTree() = default;
 LeafTree::LeafTree(LeafTree&&) noexcept = default;
@@ -65,21 +51,12 @@ search::BigCount LeafTree::n_open() const {
   return count;
 }
 
-double LeafTree::score_of(double rss) const {
-  return rss > 0.0 ? static_cast<double>(root_->problem().grams->n_rows) * std::log(rss)
-                   : -std::numeric_limits<double>::infinity();
-}
-
 std::vector<Leaf> LeafTree::grow(double largest_rss, unsigned threads, const std::function<bool()>& expired) {
   const std::size_t n = std::min(effort_.batch, open_.size());
   std::vector<Node> batch(std::move_iterator(open_.end() - static_cast<std::ptrdiff_t>(n)),
                           std::move_iterator(open_.end()));
   open_.resize(open_.size() - n);
-  Frozen frozen;
-  frozen.root = root_;
-  frozen.scope = &scope_;
-  frozen.threshold = score_of(largest_rss);
-  frozen.expired = expired;
+  const Frozen frozen = freeze(*root_, scope_, largest_rss, expired);
   std::vector<LeafWork> results(n);
   base::parallel_for(n, threads,
                      [&](std::size_t i) { results[i] = work_on_leaves(frozen, effort_, std::move(batch[i])); });
