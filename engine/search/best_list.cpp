@@ -25,16 +25,17 @@ bool better(const Listed& a, const Listed& b) {
   return std::lexicographical_compare(a.terms.begin(), a.terms.end(), b.terms.begin(), b.terms.end());
 }
 
-BestList::BestList(std::size_t keep, std::size_t most_terms)
+BestList::BestList(std::size_t keep, std::size_t most_terms, double limit)
     : keep_(keep),
       most_terms_(most_terms),
-      worst_score_(keep == 0 ? -std::numeric_limits<double>::infinity() : std::numeric_limits<double>::infinity()),
+      limit_(keep == 0 ? -std::numeric_limits<double>::infinity() : limit),
+      worst_score_(limit_),
       terms_(keep * most_terms) {
   heap_.reserve(keep);
 }
 
 void BestList::offer(const Listed& candidate) {
-  if (keep_ == 0) return;
+  if (keep_ == 0 || !(candidate.score <= limit_)) return;
   if (heap_.size() < keep_) {
     place(candidate, terms_.data() + heap_.size() * most_terms_);
   } else {

@@ -4,6 +4,7 @@
 
 #include <cstddef>
 #include <cstdint>
+#include <limits>
 #include <span>
 #include <vector>
 
@@ -30,8 +31,9 @@ bool better(const Listed& a, const Listed& b);
 
 class BestList {
  public:
-  /// Keeps at most `keep` candidates of at most `most_terms` terms. All memory is taken here.
-  BestList(std::size_t keep, std::size_t most_terms);
+  /// Keeps at most `keep` candidates of at most `most_terms` terms and of no greater score than `limit`. All memory is
+  /// taken here.
+  BestList(std::size_t keep, std::size_t most_terms, double limit = std::numeric_limits<double>::infinity());
   BestList(BestList&&) = default;
 
   /// A candidate with a greater score need not be offered.
@@ -46,7 +48,7 @@ class BestList {
   void place(Listed candidate, TermCode* terms);
 
   std::size_t keep_, most_terms_;
-  double worst_score_;
+  double limit_, worst_score_;
   std::vector<Listed> heap_;     ///< worst on top
   std::vector<TermCode> terms_;  ///< [keep × most_terms]
 };

@@ -92,6 +92,20 @@ struct Walk {
     if constexpr (kTally) pass_up<R>(w, level, lane, p);
   }
 
+  /// The pairs of a child and nothing below it, by the same arithmetic as in child().
+  void pairs_of_child(std::size_t level, std::size_t lane) {
+    const std::size_t p = shape.predictor_of_lane[lane];
+    const std::size_t picks_left = shape.most_picks - level;
+    if (!(w.levels[level].smallest[lane] > w.smallest_pivot)) return;
+    if (p == 2 && score_last != nullptr) {
+      child(level, lane, p, false, picks_left);
+    } else if (p > 2 && picks_left > 3) {
+      make_child<R, true, true, kTally>(w, level, lane);
+    } else {
+      make_child<R, false, true, kTally>(w, level, lane);
+    }
+  }
+
   void close(std::size_t level, std::size_t open) {
     if constexpr (kTally) close_node<R>(w, level, open);
   }
@@ -255,6 +269,9 @@ void walk_children_here(PairWork& w, std::size_t level, std::size_t open, std::u
     Walk<decltype(r)::value, decltype(tally)::value>(w).children(level, open, largest);
   });
 }
+void score_pairs_of_child_here(PairWork& w, std::size_t level, std::size_t lane) {
+  with_responses(w.n_responses, [&](auto r) { Walk<decltype(r)::value, false>(w).pairs_of_child(level, lane); });
+}
 
 }  // namespace
 }  // namespace formsieve::search::HWY_NAMESPACE
@@ -270,6 +287,7 @@ HWY_EXPORT(score_singles_here);
 HWY_EXPORT(score_pairs_here);
 HWY_EXPORT(open_node_here);
 HWY_EXPORT(walk_children_here);
+HWY_EXPORT(score_pairs_of_child_here);
 
 void complete_root(PairWork& work) { HWY_DYNAMIC_DISPATCH(complete_root_here)(work); }
 void descend(PairWork& work, std::size_t level, std::size_t lane) {
@@ -284,6 +302,9 @@ void open_node(PairWork& work, std::size_t level, std::size_t open) {
 }
 void walk_children(PairWork& work, std::size_t level, std::size_t open, std::uint64_t largest) {
   HWY_DYNAMIC_DISPATCH(walk_children_here)(work, level, open, largest);
+}
+void score_pairs_of_child(PairWork& work, std::size_t level, std::size_t lane) {
+  HWY_DYNAMIC_DISPATCH(score_pairs_of_child_here)(work, level, lane);
 }
 
 }  // namespace formsieve::search

@@ -173,5 +173,7 @@ void score_pairs(PairWork& work, std::size_t level, std::size_t open);
 /// Scores everything below the children of a level whose subtree has at most `largest` candidates, and closes the
 /// level's tally: best_node and weight_node of the level are complete afterwards.
 void walk_children(PairWork& work, std::size_t level, std::size_t open, std::uint64_t largest);
+/// Scores the pairs of the child of a level that brings in a lane, as walk_children does it; no tally.
+void score_pairs_of_child(PairWork& work, std::size_t level, std::size_t lane);
 
 }  // namespace formsieve::search

@@ -257,6 +257,8 @@ void PairWalker::run(std::uint64_t largest) {
   walk_children(work_, entered_, open, largest);
 }
 
+void PairWalker::run_child(std::size_t lane) { score_pairs_of_child(work_, entered_, lane); }
+
 void PairWalker::harvest(PairHarvest& harvest) const {
   const PairTally& tally = work_.tally;
   const std::size_t n_lanes = shape_->n_lanes();

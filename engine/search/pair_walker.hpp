@@ -48,6 +48,9 @@ class PairWalker {
   /// Scores what lies below the entered node in the kernel, children with at most `largest` candidates included, single
   /// columns when it is the root.
   void run(std::uint64_t largest);
+  /// Scores the pairs of the entered node's child that brings in this lane, by the same arithmetic as a run from the
+  /// entered node, and nothing below it. Without a tally.
+  void run_child(std::size_t lane);
 
   std::uint64_t n_scored() const { return work_.n_scored; }
   std::uint64_t n_inseparable() const { return work_.n_inseparable; }

@@ -52,10 +52,16 @@ std::vector<std::size_t> strong_predictors(const Space& space, const base::GramS
 }  // namespace
 
 WalkSetup::WalkSetup(const Space& space_, const base::GramSet& grams, const WalkOptions& options_,
-                     std::size_t first_response, std::size_t n_responses)
+                     std::size_t first_response_, std::size_t n_responses)
+    : WalkSetup(space_, grams, options_, first_response_, n_responses,
+                strong_predictors(space_, grams, options_, first_response_)) {}
+
+WalkSetup::WalkSetup(const Space& space_, const base::GramSet& grams, const WalkOptions& options_,
+                     std::size_t first_response_, std::size_t n_responses, const std::vector<std::size_t>& strong)
     : space(space_),
       options(options_),
-      tree(space_, strong_predictors(space_, grams, options_, first_response)),
+      first_response(first_response_),
+      tree(space_, strong),
       root(outer_root(tree, grams, first_response, n_responses)),
       smallest(smallest_pivots(root, options_.smallest_pivot_rel)),
       root_diagonal(smallest_pivots(root, 1.0)),
@@ -78,6 +84,10 @@ WalkSetup::WalkSetup(const Space& space_, const base::GramSet& grams, const Walk
   }
 }
 
+double WalkSetup::limit(const PoolRule& rule, std::size_t response) const {
+  return rule.limit.empty() ? kInfinity : rule.limit[first_response + response];
+}
+
 SpaceWalker::SpaceWalker(const WalkSetup& setup)
     : setup_(setup),
       largest_shape_(largest_shape(setup.tree)),
@@ -92,7 +102,8 @@ SpaceWalker::SpaceWalker(const WalkSetup& setup)
     assert(rule.score == Score::cv_sse || rule.penalty.size() > tree.most_columns());
     criteria_.push_back({rule.score, factors(rule.penalty, setup.n_rows)});
     const auto keep = static_cast<std::size_t>(std::min<std::uint64_t>(rule.keep, n_candidates));
-    for (std::size_t r = 0; r < setup.root.n_responses(); ++r) lists_.emplace_back(keep, tree.most_terms());
+    for (std::size_t r = 0; r < setup.root.n_responses(); ++r)
+      lists_.emplace_back(keep, tree.most_terms(), setup.limit(rule, r));
   }
   terms_.reserve(tree.most_terms());
   pairs_.limit_rss().assign((tree.most_columns() + 1) * setup.root.n_responses(), kInfinity);
@@ -143,6 +154,25 @@ WeightLogs SpaceWalker::walk(const Part& part, std::uint64_t largest) {
   if (setup_.summary.wanted)
     for (const LogSum& sum : weights_) logs.push_back(sum.value());
   return logs;
+}
+
+void SpaceWalker::walk_node(const OuterPath& outer, std::span<const std::size_t> lanes, std::uint64_t largest) {
+  assert(!setup_.summary.wanted);
+  if (!enter(outer)) return;
+  if (lanes.empty()) score_own();
+  if (!setup_.tree.is_candidate(path_)) return;
+  // a part begins at a node that is stored, others are scored while they are made
+  const PairShape& shape = kernel().shape;
+  const bool begins_part =
+      lanes.empty() || (setup_.tree.size(path_) > largest &&
+                        shape.size(shape.most_picks - lanes.size(), shape.predictor_of_lane[lanes.back()]) > largest);
+  if (begins_part) {
+    run_kernel(lanes, 0);
+  } else {
+    load_kernel();
+    const auto parent = lanes.first(lanes.size() - 1);
+    if (pairs_.enter(parent) == parent.size()) pairs_.run_child(lanes.back());
+  }
 }
 
 /// The node, the kernel below it, and all outer nodes below.
@@ -211,14 +241,18 @@ const SpaceWalker::Kernel& SpaceWalker::kernel() {
   return *kernel_;
 }
 
+void SpaceWalker::load_kernel() {
+  if (loaded_ && loaded_path_ == path_) return;
+  const Kernel& below = kernel();
+  pairs_.load(below.shape, below.first_column, node(), setup_.root_diagonal, n_columns_);
+  loaded_path_ = path_;
+  loaded_ = true;
+}
+
 void SpaceWalker::run_kernel(std::span<const std::size_t> lanes, std::uint64_t largest) {
   const Kernel& below = kernel();
   if (below.simple.empty() || below.shape.most_picks == 0) return;
-  if (!loaded_ || loaded_path_ != path_) {
-    pairs_.load(below.shape, below.first_column, node(), setup_.root_diagonal, n_columns_);
-    loaded_path_ = path_;
-    loaded_ = true;
-  }
+  load_kernel();
   const std::size_t entered = pairs_.enter(lanes);
   if (entered < lanes.size()) {
     if (entered + 1 < lanes.size()) return;  // a part above has counted it

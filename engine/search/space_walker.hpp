@@ -22,9 +22,16 @@ namespace formsieve::search {
 struct WalkSetup {
   WalkSetup(const Space& space, const base::GramSet& grams, const WalkOptions& options, std::size_t first_response,
             std::size_t n_responses);
+  /// The same with the order of the predictors given (OuterTree).
+  WalkSetup(const Space& space, const base::GramSet& grams, const WalkOptions& options, std::size_t first_response,
+            std::size_t n_responses, const std::vector<std::size_t>& strong);
+
+  /// The limit of a rule's list for a response of this setup.
+  double limit(const PoolRule& rule, std::size_t response) const;
 
   const Space& space;
   const WalkOptions& options;
+  std::size_t first_response;
   OuterTree tree;
   OuterGrams root;
   std::vector<std::vector<double>> smallest;       ///< [fold][column] pivots must be larger
@@ -42,6 +49,9 @@ class SpaceWalker final : private PairSink {
 
   /// Walks a part. Returns its sums of weights where a summary is wanted.
   WeightLogs walk(const Part& part, std::uint64_t largest);
+  /// Scores the candidates of one node with the bits that they get in a walk of split(tree, largest): those that add at
+  /// most two simple forms to it. Without a summary.
+  void walk_node(const OuterPath& outer, std::span<const std::size_t> lanes, std::uint64_t largest);
 
   std::uint64_t n_scored() const { return n_outer_scored_ + pairs_.n_scored(); }
   std::uint64_t n_inseparable() const { return n_outer_inseparable_ + pairs_.n_inseparable(); }
@@ -70,6 +80,7 @@ class SpaceWalker final : private PairSink {
   bool bring_in_form(std::size_t form);
   void visit_all();
   void score_own();
+  void load_kernel();
   void run_kernel(std::span<const std::size_t> lanes, std::uint64_t largest);
   const Kernel& kernel();
   void add_own(const double* cv, const double* rss);

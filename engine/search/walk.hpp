@@ -31,6 +31,9 @@ struct PoolRule {
   std::size_t keep = 0;  ///< per response form
   std::vector<double>
       penalty;  ///< penalised_rss: criterion penalty by number of design columns k, 0 … most; may hold +infinity
+  /// Per response form: candidates of a greater score are not wanted. Standardised, as the Gram matrices are: a sum of
+  /// squares on the form's scale over response_scale². Empty: no limit.
+  std::vector<double> limit = {};
 };
 
 /// What the walk says about a set of candidates of one response form.
