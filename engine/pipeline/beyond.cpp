@@ -111,6 +111,10 @@ search::WalkResult beyond_lists(const Prepared& prepared, const run::Plan& plan,
     for (List& list : guided_lists(*beyond.guided)) sources.push_back(std::move(list));
     result.n_scored += beyond.guided->n_scored;
   }
+  if (beyond.bounded != nullptr) {
+    for (const List& list : beyond.bounded->lists) sources.push_back(list);
+    for (const auto& counts : beyond.bounded->counts) result.n_scored += counts.n_scored;
+  }
   const std::size_t most = list_length(prepared, plan.search.pool);
   const std::vector<double> penalty = penalties(prepared, criterion_of(plan.rank.by));
   const double n = static_cast<double>(grams.n_rows);
@@ -135,6 +139,9 @@ std::string beyond_pool_words(const run::Plan& plan, const Beyond& beyond, const
     parts.push_back(
         "the best that guided local search met, by held-out error on each response form's scale and to "
         "first order in own units");
+  if (beyond.bounded != nullptr)
+    parts.push_back(std::string(beyond.bounded->complete ? "the" : "some of the") +
+                    " best of each response form by held-out error on its scale");
   std::string words = count_words(pool.size()) + " candidates: ";
   for (std::size_t i = 0; i < parts.size(); ++i) words += (i == 0 ? "" : ", and ") + parts[i];
   return words + "; error in own units is exact within this pool, and a candidate outside it may have a lower one";

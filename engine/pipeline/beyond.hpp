@@ -7,6 +7,7 @@
 #include "pipeline/pool.hpp"
 #include "pipeline/prepare.hpp"
 #include "pipeline/proving.hpp"
+#include "proof/bounded_walk.hpp"
 #include "search/guided.hpp"
 #include "search/walk.hpp"
 
@@ -18,12 +19,14 @@ namespace formsieve::pipeline {
 struct Beyond {
   const Proved* proved = nullptr;
   const search::GuidedResult* guided = nullptr;
+  const proof::BoundedWalk* bounded = nullptr;
 };
 
-/// Lists like the walk's, over the near-best set of the proof and the lists of the guided search together: by held-out
-/// error on the form's scale, by the criterion, and what the guided search found in own units. Held-out errors come
-/// from the Gram matrices; candidates that are inseparable in a fold are left out and counted. n_scored is the number
-/// of candidates whose held-out error was worked out. The same for any number of threads.
+/// Lists like the walk's, over the near-best set of the proof and the lists of the guided search and of the bounded
+/// walk together: by held-out error on the form's scale, by the criterion, and what the guided search found in own
+/// units. Held-out errors come from the Gram matrices; candidates that are inseparable in a fold are left out and
+/// counted. n_scored is the number of candidates whose held-out error was worked out. The same for any number of
+/// threads.
 search::WalkResult beyond_lists(const Prepared& prepared, const run::Plan& plan, const base::GramSet& grams,
                                 const Beyond& beyond, unsigned threads);
 

@@ -5,6 +5,7 @@
 #include "checks/checks.hpp"
 #include "judge/judge.hpp"
 #include "pipeline/beyond.hpp"
+#include "pipeline/bounding.hpp"
 #include "pipeline/estimate.hpp"
 #include "pipeline/examine.hpp"
 #include "pipeline/guarded.hpp"
@@ -67,6 +68,7 @@ class Search {
   void visit_every();
   void prove();
   void guide();
+  void visit_bounded();
   Beyond beyond() const;
   void examine();
   void keep_only_required();
@@ -93,6 +95,8 @@ class Search {
   Strategy strategy_;
   std::optional<Proved> proved_;
   std::optional<search::GuidedResult> guided_;
+  Bounded bounded_;
+  double candidates_per_second_ = 1.0;
   double reserved_seconds_ = 0.0;  ///< for what follows the search itself
   search::WalkResult walked_;
   std::vector<PoolList> lists_;
@@ -174,6 +178,7 @@ Status Search::count_and_announce() {
   auto strategy = choose_strategy(time, *prepared_, plan_);
   if (!strategy) return strategy.error();
   strategy_ = std::move(*strategy);
+  candidates_per_second_ = time.candidates_per_second;
   reserved_seconds_ =
       std::min(time.examine_seconds + time.own_units_seconds + kLeastReserve * plan_.search.budget_seconds,
                kMostReserve * plan_.search.budget_seconds);
@@ -256,7 +261,24 @@ void Search::guide() {
                        meter_.seconds() - start);
 }
 
-Beyond Search::beyond() const { return {proved_ ? &*proved_ : nullptr, guided_ ? &*guided_ : nullptr}; }
+void Search::visit_bounded() {
+  BoundingLimits limits;
+  limits.keep = plan_.search.pool;
+  limits.seconds = plan_.search.budget_seconds - reserved_seconds_ - meter_.seconds();
+  limits.candidates_per_second = candidates_per_second_;
+  limits.threads = options_.threads;
+  std::vector<search::Choice> hints;
+  for (const auto& list : guided_->by_cv)
+    for (const auto& scored : list.candidates) hints.push_back(scored.choice);
+  const double start = meter_.seconds();
+  bounded_ = bound_and_walk(*prepared_, grams_, limits, hints, meter_);
+  if (!bounded_.words.empty())
+    outputs_->log().info("bounded walk in {:.2f} s: {}", meter_.seconds() - start, bounded_.words);
+}
+
+Beyond Search::beyond() const {
+  return {proved_ ? &*proved_ : nullptr, guided_ ? &*guided_ : nullptr, bounded_.walk ? &*bounded_.walk : nullptr};
+}
 
 Status Search::screen() {
   if (strategy_.proves) prove();
@@ -266,6 +288,7 @@ Status Search::screen() {
   if (auto status = add_own_units(*prepared_, grams_, options_.threads, pilots); !status) return status.error();
   if (strategy_.every) visit_every();
   if (strategy_.guides) guide();
+  if (strategy_.bounds) visit_bounded();
   if (!strategy_.every) walked_ = beyond_lists(*prepared_, plan_, grams_, beyond(), options_.threads);
   lists_ = pool_lists(*prepared_, plan_, grams_, walked_, options_.threads);
   pool_ = unite(lists_, plan_.search.pool);
@@ -356,6 +379,7 @@ void Search::describe_beyond() {
   }
   space.pool_formed = beyond_pool_words(plan_, beyond(), pool_);
   if (guided_) shortlist_.remarks.push_back(guided_words(*guided_));
+  if (!bounded_.words.empty()) shortlist_.remarks.push_back(bounded_.words);
 }
 
 void Search::describe() {

@@ -40,15 +40,23 @@ Strategy automatic(const Estimate& estimate, const Prepared& prepared, const run
   const std::string budget = duration_words(plan.search.budget_seconds);
   const std::string time = duration_words(estimate.total());
   if (fits(estimate, plan))
-    return {true, false, false, "every",
+    return {true,
+            false,
+            false,
+            false,
+            "every",
             "every candidate is scored: " + in_words(prepared, estimate) + " take about " + time +
                 ", within the budget of " + budget};
   const std::string too_long = "to score " + in_words(prepared, estimate) + " would take about " + time +
                                ", beyond the budget of " + budget + ": ";
   if (most_forms(prepared) > proof::kMostForms)
-    return {false, false, true, "guided",
-            too_long + "guided local search looks for the lowest held-out error, without proof"};
-  return {false, true, true, "proved and guided",
+    return {false, false,    true,
+            false, "guided", too_long + "guided local search looks for the lowest held-out error, without proof"};
+  return {false,
+          true,
+          true,
+          true,
+          "proved and guided",
           too_long +
               "the lowest information criterion is found with proof, the lowest held-out error by guided local search"};
 }
@@ -60,13 +68,19 @@ Result<Strategy> choose_strategy(const Estimate& estimate, const Prepared& prepa
   if (wanted == "auto") return automatic(estimate, prepared, plan);
   if (wanted == "every") {
     if (auto status = check_budget(estimate, prepared, plan); !status) return status.error();
-    return Strategy{true, false, false, "every", "every candidate is scored, as the plan asks"};
+    return Strategy{true, false, false, false, "every", "every candidate is scored, as the plan asks"};
   }
   if (wanted == "guided")
-    return Strategy{false, false, true, "guided",
-                    "guided local search looks for the lowest held-out error, as the plan asks; nothing is proved"};
+    return Strategy{
+        false,    false,
+        true,     false,
+        "guided", "guided local search looks for the lowest held-out error, as the plan asks; nothing is proved"};
   if (most_forms(prepared) > proof::kMostForms) return too_many_forms(prepared, plan);
-  return Strategy{false, true, false, "proved",
+  return Strategy{false,
+                  true,
+                  false,
+                  false,
+                  "proved",
                   "the lowest information criterion is found with proof, as the plan asks; held-out error is judged "
                   "among the candidates nearest to it"};
 }

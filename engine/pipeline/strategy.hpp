@@ -14,6 +14,7 @@ struct Strategy {
   bool every = false;   ///< score every candidate
   bool proves = false;  ///< the lowest of an information criterion, with proof
   bool guides = false;  ///< the lowest held-out error, by local search
+  bool bounds = false;  ///< held-out error on the form's scale with certainty, where a bound leaves little to visit
   std::string name;     ///< "every", "proved", "guided", "proved and guided"
   std::string why;      ///< one sentence
 };
