@@ -18,7 +18,7 @@ struct VisitEstimate {
   double visits = 0.0;          ///< candidates to be walked
   double standard_error = 0.0;  ///< of it; 0 when the whole tree was seen
   double nodes = 0.0;           ///< of the tree
-  double node_seconds = 0.0;    ///< one node took, on the clock
+  double node_seconds = 0.0;    ///< one node took, on the clock and on the threads of the options
   std::size_t n_dives = 0;
 };
 

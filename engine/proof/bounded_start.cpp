@@ -129,10 +129,7 @@ void HeldList::add(std::vector<search::Held> found) {
   entries_ = std::move(all);
 }
 
-double HeldList::worst() const {
-  if (keep_ == 0) return -kInfinity;
-  return entries_.size() < keep_ ? kInfinity : entries_[keep_ - 1].cv_sse;
-}
+double HeldList::worst() const { return entries_.size() < keep_ ? kInfinity : entries_[keep_ - 1].cv_sse; }
 
 std::uint64_t start_list(const search::Space& space, const base::GramSet& grams, std::size_t response,
                          std::span<const search::Choice> hints, const StartEffort& effort, const std::stop_token& stop,

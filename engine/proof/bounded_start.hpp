@@ -17,7 +17,8 @@ namespace formsieve::proof {
 /// and some more that lie as near as rounding to the last.
 class HeldList {
  public:
-  explicit HeldList(std::size_t keep) : keep_(keep) {}
+  /// `keep` of none counts as one: a limit is wanted all the same.
+  explicit HeldList(std::size_t keep) : keep_(keep == 0 ? 1 : keep) {}
 
   /// Candidates that are not listed; those that are keep their score.
   void add(std::vector<search::Held> found);

@@ -60,6 +60,39 @@ WalkNode node_of(const OuterTree& tree, const std::vector<std::uint16_t>& choice
   return node;
 }
 
+/// Lets everything pass that is not above the worst of the candidates, whatever the order of eliminations changed.
+PoolRule rule_for(const base::GramSet& grams, std::size_t response, std::span<const Held> candidates) {
+  constexpr double kRounding = 1e-6;
+  double limit = 0.0;
+  for (const Held& candidate : candidates) limit = std::max(limit, candidate.cv_sse);
+  for (const auto& validation : grams.validation)
+    limit += kRounding * validation[(grams.n_columns + response) * (grams.order() + 1)];
+  // other candidates of the same nodes are offered too
+  PoolRule rule{Score::cv_sse, 4 * candidates.size() + 1000, {}, std::vector<double>(grams.n_responses, -1.0)};
+  rule.limit[response] = limit;
+  return rule;
+}
+
+void walk_nodes_of(const OuterTree& tree, std::span<const Held> candidates, SpaceWalker& walker) {
+  std::set<WalkNode> nodes;
+  for (const Held& candidate : candidates) nodes.insert(node_of(tree, candidate.choice));
+  const std::uint64_t largest = largest_subtree(tree);
+  for (const WalkNode& node : nodes) walker.walk_node(node.outer, node.lanes, largest);
+}
+
+std::vector<Held> those_of(std::span<const Held> candidates, std::span<const Listed> offered,
+                           std::size_t n_predictors) {
+  std::set<std::vector<std::uint16_t>> wanted;
+  for (const Held& candidate : candidates) wanted.insert(candidate.choice);
+  std::vector<Held> result;
+  for (const Listed& listed : offered) {
+    Held held = held_of(listed, n_predictors);
+    if (wanted.contains(held.choice)) result.push_back(std::move(held));
+  }
+  std::sort(result.begin(), result.end(), better_held);
+  return result;
+}
+
 }  // namespace
 
 bool better_held(const Held& a, const Held& b) {
@@ -97,38 +130,21 @@ SubspaceResult walk_subspace(const Space& space, const base::GramSet& grams, con
 std::vector<Held> scored_as_in_walk(const Space& space, const base::GramSet& grams, std::size_t response,
                                     std::span<const Held> candidates) {
   if (candidates.empty()) return {};
-  double largest = 0.0;
-  std::set<std::vector<std::uint16_t>> wanted;
-  for (const Held& candidate : candidates) {
-    largest = std::max(largest, candidate.cv_sse);
-    wanted.insert(candidate.choice);
-  }
   // the same responses side by side as in walk(): its order of predictors depends on the first of them
   const std::size_t first = response / kMostResponses * kMostResponses;
   const std::size_t n = std::min(kMostResponses, space.n_responses - first);
-  constexpr double kRounding = 1e-6;  // far above what the order of eliminations may change
-  double empty = 0.0;
-  for (const auto& validation : grams.validation)
-    empty += validation[(grams.n_columns + response) * (grams.order() + 1)];
   WalkOptions options;
-  PoolRule rule{Score::cv_sse, 1, {}, std::vector<double>(space.n_responses, -1.0)};
-  rule.limit[response] = largest + kRounding * empty;
-  // neighbours of the candidates at the same nodes are offered too
-  rule.keep = 4 * candidates.size() + 1000;
-  options.rules = {rule};
-  const WalkSetup setup(space, grams, options, first, n);
-  SpaceWalker walker(setup);
-  std::set<WalkNode> nodes;
-  for (const Held& candidate : candidates) nodes.insert(node_of(setup.tree, candidate.choice));
-  const std::uint64_t largest_part = largest_subtree(setup.tree);
-  for (const WalkNode& node : nodes) walker.walk_node(node.outer, node.lanes, largest_part);
-  std::vector<Held> result;
-  for (const Listed& listed : walker.list(0, response - first).entries()) {
-    Held held = held_of(listed, space.predictors.size());
-    if (wanted.contains(held.choice)) result.push_back(std::move(held));
+  options.rules = {rule_for(grams, response, candidates)};
+  for (;;) {
+    PoolRule& rule = options.rules.front();
+    const WalkSetup setup(space, grams, options, first, n);
+    SpaceWalker walker(setup);
+    walk_nodes_of(setup.tree, candidates, walker);
+    const auto offered = walker.list(0, response - first).entries();
+    std::vector<Held> result = those_of(candidates, offered, space.predictors.size());
+    if (result.size() == candidates.size() || offered.size() < rule.keep) return result;
+    rule.keep *= 8;
   }
-  std::sort(result.begin(), result.end(), better_held);
-  return result;
 }
 
 }  // namespace formsieve::search

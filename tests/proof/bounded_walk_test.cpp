@@ -20,7 +20,8 @@ double largest_weight(const test::Problem& problem) {
 
 proof::HeldOutRows rows_of(const test::Problem& problem) { return {problem.fold_of.size(), largest_weight(problem)}; }
 
-/// Random sizes, weights, repeats, wide forms, always-in, max_terms, near-collinear forms and predictors, pure noise.
+/// Random sizes, weights, repeats, wide forms, always-in, max_terms, near-collinear forms and predictors, pure noise,
+/// fewer rows than columns.
 test::Problem draw_problem(std::uint64_t seed) {
   std::mt19937_64 random(seed);
   const auto below = [&](std::size_t n) { return static_cast<std::size_t>(random() % n); };
@@ -30,7 +31,8 @@ test::Problem draw_problem(std::uint64_t seed) {
     if (below(5) == 0) shape.form_columns.back() = 2;
     shape.always = below(6) == 0;
   }
-  test::Problem problem = test::make_problem(seed, 30 + below(60), shapes, 1 + below(3), 3 + below(4), 1 + below(2));
+  test::Problem problem =
+      test::make_problem(seed, below(5) == 0 ? 14 : 30 + below(60), shapes, 1 + below(3), 3 + below(4), 1 + below(2));
   if (below(3) == 0) problem.space.max_terms = 1 + below(shapes.size());
   if (below(3) == 0)
     for (Eigen::Index i = 0; i < problem.columns.rows(); ++i)
@@ -126,7 +128,7 @@ void check_spaces(std::uint64_t first_seed, std::uint64_t last_seed) {
 }  // namespace
 
 TEST_CASE("proof: the bounded walk lists what the walk over every candidate lists", "[proof][property]") {
-  check_spaces(1, 40);
+  check_spaces(1, 80);
 }
 
 TEST_CASE("proof: the bounded walk lists what the walk lists in many more spaces", "[proof][property][slow]") {
@@ -259,4 +261,16 @@ TEST_CASE("proof: candidates of a set of actions are counted with and without ma
   CHECK(proof::count_candidates(space, actions) == 8);
   space.max_terms = 0;
   CHECK(proof::count_candidates(space, actions) == 0);
+}
+
+TEST_CASE("proof: a list of none and a list of more than there are", "[proof][unit]") {
+  const test::Problem problem = strong_problem(31, 5);
+  const base::GramSet grams = test::grams_of(problem);
+  const auto none = proof::bounded_walk(problem.space, grams, rows_of(problem), tiny_leaves(0, 10));
+  CHECK(none.complete);
+  CHECK(none.lists[0].empty());
+  CHECK(none.counts[0].n_scored < search::count(problem.space) / 2);
+  const auto all = proof::bounded_walk(problem.space, grams, rows_of(problem), tiny_leaves(100'000, 10));
+  check_counts(problem, all);
+  check_lists(all.lists, full_walk(problem, grams, 100'000).lists[0]);
 }

@@ -7,6 +7,7 @@
 #include <algorithm>
 #include <atomic>
 #include <chrono>
+#include <cmath>
 #include <limits>
 #include <set>
 #include <stop_token>
@@ -204,5 +205,34 @@ TEST_CASE("search: calibration gives a rate in about the time it was given", "[s
     const Problem problem = test::make_problem(28, 30, {{{1, 1}}, {{1}}}, 1, 3);
     const auto grams = test::grams_of(problem);
     CHECK(search::calibrate(problem.space, grams, options, 0.01) > 0.0);
+  }
+}
+
+TEST_CASE("search: a limit leaves the part of the lists that is not above it", "[search][unit]") {
+  const auto problem = test::make_problem(31, 50, {{{1, 1}}, {{1, 2}}, {{1}, true}, {{1, 1, 1}}, {{1, 1}}}, 2, 4);
+  const base::GramSet grams = test::grams_of(problem);
+  search::WalkOptions options = test::keep_all(problem.space, 2.0);
+  const auto all = search::walk(problem.space, grams, options);
+  for (const std::size_t rule : {0u, 1u}) {
+    for (std::size_t r = 0; r < 2; ++r) {
+      const auto& list = all.lists[rule][r];
+      const search::Scored& last = list[list.size() / 3];
+      const double scale = grams.response_scale[r] * grams.response_scale[r];
+      const double penalty = options.rules[1].penalty[last.n_columns] / static_cast<double>(grams.n_rows);
+      const double score = (rule == 0 ? last.cv_sse : last.rss * std::exp(penalty)) / scale;
+      options.rules[rule].limit.push_back(score * (1.0 + 1e-12));
+    }
+  }
+  for (const std::size_t keep : {std::size_t{5}, std::size_t{1'000'000}}) {
+    for (search::PoolRule& rule : options.rules) rule.keep = keep;
+    const auto limited = search::walk(problem.space, grams, options);
+    CHECK(limited.n_scored == all.n_scored);
+    for (std::size_t rule = 0; rule < 2; ++rule) {
+      for (std::size_t r = 0; r < 2; ++r) {
+        const auto& list = limited.lists[rule][r];
+        REQUIRE(list.size() == std::min(keep, all.lists[rule][r].size() / 3 + 1));
+        for (std::size_t i = 0; i < list.size(); ++i) CHECK(list[i].number == all.lists[rule][r][i].number);
+      }
+    }
   }
 }
