@@ -78,7 +78,7 @@ class RssBound {
     root_ = false;
     point_.d = kTiny * Eigen::MatrixXd(problem_.m.diagonal().cwiseMax(kTiny).asDiagonal());
     if (!z_.certify(problem_, point_.d)) return {};
-    point_.v = z_.factor().solve(problem_.b);
+    point_.v = z_.solve(problem_.b);
     const Narrowed narrowed = narrow_by(evaluator_(dual_value(problem_, z_, point_.d, point_.v), frozen_.threshold));
     return {narrowed.cut ? Standing::cut : Standing::open, {}};
   }
@@ -104,7 +104,8 @@ class RssBound {
   }
 
   Narrowed narrow_by(Bound bound) {
-    const Narrowed narrowed = narrow(frozen_, problem_, bound, node_);
+    Account account{0.0, nullptr};
+    const Narrowed narrowed = narrow(frozen_, problem_, bound, point_.d, point_.v, node_, account);
     const double gap = frozen_.threshold - reference_;
     const double share = root_ ? kSmallGain_root : kSmallGain_node;
     const bool gained = !std::isfinite(reference_) || bound.lower > reference_ + share * gap;
