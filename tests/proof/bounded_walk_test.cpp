@@ -31,8 +31,10 @@ test::Problem draw_problem(std::uint64_t seed) {
     if (below(5) == 0) shape.form_columns.back() = 2;
     shape.always = below(6) == 0;
   }
-  test::Problem problem =
-      test::make_problem(seed, below(5) == 0 ? 14 : 30 + below(60), shapes, 1 + below(3), 3 + below(4), 1 + below(2));
+  const std::size_t n_rows = below(5) == 0 ? 14 : 30 + below(60);
+  const std::size_t n_responses = 1 + below(3);
+  const std::size_t n_folds = 3 + below(4);
+  test::Problem problem = test::make_problem(seed, n_rows, shapes, n_responses, n_folds, 1 + below(2));
   if (below(3) == 0) problem.space.max_terms = 1 + below(shapes.size());
   if (below(3) == 0)
     for (Eigen::Index i = 0; i < problem.columns.rows(); ++i)
