@@ -23,6 +23,12 @@ constexpr double kGently = 0.75, kFaster = 0.6;
 /// the boundary of M − D ≻ 0.
 constexpr double kFarFromCentre = 4.0;
 constexpr int kMostShortenings = 6;
+/// Such a step also goes no further than a share of a length at which the point is still inside the domain, the smaller
+/// one above a yet larger decrement: a step that almost reaches the boundary may leave M − D with one eigenvalue orders
+/// of magnitude below the others, from which the method comes back only at a crawl (newton_test: steps do not run into
+/// the boundary).
+constexpr double kReach = 0.8, kFarReach = 0.6;
+constexpr double kFarther = 100.0;
 
 }  // namespace
 
@@ -64,6 +70,7 @@ struct Newton::State {
     value = kept_value;
   }
 
+  double longest(double decrement);
   double search(double decrement);
 
   const Reduced* problem;
@@ -76,9 +83,18 @@ struct Newton::State {
   bool inside = false;  ///< the point lies in the domain, `factor` and `value` are its own
 };
 
+/// The length to begin with.
+double Newton::State::longest(double decrement) {
+  if (decrement <= kFarFromCentre * mu) return 1.0;
+  const double reach = decrement > kFarther * mu ? kFarReach : kReach;
+  double inside_at = 1.0 / reach;
+  while (!std::isfinite(try_length(inside_at)) && inside_at > kShortestStep) inside_at *= kGently;
+  return reach * inside_at;
+}
+
 /// Moves along the direction, by a length that is returned, or not at all: 0.
 double Newton::State::search(double decrement) {
-  double length = 1.0, reached = try_length(length);
+  double length = longest(decrement), reached = try_length(length);
   while (!(reached >= value + kPromised * length * decrement)) {
     length *= length > 0.5 ? kGently : kFaster;
     if (length <= kShortestStep) return 0.0;

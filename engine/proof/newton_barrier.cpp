@@ -1,7 +1,5 @@
 #include "proof/newton_barrier.hpp"
 
-#include <Eigen/Cholesky>
-
 #include <algorithm>
 #include <cmath>
 #include <limits>
@@ -23,17 +21,32 @@ struct FormValue {
   double charge = 0.0;
 };
 
-FormValue form_value(const OpenForm& form, const Variables& at) {
-  if (form.n_columns == 1) {
-    const double d = at.d(form.first, form.first), g = at.g(form.first);
-    if (!(d > 0.0)) return {0.0, std::nan("")};
-    return {std::log(d), g * g / d};
-  }
+/// Cholesky's method by rows on [D_ff g_f]: the last row becomes (L⁻¹g_f)ᵀ.
+FormValue form_of_columns(const OpenForm& form, const Variables& at, std::vector<double>& work) {
   const Eigen::Index n = form.n_columns;
-  const Eigen::LLT<Eigen::MatrixXd> factor(at.d.block(form.first, form.first, n, n));
-  if (factor.info() != Eigen::Success) return {0.0, std::nan("")};
-  return {2.0 * factor.matrixLLT().diagonal().array().log().sum(),
-          factor.matrixL().solve(at.g.segment(form.first, n)).squaredNorm()};
+  work.resize(static_cast<std::size_t>((n + 1) * n));
+  Eigen::Map<Eigen::Matrix<double, Eigen::Dynamic, Eigen::Dynamic, Eigen::RowMajor>> rows(work.data(), n + 1, n);
+  FormValue value;
+  for (Eigen::Index i = 0; i <= n; ++i) {
+    for (Eigen::Index k = 0; k < std::min(i, n); ++k) {
+      const double entry = i < n ? at.d(form.first + i, form.first + k) : at.g(form.first + k);
+      rows(i, k) = (entry - rows.row(i).head(k).dot(rows.row(k).head(k))) / rows(k, k);
+    }
+    if (i == n) break;
+    const double pivot = at.d(form.first + i, form.first + i) - rows.row(i).head(i).squaredNorm();
+    if (!(pivot > 0.0)) return {0.0, std::nan("")};
+    rows(i, i) = std::sqrt(pivot);
+    value.log_determinant += std::log(pivot);
+  }
+  value.charge = rows.row(n).squaredNorm();
+  return value;
+}
+
+FormValue form_value(const OpenForm& form, const Variables& at, std::vector<double>& work) {
+  if (form.n_columns > 1) return form_of_columns(form, at, work);
+  const double d = at.d(form.first, form.first), g = at.g(form.first);
+  if (!(d > 0.0)) return {0.0, std::nan("")};
+  return {std::log(d), g * g / d};
 }
 
 /// The t in (0, most] at which a falling function crosses zero.
@@ -48,12 +61,13 @@ double crossing(double most, const Function& falling) {
 }
 
 /// u of one predictor: −u + μ[ln u + Σ_f ln(u + c_f λ − h_f)] is largest, the first logarithm only where it may be
-/// absent. NaN where a D_ff is not positive definite. `bounds` is for work.
-double central_u(const OpenPredictor& predictor, double mu, const Variables& at, std::vector<double>& bounds) {
+/// absent. NaN where a D_ff is not positive definite. `bounds` and `work` hold anything.
+double central_u(const OpenPredictor& predictor, double mu, const Variables& at, std::vector<double>& bounds,
+                 std::vector<double>& work) {
   bounds.clear();
   if (!predictor.must) bounds.push_back(0.0);
   for (const OpenForm& form : predictor.forms) {
-    bounds.push_back(form_value(form, at).charge - static_cast<double>(form.n_columns) * at.lambda);
+    bounds.push_back(form_value(form, at, work).charge - static_cast<double>(form.n_columns) * at.lambda);
     if (std::isnan(bounds.back())) return bounds.back();
   }
   const double lowest = *std::max_element(bounds.begin(), bounds.end());
@@ -95,6 +109,20 @@ bool factor_here(const Reduced& problem, const Variables& at, Factor& factor) {
   return true;
 }
 
+/// Σ over the forms of ln det [[D_ff, g_f], [g_fᵀ, u + c_f λ]] of one predictor, plus ln u where it may be absent;
+/// −infinity outside the domain. `work` holds anything.
+double predictor_barrier(const OpenPredictor& predictor, double u, const Variables& at, std::vector<double>& work) {
+  if (!predictor.must && !(u > 0.0)) return kOutside;
+  double sum = predictor.must ? 0.0 : std::log(u);
+  for (const OpenForm& form : predictor.forms) {
+    const FormValue value = form_value(form, at, work);
+    const double slack = u + static_cast<double>(form.n_columns) * at.lambda - value.charge;
+    if (!(slack > 0.0)) return kOutside;  // NaN too
+    sum += value.log_determinant + std::log(slack);
+  }
+  return sum;
+}
+
 }  // namespace
 
 void Variables::set_along(const Variables& point, double length, const Variables& direction, const Reduced& problem) {
@@ -117,22 +145,10 @@ Prices::Prices(const Reduced& problem, const ColumnRange& range, double lambda)
   k_most = open(range.most);
 }
 
-double predictor_barrier(const OpenPredictor& predictor, double u, const Variables& at) {
-  if (!predictor.must && !(u > 0.0)) return kOutside;
-  double sum = predictor.must ? 0.0 : std::log(u);
-  for (const OpenForm& form : predictor.forms) {
-    const FormValue value = form_value(form, at);
-    const double slack = u + static_cast<double>(form.n_columns) * at.lambda - value.charge;
-    if (!(slack > 0.0)) return kOutside;  // NaN too
-    sum += value.log_determinant + std::log(slack);
-  }
-  return sum;
-}
-
 double merit(const Reduced& problem, const Prices& prices, double mu, const Variables& at, Factor& factor) {
   double barrier = prices_barrier(prices, at);
   for (std::size_t j = 0; j < problem.open.size() && barrier > kOutside; ++j)
-    barrier += predictor_barrier(problem.open[j], at.u(static_cast<Eigen::Index>(j)), at);
+    barrier += predictor_barrier(problem.open[j], at.u(static_cast<Eigen::Index>(j)), at, factor.work);
   if (!(barrier > kOutside)) return kOutside;
   if (!factor_here(problem, at, factor)) return kOutside;
   const auto n = problem.b.size();
@@ -143,9 +159,9 @@ double merit(const Reduced& problem, const Prices& prices, double mu, const Vari
 }
 
 bool centre(const Reduced& problem, const Prices& prices, double mu, Variables& at) {
-  std::vector<double> work;
+  std::vector<double> bounds, work;
   for (std::size_t j = 0; j < problem.open.size(); ++j) {
-    const double u = central_u(problem.open[j], mu, at, work);
+    const double u = central_u(problem.open[j], mu, at, bounds, work);
     if (!std::isfinite(u)) return false;
     at.u(static_cast<Eigen::Index>(j)) = u;
   }

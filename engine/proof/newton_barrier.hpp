@@ -40,14 +40,11 @@ struct Prices {
 struct Factor {
   PaddedMatrix lower;          ///< L; above the diagonal anything
   std::vector<Line> residual;  ///< L⁻¹(b − g)
+  std::vector<double> work;    ///< anything
 
   double* residual_data() { return residual.data()->at; }
   const double* residual_data() const { return residual.data()->at; }
 };
-
-/// Σ over the forms of ln det [[D_ff, g_f], [g_fᵀ, u + c_f λ]] of one predictor, plus ln u where it may be absent;
-/// −infinity outside the domain.
-double predictor_barrier(const OpenPredictor& predictor, double u, const Variables& at);
 
 /// yy − (b − g)ᵀ(M − D)⁻¹(b − g) − Σu − s + μ · (barrier); −infinity outside the domain. Fills in `factor`. Cost: a
 /// Cholesky factorisation of order [open columns].

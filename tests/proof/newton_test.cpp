@@ -192,6 +192,17 @@ TEST_CASE("proof: nearly equal forms do not break Newton's method", "[proof][pro
   CHECK(value > test::smallest_excess(node, range) - 0.1);
 }
 
+TEST_CASE("proof: Newton's steps do not run into the boundary from a far start", "[proof][property]") {
+  const proof::Reduced node = test::make_node(1, GENERATE(150, 300), Shapes(40, {{1, 1, 1, 1, 1, 1}}), 0.1);
+  proof::ColumnRange range = test::whole_range(node, 0.5, 0.02);
+  range.fewest = 13;
+  range.most = 19;
+  range.tau_most = 0.5 * std::exp(-0.02 * 6.0);
+  const double lambda = (range.tau_fewest - range.tau_most) / 6.0, unit = lambda / 240.0;
+  proof::Newton newton(node, range, test::plain_start(node, lambda, 200.0 * unit));
+  CHECK(run(newton, 0.3 * unit, 80) > 0);
+}
+
 TEST_CASE("proof: Newton's method goes on when nothing is left to decide about the number of columns",
           "[proof][unit]") {
   const proof::Reduced node = test::make_node(7, 40, Shapes(4, {{1, 1, 1}, true}));
