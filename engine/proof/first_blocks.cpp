@@ -4,12 +4,13 @@
 
 #include <Eigen/Cholesky>
 
+#include <cmath>
+
 namespace formsieve::proof {
 
 namespace {
 
-/// Steps of the searches for a multiple that leaves M − D positive definite.
-constexpr double kConditionalStep = 0.9;
+/// Step of the search for a multiple that leaves M − D positive definite.
 constexpr double kOffDiagonalStep = 0.6;
 constexpr double kSmallestMultiple = 1e-6;
 /// The multiple found leads to the edge of the cone; this much of it is used.
@@ -28,12 +29,27 @@ Eigen::MatrixXd off_diagonals(const Reduced& problem) {
   return result;
 }
 
+/// The largest multiple of `blocks` that M allows, to within a few percent; zero when there is none.
+double largest_multiple(const Reduced& problem, const Eigen::MatrixXd& blocks, CertifiedDifference& z) {
+  constexpr int kBisections = 4;
+  double low = 1.0;
+  while (low > kSmallestMultiple && !z.certify(problem, low * blocks)) low *= 0.5;
+  if (low <= kSmallestMultiple) return 0.0;
+  if (low == 1.0) return low;
+  double high = 2.0 * low;
+  for (int i = 0; i < kBisections; ++i) {
+    const double middle = std::sqrt(low * high);
+    (z.certify(problem, middle * blocks) ? low : high) = middle;
+  }
+  return low;
+}
+
 /// The Gram of every predictor's forms given all other open columns, times the largest multiple that M allows.
 bool conditional_blocks(const Reduced& problem, Eigen::MatrixXd& d) {
-  const Eigen::LLT<Eigen::MatrixXd> factor(problem.m);
-  if (factor.info() != Eigen::Success) return false;
-  const Eigen::MatrixXd inverse = factor.solve(Eigen::MatrixXd::Identity(problem.m.rows(), problem.m.cols()));
+  CertifiedDifference z;
   Eigen::MatrixXd blocks = Eigen::MatrixXd::Zero(problem.m.rows(), problem.m.cols());
+  if (!z.certify(problem, blocks)) return false;
+  const Eigen::MatrixXd inverse = z.inverse();
   for (const OpenPredictor& predictor : problem.open) {
     const Eigen::Index q = predictor.n_columns;
     const Eigen::LLT<Eigen::MatrixXd> own(inverse.block(predictor.first, predictor.first, q, q));
@@ -42,13 +58,8 @@ bool conditional_blocks(const Reduced& problem, Eigen::MatrixXd& d) {
     block = own.solve(Eigen::MatrixXd::Identity(q, q));
     block = (0.5 * (block + block.transpose())).eval();
   }
-  CertifiedDifference z;
-  for (double multiple = 1.0; multiple > kSmallestMultiple; multiple *= kConditionalStep) {
-    if (!z.certify(problem, multiple * blocks)) continue;
-    d = kInside * multiple * blocks;
-    return z.certify(problem, d);
-  }
-  return false;
+  d = kInside * largest_multiple(problem, blocks, z) * blocks;
+  return d.diagonal().minCoeff() > 0.0 && z.certify(problem, d);
 }
 
 /// The freedom inside the predictors' blocks: η times their off-diagonals and ξ times their diagonals.

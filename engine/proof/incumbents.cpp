@@ -14,14 +14,18 @@ namespace {
 constexpr std::size_t kClosedEntries = 300;
 /// About a candidate met at a node; the list is closed again at the end of the first search anyway.
 constexpr std::size_t kClosedAboutNode = 30;
+/// All looks of the first closure together may take about so many operations, or a few of them what they take.
+constexpr double kClosureWork = 2e10;
+constexpr double kFewestLooks = 100;
+constexpr double kMostLooks = 3000;
 /// What a score by updates may be off.
 constexpr double kScoreError = 1e-6;
 /// A change that lowers a score by less is not followed: descents must end.
 constexpr double kSmallestDescent = 1e-9;
 /// Descents do not begin with all predictors in where there are more than these: each step would take long.
 constexpr std::size_t kLargestStart = 120;
-/// Candidates remembered as looked at.
-constexpr std::size_t kMostLookedAt = 200'000;
+/// Candidates remembered as looked at or descended from.
+constexpr std::size_t kMostRemembered = 200'000;
 
 std::size_t n_terms(const std::vector<std::uint16_t>& choice) {
   return static_cast<std::size_t>(std::count_if(choice.begin(), choice.end(), [](std::uint16_t c) { return c != 0; }));
@@ -37,50 +41,67 @@ bool Incumbents::offer(const search::Choice& candidate) {
          list_->offer(candidate, scorer_(candidate.response, candidate.choice));
 }
 
-bool Incumbents::look(const search::Choice& from, search::Choice& best, double& best_score) {
-  if (looked_at_.size() > kMostLookedAt) looked_at_.clear();
-  if (!looked_at_.emplace(from.response, from.choice).second) return false;
-  search::Choice changed = from;
-  std::pair<std::size_t, std::uint16_t> best_change{};
-  bool better = false;
-  changes_(from, [&](std::size_t predictor, std::uint16_t choice, double score) {
-    if (score < best_score - kSmallestDescent) {
-      best_score = score;
-      best_change = {predictor, choice};
-      better = true;
-    }
-    if (!(score <= list_->threshold() + kScoreError)) return;
-    const std::uint16_t old = std::exchange(changed.choice[predictor], choice);
-    offer(changed);
-    changed.choice[predictor] = old;
-  });
-  if (!better) return false;
-  best = from;
-  best.choice[best_change.first] = best_change.second;
-  return true;
-}
-
 void Incumbents::descend(search::Choice at) {
   double score = scorer_(at.response, at.choice).score;
-  search::Choice next;
-  while (!expired_() && look(at, next, score)) at = next;
+  while (!expired_()) {
+    if (descended_from_.size() > kMostRemembered) descended_from_.clear();
+    if (!descended_from_.emplace(at.response, at.choice).second) break;
+    std::pair<std::size_t, std::uint16_t> best{};
+    bool better = false;
+    changes_(at, [&](std::size_t predictor, std::uint16_t choice, double changed) {
+      if (!(changed < score - kSmallestDescent)) return;
+      score = changed;
+      best = {predictor, choice};
+      better = true;
+    });
+    if (!better) break;
+    at.choice[best.first] = best.second;
+  }
+  offer(at);
+}
+
+void Incumbents::offer_changes(const search::Choice& from) {
+  struct Change {
+    double score;
+    std::size_t predictor;
+    std::uint16_t choice;
+  };
+  std::vector<Change> changes;
+  changes_(from, [&](std::size_t predictor, std::uint16_t choice, double score) {
+    if (score <= list_->threshold() + kScoreError) changes.push_back({score, predictor, choice});
+  });
+  // best first: the threshold falls, and fewer need a score of their own
+  std::stable_sort(changes.begin(), changes.end(), [](const Change& a, const Change& b) { return a.score < b.score; });
+  search::Choice changed = from;
+  for (const Change& change : changes) {
+    if (!(change.score <= list_->threshold() + kScoreError)) return;
+    const std::uint16_t old = std::exchange(changed.choice[change.predictor], change.choice);
+    offer(changed);
+    changed.choice[change.predictor] = old;
+  }
 }
 
 void Incumbents::close(std::size_t most_entries) {
+  if (looked_at_.size() > kMostRemembered) looked_at_.clear();
   for (std::size_t looks = 0; looks < most_entries && !expired_();) {
     const std::vector<Listed> entries = list_->best(kClosedEntries);
     bool any = false;
     for (const Listed& entry : entries) {
       if (looks >= most_entries || expired_()) return;
-      if (looked_at_.contains({entry.choice.response, entry.choice.choice})) continue;
+      if (!looked_at_.emplace(entry.choice.response, entry.choice.choice).second) continue;
       any = true;
       ++looks;
-      search::Choice unused;
-      double score = entry.score;
-      look(entry.choice, unused, score);
+      offer_changes(entry.choice);
     }
     if (!any) return;
   }
+}
+
+std::size_t Incumbents::affordable_looks() const {
+  const Listed* best = list_->best();
+  const double k = best == nullptr ? 1.0 : static_cast<double>(best->n_columns) + 1.0;
+  const double work = 2.0 * k * k * static_cast<double>(root_->gram().rows() + 1);
+  return static_cast<std::size_t>(std::clamp(kClosureWork / work, kFewestLooks, kMostLooks));
 }
 
 void Incumbents::start() {
@@ -112,7 +133,7 @@ void Incumbents::start() {
       if (terms <= scope_->most_terms && terms <= kLargestStart) descend(begin);
     }
   }
-  close(10 * kClosedEntries);
+  close(affordable_looks());
 }
 
 void Incumbents::improve(const search::Choice& candidate, bool force) {

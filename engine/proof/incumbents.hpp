@@ -27,7 +27,8 @@ class Incumbents {
   bool offer(const search::Choice& candidate);
   void descend(search::Choice at);
   void close(std::size_t most_entries);
-  bool look(const search::Choice& from, search::Choice& best, double& best_score);
+  std::size_t affordable_looks() const;
+  void offer_changes(const search::Choice& from);
 
   const RootGram* root_;
   const Scope* scope_;
@@ -35,7 +36,9 @@ class Incumbents {
   std::function<bool()> expired_;
   CandidateScorer scorer_;
   SingleChanges changes_;
-  std::set<std::pair<std::size_t, std::vector<std::uint16_t>>> looked_at_;  ///< their single changes were offered
+  using Seen = std::set<std::pair<std::size_t, std::vector<std::uint16_t>>>;
+  Seen descended_from_;
+  Seen looked_at_;  ///< their single changes were offered
 };
 
 }  // namespace formsieve::proof

@@ -21,6 +21,7 @@ constexpr double kInfinity = std::numeric_limits<double>::infinity();
 /// Sweeps are given so many operations, and this many times [columns]³ for every response form: a root takes about as
 /// many. Problems that they solve are solved before Newton's method would have got going (20 × 6, or 40 × 6 of 3,000
 /// rows); in others little is lost.
+constexpr std::size_t kMostColumns_sweeps = 300;  ///< with more a pass takes longer than a step of Newton's method
 constexpr double kSweepsWork = 3e8;
 constexpr double kSweepsWork_root = 60.0;
 
@@ -71,6 +72,7 @@ class Tree {
     const auto order = static_cast<double>(n_columns);
     work_of_sweeps_ = effort_.sweeps_work * (kSweepsWork + kSweepsWork_root * order * order * order *
                                                                static_cast<double>(scope_.responses.size()));
+    if (n_columns > kMostColumns_sweeps) work_of_sweeps_ = 0.0;
     open_.limit(effort_.most_open_bytes, root_.n_predictors(), n_columns);
   }
 
