@@ -26,6 +26,16 @@ std::string without_trailing_zeros(std::string text) {
   return text;
 }
 
+// "1234567" as "1,234,567".
+std::string in_threes(std::string_view digits) {
+  std::string text;
+  for (std::size_t i = 0; i < digits.size(); ++i) {
+    if (i > 0 && (digits.size() - i) % 3 == 0) text += ',';
+    text += digits[i];
+  }
+  return text;
+}
+
 // Groups the whole part and writes a true minus sign, except before a figure that has been rounded to zero.
 std::string dressed(std::string text) {
   const bool negative = text.starts_with('-');
@@ -34,7 +44,7 @@ std::string dressed(std::string text) {
   const std::string whole = text.substr(0, point);
   const std::string rest = point == std::string::npos ? std::string() : text.substr(point);
   const bool zero = text.find_first_not_of("0.") == std::string::npos;
-  return (negative && !zero ? "−" : "") + grouped(whole) + rest;
+  return (negative && !zero ? "−" : "") + in_threes(whole) + rest;
 }
 
 std::string exponential(double value, int digits) {
@@ -70,12 +80,7 @@ std::string grouped(std::string_view digits) {
     return text.append(".").append(digits.substr(sign + 1, 2)).append("·10^") +
            std::to_string(digits.size() - sign - 1);
   }
-  std::string text(digits.substr(0, sign));
-  for (std::size_t i = sign; i < digits.size(); ++i) {
-    if (i > sign && (digits.size() - i) % 3 == 0) text += ',';
-    text += digits[i];
-  }
-  return text;
+  return std::string(digits.substr(0, sign)) + in_threes(digits.substr(sign));
 }
 
 std::string grouped(std::size_t count) { return grouped(std::to_string(count)); }

@@ -3,6 +3,7 @@
 #include "base/parallel.hpp"
 #include "pipeline/penalties.hpp"
 #include "pipeline/profile.hpp"
+#include "proof/warm_start.hpp"
 
 #include <algorithm>
 #include <chrono>
@@ -129,8 +130,8 @@ class Prover {
   std::function<void(const proof::Progress&)> news(const std::string& phase) const;
   proof::Proof run(proof::Restriction restriction, proof::Limits limits,
                    const std::vector<search::Choice>& hints) const;
-  void run(Task& task, double seconds) const;
-  void run_open(std::vector<Task>& tasks, double share) const;
+  void run(Task& task, double seconds, const proof::WarmStart& start) const;
+  void run_open(std::vector<Task>& tasks, double share, const proof::WarmStart& start) const;
   std::vector<Task> choice_tasks(Proved& proved) const;
   std::vector<Task> terms_tasks(Proved& proved) const;
   std::vector<Task> response_tasks(Proved& proved) const;
@@ -272,10 +273,11 @@ std::vector<Task> Prover::response_tasks(Proved& proved) const {
   return tasks;
 }
 
-void Prover::run(Task& task, double seconds) const {
+void Prover::run(Task& task, double seconds, const proof::WarmStart& start) const {
   if (seconds <= 0.0 || limits_.stop.stop_requested()) return;
   proof::Limits limits;
   limits.keep = 1;
+  limits.start = &start;
   limits.threads = 1;
   limits.seconds = seconds;
   const proof::Proof one = run(task.restriction, limits, task.hints);
@@ -289,7 +291,7 @@ void Prover::run(Task& task, double seconds) const {
 }
 
 /// Runs the tasks that are still open side by side, each on one thread for at most its part of a share of the time.
-void Prover::run_open(std::vector<Task>& tasks, double share) const {
+void Prover::run_open(std::vector<Task>& tasks, double share, const proof::WarmStart& start) const {
   std::vector<Task*> open;
   for (Task& task : tasks)
     if (!task.result->proved) open.push_back(&task);
@@ -298,7 +300,7 @@ void Prover::run_open(std::vector<Task>& tasks, double share) const {
   const double threads = limits_.threads == 0 ? base::available_threads() : limits_.threads;
   const double each = share * std::max(0.0, seconds_left()) * threads / static_cast<double>(open.size());
   base::parallel_for(open.size(), limits_.threads, [&](std::size_t i) {
-    run(*open[i], std::min(each, seconds_left()));
+    run(*open[i], std::min(each, seconds_left()), start);
     limits_.progress(1);
   });
 }
@@ -308,8 +310,12 @@ void Prover::prove_profile(Proved& proved) {
   for (auto& task : terms_tasks(proved)) tasks.push_back(std::move(task));
   for (auto& task : choice_tasks(proved)) tasks.push_back(std::move(task));
   end_ = std::min(end_, seconds() + std::max(kProfileSeconds, kProfileShare * seconds()));
-  run_open(tasks, kFirstRound);
-  run_open(tasks, 1.0);
+  const bool all_settled =
+      std::all_of(tasks.begin(), tasks.end(), [](const Task& task) { return task.result->proved; });
+  if (all_settled || seconds_left() <= 0.0 || limits_.stop.stop_requested()) return;
+  const proof::WarmStart start = proof::warm_start(root_, {}, limits_.threads);
+  run_open(tasks, kFirstRound, start);
+  run_open(tasks, 1.0, start);
   for (const Task& task : tasks) proved.nodes += task.nodes;
 }
 

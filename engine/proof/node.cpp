@@ -49,6 +49,14 @@ DualPoint unpack(const Inherited& inherited, const Reduced& problem) {
   return point;
 }
 
+Node root_node(const Scope& scope, std::size_t response) {
+  Node node;
+  node.response = response;
+  node.most_columns = scope.most_columns;
+  node.actions = scope.actions;
+  return node;
+}
+
 Certificate::Part part_of(const Node& node) {
   return {node.number, node.response, node.actions, node.fewest_columns, node.most_columns};
 }

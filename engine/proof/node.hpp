@@ -5,6 +5,7 @@
 #include "proof/dual.hpp"
 #include "proof/problem.hpp"
 #include "proof/reduced.hpp"
+#include "proof/scope.hpp"
 
 #include <Eigen/Core>
 
@@ -41,6 +42,9 @@ struct Node {
   std::shared_ptr<const Inherited> inherited;        ///< null at a root
   bool new_range = false;                            ///< the range of columns was just cut: λ starts anew
 };
+
+/// All candidates of a scope with this response form.
+Node root_node(const Scope& scope, std::size_t response);
 
 Certificate::Part part_of(const Node& node);
 

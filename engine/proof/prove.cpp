@@ -7,6 +7,7 @@
 #include "proof/open_nodes.hpp"
 #include "proof/scope.hpp"
 #include "proof/shortlist.hpp"
+#include "proof/warm_start.hpp"
 
 #include <algorithm>
 #include <chrono>
@@ -63,7 +64,8 @@ class Tree {
     if (limits_.certificate) *limits_.certificate = {};
     std::size_t n_columns = 0;
     for (const std::size_t response : scope_.responses) {
-      roots_.push_back(root_node(response));
+      roots_.push_back(root_node(scope_, response));
+      if (limits_.start) roots_.back().inherited = limits_.start->roots.at(response);
       roots_.back().number = open_.push(roots_.back());
       if (limits_.certificate) limits_.certificate->roots.push_back(part_of(roots_.back()));
     }
@@ -74,14 +76,6 @@ class Tree {
                                                                static_cast<double>(scope_.responses.size()));
     if (n_columns > kMostColumns_sweeps) work_of_sweeps_ = 0.0;
     open_.limit(effort_.most_open_bytes, root_.n_predictors(), n_columns);
-  }
-
-  Node root_node(std::size_t response) const {
-    Node node;
-    node.response = response;
-    node.most_columns = scope_.most_columns;
-    node.actions = scope_.actions;
-    return node;
   }
 
   /// The tree begins anew where it is still open, from the roots as sweeps have narrowed them: those that end in time

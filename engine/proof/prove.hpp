@@ -32,6 +32,7 @@ struct Progress {
 };
 
 struct Certificate;  // certificate.hpp
+struct WarmStart;    // warm_start.hpp
 
 struct Limits {
   std::size_t keep = 100;  ///< candidates listed at most
@@ -42,6 +43,8 @@ struct Limits {
   unsigned threads = 0;  ///< 0: all that the process may use
   std::stop_token stop;
   std::function<void(const Progress&)> progress;  ///< called between batches; may be empty
+  /// Where the roots begin; may be null. What is proved does not depend on it, only how soon.
+  const WarmStart* start = nullptr;
   /// Where the proof is to be written down; may be null. Takes memory for a matrix of the order of the open columns and
   /// more for every bound.
   Certificate* certificate = nullptr;

@@ -90,7 +90,7 @@ TEST_CASE("cli: the difference between two lists of terms names what changed", "
 
 TEST_CASE("cli: the announcement counts candidates exactly and lists its notes", "[cli][unit]") {
   pipeline::Announcement announcement;
-  announcement.candidates = "12345678901234567890123";
+  announcement.candidates = "12345678901234567";
   announcement.n_responses = 3;
   announcement.n_predictors = 9;
   announcement.n_forms = 36;
@@ -100,7 +100,7 @@ TEST_CASE("cli: the announcement counts candidates exactly and lists its notes",
   announcement.seconds_estimate = 4.2;
   announcement.notes = {"log10 of floor_area is one form with ln"};
   CHECK(unwrapped(announcement_text(announcement, plain_terminal(60))) ==
-        "12,345,678,901,234,567,890,123 candidates: 3 response forms × 9 predictors with 36 forms; 411 of 420 rows; 10 "
+        "12,345,678,901,234,567 candidates: 3 response forms × 9 predictors with 36 forms; 411 of 420 rows; 10 "
         "folds; about 4.2 s – log10 of floor_area is one form with ln");
 }
 

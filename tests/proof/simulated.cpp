@@ -73,6 +73,27 @@ Eigen::VectorXd response(const SimulatedOptions& o, const Eigen::MatrixXd& colum
   return y / y.norm();
 }
 
+/// Response forms ln, √ and identity of exp(spread · response), all of unit length, and what to add to their scores:
+/// 2 ln(length) n − 2 ln(Jacobian), less that of the first.
+Eigen::MatrixXd response_forms(const Eigen::VectorXd& response, int n_responses, std::vector<double>& constant) {
+  constexpr double kSpread = 0.3;
+  const auto n = static_cast<double>(response.size());
+  const Eigen::ArrayXd log_own = kSpread * std::sqrt(n) * response.array();
+  const double power[3] = {0.0, 0.5, 1.0};
+  Eigen::MatrixXd forms(response.size(), n_responses);
+  forms.col(0) = response;
+  constant = {0.0};
+  const double first = n * std::log(log_own.square().sum()) + 2.0 * log_own.sum();
+  for (int r = 1; r < n_responses; ++r) {
+    Eigen::ArrayXd form = (power[r] * log_own).exp();
+    form -= form.mean();
+    const double log_jacobian = n * std::log(power[r]) + (power[r] - 1.0) * log_own.sum();
+    constant.push_back(n * std::log(form.square().sum()) - 2.0 * log_jacobian - first);
+    forms.col(r) = form / std::sqrt(form.square().sum());
+  }
+  return forms;
+}
+
 }  // namespace
 
 std::vector<double> penalty_of(const std::string& criterion, std::size_t n_rows, std::size_t most_columns) {
@@ -96,14 +117,15 @@ Simulated simulate(const SimulatedOptions& o) {
                 static_cast<std::uint64_t>(o.n_forms) * 17 + static_cast<std::uint64_t>(o.n_rows));
   std::normal_distribution<double> normal;
   const Eigen::MatrixXd columns = design(o, normal_predictors(o, random, normal));
-  Eigen::MatrixXd rows(o.n_rows, columns.cols() + 1);
-  rows << columns, response(o, columns, random, normal);
-  const Eigen::MatrixXd gram = rows.transpose() * rows;
   Simulated result;
+  Eigen::MatrixXd rows(o.n_rows, columns.cols() + o.n_responses);
+  rows << columns, response_forms(response(o, columns, random, normal), o.n_responses, result.problem.constant);
+  const Eigen::MatrixXd gram = rows.transpose() * rows;
   result.grams.n_rows = static_cast<std::size_t>(o.n_rows);
   result.grams.n_columns = static_cast<std::size_t>(columns.cols());
-  result.grams.n_responses = 1;
-  result.grams.response_scale = {1.0};
+  result.grams.n_responses = static_cast<std::size_t>(o.n_responses);
+  result.space.n_responses = result.grams.n_responses;
+  result.grams.response_scale.assign(result.grams.n_responses, 1.0);
   result.grams.all.assign(gram.data(), gram.data() + gram.size());
   for (int p = 0; p < o.n_predictors; ++p) {
     search::PredictorChoices choices;
@@ -111,7 +133,6 @@ Simulated simulate(const SimulatedOptions& o) {
     result.space.predictors.push_back(choices);
   }
   result.problem.penalty = penalty_of(o.criterion, result.grams.n_rows, result.space.predictors.size());
-  result.problem.constant = {0.0};
   return result;
 }
 

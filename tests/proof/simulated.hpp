@@ -18,6 +18,7 @@ struct SimulatedOptions {
   double spread = 1.0;            ///< multiplies the variation of every predictor: small makes its forms nearly equal
   int n_active = -1;              ///< −1: a third
   std::string criterion = "AIC";  ///< AIC, AICc or BIC
+  int n_responses = 1;            ///< more: beside it √ and the identity of the response of which it is the ln
 };
 
 /// Owns what a RootGram refers to.
@@ -28,7 +29,8 @@ struct Simulated {
 };
 
 /// Form t of predictor p is column p · n_forms + t; the response has unit length, so that scores are n ln(RSS_rel) +
-/// penalty. Penalties of k columns: 2(k + 1); ln(n)(k + 1); 2q + 2q(q + 1)/(n − q − 1), q = k + 2.
+/// penalty, with constants that make response forms comparable where there are more. Penalties of k columns: 2(k + 1);
+/// ln(n)(k + 1); 2q + 2q(q + 1)/(n − q − 1), q = k + 2.
 Simulated simulate(const SimulatedOptions& options);
 
 std::vector<double> penalty_of(const std::string& criterion, std::size_t n_rows, std::size_t most_columns);
