@@ -120,6 +120,7 @@ std::string grouped(const search::BigCount& count) { return judge::grouped_digit
 
 std::string duration_words(double seconds) {
   char text[64];
+  if (!(seconds < 3.15e13)) return "millions of years";
   if (seconds < 1.0) return "less than a second";
   if (seconds < 90.0)
     std::snprintf(text, sizeof text, "%.0f s", seconds);

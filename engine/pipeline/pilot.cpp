@@ -230,6 +230,7 @@ Status add_own_units(const Prepared& prepared, base::GramSet& grams, unsigned th
     if (is_linear(prepared.data.response_forms[r])) continue;
     const auto known =
         r < candidates.size() ? std::span<const search::Choice>(candidates[r]) : std::span<const search::Choice>();
+    if (!candidates.empty() && known.empty() && grams.n_columns > kMostDescendedColumns) continue;
     if (auto pilot = make_pilot(prepared, grams, r, threads, known)) pilots.push_back(std::move(*pilot));
   }
   auto own = design::build_own_units_grams(prepared.data, prepared.folds, pilots, threads);

@@ -34,9 +34,12 @@ bool is_linear(const forms::Form& response);
 std::optional<design::Pilot> make_pilot(const Prepared& prepared, const base::GramSet& grams, std::size_t response,
                                         unsigned threads, std::span<const search::Choice> candidates = {});
 inline constexpr double kSlopeRange = 1e6;
+/// Beyond so many design columns a descent from nothing takes minutes.
+inline constexpr std::size_t kMostDescendedColumns = 300;
 
 /// Makes the pilots of all response forms that need one and fills grams.own_units. Response forms without a pilot are
-/// left out of it. `candidates` by response form, as in make_pilot; may be empty.
+/// left out of it, and so are those without any of the `candidates` by response form, when some are given and a descent
+/// would be dear (kMostDescendedColumns).
 Status add_own_units(const Prepared& prepared, base::GramSet& grams, unsigned threads,
                      std::span<const std::vector<search::Choice>> candidates = {});
 
