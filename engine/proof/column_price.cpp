@@ -48,4 +48,8 @@ double ColumnPrice::loss(std::size_t fewest, std::size_t most) const {
   return step_ * step_ * width * width / 8.0 * static_cast<double>(root_->problem().grams->n_rows);
 }
 
+bool ColumnPrice::worth_splitting(std::size_t fewest, std::size_t most) const {
+  return most - fewest >= 2 && loss(fewest, most) > kLossOfSplit;
+}
+
 }  // namespace formsieve::proof

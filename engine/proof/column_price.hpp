@@ -7,6 +7,9 @@
 
 namespace formsieve::proof {
 
+/// The range of columns is split where one price loses more of a score than this.
+inline constexpr double kLossOfSplit = 0.7;
+
 /// RSS_rel that a candidate needs to reach the threshold, and what follows for λ.
 class ColumnPrice {
  public:
@@ -24,6 +27,8 @@ class ColumnPrice {
   double within(double lambda, std::size_t fewest, std::size_t most) const;
   /// What one λ over the range loses: about (p·w)²/(8n) of a score, p the rise of the penalty and w the width.
   double loss(std::size_t fewest, std::size_t most) const;
+  /// The range has more than two numbers and one price loses more than kLossOfSplit.
+  bool worth_splitting(std::size_t fewest, std::size_t most) const;
 
  private:
   const RootGram* root_;

@@ -16,10 +16,13 @@ namespace {
 constexpr double kInfinity = std::numeric_limits<double>::infinity();
 /// μ in units of λ over the number of columns: at a root, after the range of columns was cut, and the last; and the
 /// factor between.
-constexpr double kFirstBarrier = 200.0;
+constexpr double kFirstBarrier = 1000.0;
 constexpr double kRangeBarrier = 1.0;
 constexpr double kLastBarrier = 0.3;
 constexpr double kBarrierStep = 0.3;
+/// Where the range of columns is split next, the parts go on from this many times the last μ: the last steps would be
+/// taken for a price of columns that no part keeps.
+constexpr double kBarrierOfSplit = 30.0;
 /// μ falls once a step with a smaller decrement was this long, or after so many steps.
 constexpr double kNearCentre = 6.0;
 constexpr double kLongStep = 0.4;
@@ -38,6 +41,7 @@ constexpr std::size_t kMostIdle = 2;
 constexpr double kSmallestGap = 0.05;  ///< of a score
 /// The problem is built anew, smaller, once more than this share of the actions was struck off.
 constexpr double kRebuild_at_once = 0.15;
+constexpr double kRebuild_at_once_root = 0.07;  ///< its steps are the dearest, and many
 constexpr double kRebuild_at_end = 0.05;
 constexpr std::size_t kRootDescent = 200;
 constexpr std::size_t kNodeDescent = 60;
@@ -51,7 +55,7 @@ class NewtonRefinement {
     if (!begin()) return {};
     for (std::size_t pass = 0;; ++pass) {
       if (evaluate()) return {Standing::cut, {}};
-      if (struck_share() > kRebuild_at_once) return leave(Standing::changed);
+      if (struck_share() > (root_ ? kRebuild_at_once_root : kRebuild_at_once)) return leave(Standing::changed);
       if (frozen_.expired && frozen_.expired()) return leave(Standing::expired);
       const bool last_barrier = point_.mu <= last_barrier_ * 1.001;
       if (pass >= (thorough_ ? kPasses_root : kPasses_node) || (idle_ >= kMostIdle && last_barrier)) break;
@@ -68,6 +72,7 @@ class NewtonRefinement {
     if (!starting_point(frozen_, problem_, node_, price_, point_, z_, account_.work)) return false;
     const double unit = point_.lambda / static_cast<double>(problem_.m.rows());
     last_barrier_ = kLastBarrier * unit;
+    if (thorough_ && price_.worth_splitting(node_.fewest_columns, node_.most_columns)) last_barrier_ *= kBarrierOfSplit;
     polished_ = point_.v;
     if (point_.g.size() == 0) {
       if (recondition(problem_, point_.d)) z_.certify(problem_, point_.d);

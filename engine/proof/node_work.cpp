@@ -11,8 +11,7 @@ namespace formsieve::proof {
 
 namespace {
 
-/// The range of columns is split where one price loses more of a score than this, into at most so many parts.
-constexpr double kLossOfSplit = 0.7;
+/// The range of columns is split into at most so many parts.
 constexpr std::size_t kMostParts = 8;
 /// How fast an action's weight falls with its bound's distance from the node's, in units of the gap: the predictor
 /// branched on has the smallest sum of weights.
@@ -37,9 +36,9 @@ search::Choice round_off(const Reduced& problem, const Bound& bound) {
 /// Parts of a node by number of columns; empty when a split is not worth while.
 std::vector<Node> split_columns(const Frozen& frozen, const Node& node) {
   const std::size_t width = node.most_columns - node.fewest_columns;
-  const double loss = ColumnPrice(frozen, node.response).loss(node.fewest_columns, node.most_columns);
-  if (width < 2 || !(loss > kLossOfSplit)) return {};
-  const double wanted = std::ceil(std::sqrt(loss / kLossOfSplit));
+  const ColumnPrice price(frozen, node.response);
+  if (!price.worth_splitting(node.fewest_columns, node.most_columns)) return {};
+  const double wanted = std::ceil(std::sqrt(price.loss(node.fewest_columns, node.most_columns) / kLossOfSplit));
   const std::size_t parts =
       std::min({static_cast<std::size_t>(std::clamp(wanted, 2.0, double{kMostParts})), width + 1});
   std::vector<Node> children;
