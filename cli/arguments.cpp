@@ -120,8 +120,7 @@ void add_plan_options(CLI::App& command, PlanArguments& arguments) {
       ->check(whole_number(0, std::numeric_limits<std::int64_t>::max(), "--seed 7"));
   add_single(command, "--max-terms", "N", arguments.max_terms, "at most so many predictors in a candidate")
       ->check(whole_number(1, kMost32, "--max-terms 6"));
-  add_single(command, "--strategy", "WAY", arguments.strategy,
-             "every candidate, proved, guided; auto (default) takes what fits the budget")
+  add_single(command, "--strategy", "WAY", arguments.strategy, "auto (default), every, proved or guided")
       ->check(one_of({"auto", "every", "proved", "guided"}));
   add_single(command, "--by", "CRITERION", arguments.by, "rank by cv_rmse (default), aic, aicc or bic")
       ->check(one_of({"cv_rmse", "aic", "aicc", "bic"}));

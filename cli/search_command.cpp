@@ -92,11 +92,10 @@ void add_search_command(CLI::App& program, Action& chosen) {
   help->usage = "search PLAN | DATA --response COLUMN";
   help->brief_group = kTableGroup;
   help->brief_note = "As in formsieve survey";
-  help->notes = {"With a PLAN, options given here take the place of its keys."};
   help->example = {"formsieve search coldstores.csv --response energy_kwh"};
   command->formatter(help);
   command->set_help_flag("--help,-h", "this page");
-  command->add_option("PLAN|DATA", arguments->source, "a plan (.toml), or a table to search with the default plan")
+  command->add_option("PLAN|DATA", arguments->source, "a plan (.toml), whose keys options override, or a table")
       ->required();
   add_plan_options(*command, arguments->plan);
   command->add_option("--out", arguments->out, "the run folder; default the plan's or table's name + .run")

@@ -298,7 +298,8 @@ TEST_CASE("cli: a second signal ends the program at once", "[cli][unit]") {
   CHECK(outcome.out.empty());
 }
 
-TEST_CASE("cli: a space too large for the budget is refused before it starts when every candidate is asked for", "[cli][unit]") {
+TEST_CASE("cli: a space too large for the budget is refused before it starts when every candidate is asked for",
+          "[cli][unit]") {
   const Folder folder;
   folder.write("endless.csv", endless_csv());
   check_error(run_formsieve({"search", folder.file("endless.csv"), "--response", "y", "--budget", "1s", "--strategy",

@@ -74,7 +74,7 @@ TEST_CASE("cli: wrong arguments end with 2 and say what to type", "[cli][unit]")
        "did you mean --separator?"},
       {{"survey", "a.csv", "--zzz"}, "formsieve survey has no option --zzz", "formsieve survey --help lists"},
       {{"survey", "a.csv", "b.csv"}, "the argument 'b.csv' is one too many", "write formsieve survey DATA"},
-      {{"show", "survey", "1", "2"}, "the argument '2' is one too many", "write formsieve show RUN [RANK]"},
+      {{"show", "survey", "1", "2"}, "the argument '2' is one too many", "write formsieve show RUN [RANK | --profile]"},
       {{"--json", "survey", "a.csv"}, "--json stands before the command", "put options after the command"},
       {{"survey", "a.csv", "--threads"}, "--threads needs a value", "write --threads N"},
       {{"survey", "a.csv", "--threads", "two"}, "'two' is not a whole number of 1 to 1,024", "--threads 2"},
