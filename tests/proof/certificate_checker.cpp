@@ -1,13 +1,12 @@
 #include "certificate_checker.hpp"
 
-#include <Eigen/Core>
+#include "certificate_bound.hpp"
 
 #include <algorithm>
 #include <bit>
 #include <cmath>
 #include <limits>
 #include <map>
-#include <optional>
 #include <set>
 #include <vector>
 
@@ -15,53 +14,25 @@ namespace formsieve::test {
 
 namespace {
 
-using Real = long double;
-using Matrix = Eigen::Matrix<Real, Eigen::Dynamic, Eigen::Dynamic>;
-using Vector = Eigen::Matrix<Real, Eigen::Dynamic, 1>;
-using proof::Actions;
 using proof::Certificate;
 using Part = Certificate::Part;
 
 constexpr Real kInfinity = std::numeric_limits<Real>::infinity();
 
-bool has(Actions actions, std::size_t choice) { return (actions >> choice & 1) != 0; }
-
-/// One choice of an open predictor and what the relaxation lets it gain.
-struct Choice {
-  std::size_t choice = 0;
-  std::size_t terms = 0, columns = 0;
-  Real gain = 0.0;
-};
-
-/// A bound evaluated: sums of gains are still to be maximised.
-struct Value {
-  Real base = 0.0;
-  std::vector<std::vector<Choice>> choices;  ///< [predictor], the decided ones with their one choice
-};
-
 class Checker {
  public:
   Checker(const proof::Problem& problem, const proof::Restriction& restriction, const Certificate& certificate,
           const proof::Proof& result, std::size_t keep, double within, double tolerance)
-      : problem_(problem),
+      : plain_(problem),
         restriction_(restriction),
         certificate_(certificate),
         result_(result),
         keep_(keep),
         within_(within),
         tolerance_(tolerance) {
-    const std::size_t n = problem.grams->order();
-    gram_.resize(static_cast<Eigen::Index>(n), static_cast<Eigen::Index>(n));
-    for (std::size_t i = 0; i < n; ++i)
-      for (std::size_t j = 0; j < n; ++j) {
-        const Real lengths =
-            std::sqrt(Real{problem.grams->all[i * (n + 1)]}) * std::sqrt(Real{problem.grams->all[j * (n + 1)]});
-        gram_(static_cast<Eigen::Index>(i), static_cast<Eigen::Index>(j)) =
-            lengths > 0 ? problem.grams->all[i + j * n] / lengths : 0.0L;
-      }
     const std::size_t n_predictors = problem.space->predictors.size();
-    fewest_terms_ = restriction.fewest_terms;
-    most_terms_ = std::min(restriction.most_terms, problem.space->max_terms.value_or(n_predictors));
+    terms_.fewest = restriction.fewest_terms;
+    terms_.most = std::min(restriction.most_terms, problem.space->max_terms.value_or(n_predictors));
   }
 
   std::string run() {
@@ -78,54 +49,7 @@ class Checker {
     if (fault_.empty()) fault_ = fault;
   }
 
-  const search::PredictorChoices& predictor(std::size_t j) const { return problem_.space->predictors[j]; }
-  std::size_t width(std::size_t j, std::size_t choice) const {
-    return choice == 0 ? 0 : predictor(j).forms[choice - 1].n_columns;
-  }
-
-  // ---- candidates
-
-  std::vector<Eigen::Index> columns_of(const std::vector<std::uint16_t>& choice) const {
-    std::vector<Eigen::Index> columns;
-    for (std::size_t j = 0; j < choice.size(); ++j)
-      for (std::size_t c = 0; c < width(j, choice[j]); ++c)
-        columns.push_back(static_cast<Eigen::Index>(predictor(j).forms[choice[j] - 1u].first_column + c));
-    return columns;
-  }
-
-  /// Eliminates columns of `gram` one after another; false at a pivot of at most `smallest`.
-  static bool eliminate(Matrix& gram, const std::vector<Eigen::Index>& columns, Real smallest) {
-    for (const Eigen::Index c : columns) {
-      const Real pivot = gram(c, c);
-      if (!(pivot > smallest)) return false;
-      const Vector column = gram.col(c);
-      gram -= column * column.transpose() / pivot;
-    }
-    return true;
-  }
-
-  Real score(std::size_t response, Real rss, std::size_t n_columns) const {
-    if (n_columns >= problem_.penalty.size()) return kInfinity;
-    const std::size_t y = problem_.grams->n_columns + response;
-    const Real own = problem_.grams->all[y * (problem_.grams->order() + 1)];
-    return static_cast<Real>(problem_.grams->n_rows) * (std::log(std::max(rss, 1e-12L)) + std::log(own)) +
-           problem_.penalty[n_columns] + problem_.constant[response];
-  }
-
-  Real score_of(std::size_t response, const std::vector<std::uint16_t>& choice) const {
-    const std::vector<Eigen::Index> columns = columns_of(choice);
-    std::vector<Eigen::Index> own = columns;
-    own.push_back(response_column(response));
-    Matrix gram = gram_(own, own);
-    std::vector<Eigen::Index> order(columns.size());
-    for (std::size_t i = 0; i < order.size(); ++i) order[i] = static_cast<Eigen::Index>(i);
-    if (!eliminate(gram, order, 1e-8L)) return kInfinity;
-    return score(response, gram(gram.rows() - 1, gram.cols() - 1), columns.size());
-  }
-
-  Eigen::Index response_column(std::size_t response) const {
-    return static_cast<Eigen::Index>(problem_.grams->n_columns + response);
-  }
+  const search::PredictorChoices& predictor(std::size_t j) const { return plain_.predictor(j); }
 
   // ---- the list
 
@@ -136,7 +60,7 @@ class Checker {
     if (!result_.best.empty()) threshold_ = result_.best.front().score + Real{within_};
     if (result_.best.size() == keep_ && keep_ > 0) threshold_ = std::min<Real>(threshold_, result_.best.back().score);
     for (const proof::Listed& listed : result_.best) {
-      if (!(std::abs(score_of(listed.choice.response, listed.choice.choice) - listed.score) < tolerance_))
+      if (!(std::abs(plain_.score_of(listed.choice.response, listed.choice.choice) - listed.score) < tolerance_))
         blame("a listed score is wrong");
       if (listed.score > threshold_) blame("a listed score is beyond the threshold");
       if (!listed_.emplace(listed.choice.response, listed.choice.choice).second) blame("a candidate listed twice");
@@ -152,12 +76,12 @@ class Checker {
       for (std::size_t j = 0; j < root.actions.size(); ++j)
         for (std::size_t c = predictor(j).always ? 1 : 0; c <= predictor(j).forms.size(); ++c)
           if (!restricted(j, c) && !has(root.actions[j], c)) blame("a root leaves out an action");
-      if (root.actions.size() != problem_.space->predictors.size()) blame("a root of another size");
+      if (root.actions.size() != plain_.given().space->predictors.size()) blame("a root of another size");
       if (root.fewest_columns > 0) blame("a root leaves out numbers of columns");
-      for (std::size_t k = root.most_columns + 1; k < problem_.penalty.size(); ++k)
-        if (std::isfinite(problem_.penalty[k])) blame("a root leaves out numbers of columns");
+      for (std::size_t k = root.most_columns + 1; k < plain_.given().penalty.size(); ++k)
+        if (std::isfinite(plain_.given().penalty[k])) blame("a root leaves out numbers of columns");
     }
-    for (std::size_t r = 0; r < problem_.space->n_responses; ++r)
+    for (std::size_t r = 0; r < plain_.given().space->n_responses; ++r)
       if (r == restriction_.response.value_or(r) && !responses.contains(r)) blame("a response form without a root");
   }
 
@@ -217,7 +141,7 @@ class Checker {
   static bool covered(const Part& parent, const std::vector<Part>& children) {
     std::set<std::size_t> columns;
     std::set<std::size_t> differing;
-    Actions together = 0;
+    proof::Actions together = 0;
     for (const Part& child : children) {
       if (child.response != parent.response || child.actions.size() != parent.actions.size()) return false;
       for (std::size_t k = child.fewest_columns; k <= child.most_columns; ++k) columns.insert(k);
@@ -245,9 +169,9 @@ class Checker {
   void enumerate_from(const Part& part, std::size_t j, std::size_t terms, std::size_t columns,
                       std::vector<std::uint16_t>& choice) {
     if (j == choice.size()) {
-      if (terms < fewest_terms_ || terms > most_terms_) return;
+      if (terms < terms_.fewest || terms > terms_.most) return;
       if (columns < part.fewest_columns || columns > part.most_columns) return;
-      const Real score = score_of(part.response, choice);
+      const Real score = plain_.score_of(part.response, choice);
       if (score < threshold_ - tolerance_ && !listed_.contains({part.response, choice}))
         blame("an enumerated candidate below the threshold is not listed");
       return;
@@ -255,7 +179,7 @@ class Checker {
     for (std::size_t c = 0; c <= predictor(j).forms.size(); ++c) {
       if (!has(part.actions[j], c)) continue;
       choice[j] = static_cast<std::uint16_t>(c);
-      enumerate_from(part, j + 1, terms + (c > 0 ? 1 : 0), columns + width(j, c), choice);
+      enumerate_from(part, j + 1, terms + (c > 0 ? 1 : 0), columns + plain_.width(j, c), choice);
     }
     choice[j] = 0;
   }
@@ -285,7 +209,7 @@ class Checker {
       for (std::size_t c = 0; c <= predictor(j).forms.size(); ++c) {
         if (!has(step.before.actions[j], c) || has(step.after.actions[j], c)) continue;
         Part part = step.before;
-        part.actions[j] = Actions{1} << c;
+        part.actions[j] = proof::Actions{1} << c;
         part.fewest_columns = step.after.fewest_columns;
         part.most_columns = step.after.most_columns;
         visit(part);
@@ -304,7 +228,8 @@ class Checker {
   }
 
   static bool empty_after(const Certificate::Step& step) {
-    return std::find(step.after.actions.begin(), step.after.actions.end(), Actions{0}) != step.after.actions.end() ||
+    return std::find(step.after.actions.begin(), step.after.actions.end(), proof::Actions{0}) !=
+               step.after.actions.end() ||
            step.after.fewest_columns > step.after.most_columns;
   }
 
@@ -315,11 +240,11 @@ class Checker {
       std::set<std::pair<std::size_t, std::size_t>> next;
       for (const auto& [t, k] : reachable)
         for (std::size_t c = 0; c <= predictor(j).forms.size(); ++c)
-          if (has(part.actions[j], c)) next.emplace(t + (c > 0 ? 1 : 0), k + width(j, c));
+          if (has(part.actions[j], c)) next.emplace(t + (c > 0 ? 1 : 0), k + plain_.width(j, c));
       reachable = std::move(next);
     }
     return std::any_of(reachable.begin(), reachable.end(), [&](const auto& at) {
-      return at.first >= fewest_terms_ && at.first <= most_terms_ && at.second >= part.fewest_columns &&
+      return at.first >= terms_.fewest && at.first <= terms_.most && at.second >= part.fewest_columns &&
              at.second <= part.most_columns;
     });
   }
@@ -338,9 +263,9 @@ class Checker {
   void check_inseparable(const Certificate::Step& step) {
     const auto check = [&](const Part& part) {
       std::vector<std::uint16_t> fixed;
-      for (const Actions actions : part.actions)
+      for (const proof::Actions actions : part.actions)
         fixed.push_back(std::has_single_bit(actions) ? static_cast<std::uint16_t>(std::countr_zero(actions)) : 0);
-      if (score_of(part.response, fixed) != kInfinity) blame("a form called inseparable is separable");
+      if (plain_.score_of(part.response, fixed) != kInfinity) blame("a form called inseparable is separable");
     };
     if (!removed_columns(step).empty()) blame("pivots take away numbers of columns");
     for_removed(step, check);
@@ -348,10 +273,10 @@ class Checker {
   }
 
   void check_bound(const Certificate::Step& step) {
-    const std::optional<Value> value = value_of(step);
-    if (!value) return;
+    const PlainBound bound = evaluate(plain_, step);
+    if (!bound.fault.empty()) return blame(bound.fault);
     const auto check = [&](const Part& part) {
-      if (!above(*value, part)) blame("a bound is not above the threshold");
+      if (!above(plain_, bound, part, terms_, threshold_)) blame("a bound is not above the threshold");
     };
     for (const Part& part : removed_columns(step)) check(part);
     for_removed(step, check);
@@ -362,145 +287,18 @@ class Checker {
     if (!possible(part)) return true;
     return std::any_of(steps_.rbegin(), steps_.rend(), [&](const Certificate::Step* step) {
       if (step->before.response != part.response) return false;
-      const std::optional<Value> value = value_of(*step);
-      return value && above(*value, part);
+      const PlainBound bound = evaluate(plain_, *step);
+      return bound.fault.empty() && above(plain_, bound, part, terms_, threshold_);
     });
   }
 
-  // ---- the bound
-
-  /// Projects the columns of the decided predictors out.
-  Matrix projected(const Part& part) const {
-    Matrix gram = gram_;
-    for (std::size_t j = 0; j < part.actions.size(); ++j) {
-      if (!std::has_single_bit(part.actions[j])) continue;
-      const auto choice = static_cast<std::size_t>(std::countr_zero(part.actions[j]));
-      for (std::size_t c = 0; c < width(j, choice); ++c) {
-        const auto at = static_cast<Eigen::Index>(predictor(j).forms[choice - 1].first_column + c);
-        eliminate(gram, {at}, 0.0L);
-      }
-    }
-    return gram;
-  }
-
-  static bool positive_definite(Matrix a) {
-    for (Eigen::Index c = 0; c < a.rows(); ++c) {
-      if (!(a(c, c) > 0.0L)) return false;
-      const Eigen::Index rest = a.rows() - c - 1;
-      const Vector column = a.col(c).tail(rest);
-      a.bottomRightCorner(rest, rest) -= column * column.transpose() / a(c, c);
-    }
-    return true;
-  }
-
-  /// gᵀD⁻¹g by elimination.
-  static Real gain(Matrix d, Vector g) {
-    Real sum = 0.0;
-    for (Eigen::Index c = 0; c < g.size(); ++c) {
-      sum += g(c) * g(c) / d(c, c);
-      const Eigen::Index rest = g.size() - c - 1;
-      const Vector column = d.col(c).tail(rest);
-      g.tail(rest) -= column * (g(c) / d(c, c));
-      d.bottomRightCorner(rest, rest) -= column * column.transpose() / d(c, c);
-    }
-    return sum;
-  }
-
-  std::optional<Value> value_of(const Certificate::Step& step) {
-    Part part = step.before;
-    part.actions = step.problem;
-    if (step.problem.size() != step.before.actions.size()) {
-      blame("a bound of another problem");
-      return std::nullopt;
-    }
-    for (std::size_t j = 0; j < step.problem.size(); ++j)
-      if ((step.before.actions[j] & ~step.problem[j]) != 0) blame("a bound of a problem without an action");
-    std::vector<Eigen::Index> open;
-    std::vector<std::size_t> owner;
-    for (std::size_t j = 0; j < part.actions.size(); ++j) {
-      if (std::has_single_bit(part.actions[j])) continue;
-      for (std::size_t c = 1; c <= predictor(j).forms.size(); ++c)
-        for (std::size_t i = 0; has(part.actions[j], c) && i < width(j, c); ++i) {
-          open.push_back(static_cast<Eigen::Index>(predictor(j).forms[c - 1].first_column + i));
-          owner.push_back(j);
-        }
-    }
-    const auto q = static_cast<Eigen::Index>(open.size());
-    if (step.d.rows() != q || step.d.cols() != q || step.v.size() != q) {
-      blame("a bound of another size");
-      return std::nullopt;
-    }
-    const Matrix gram = projected(part);
-    const Eigen::Index y = response_column(part.response);
-    const Matrix d = step.d.cast<Real>();
-    const Vector v = step.v.cast<Real>();
-    for (Eigen::Index a = 0; a < q; ++a)
-      for (Eigen::Index b = 0; b < q; ++b)
-        if (d(a, b) != d(b, a) ||
-            (owner[static_cast<std::size_t>(a)] != owner[static_cast<std::size_t>(b)] && d(a, b) != 0))
-          blame("D is not block-diagonal");
-    const Matrix z = Matrix(gram(open, open)) - d;
-    if (!positive_definite(z)) {
-      blame("M − D is not positive definite");
-      return std::nullopt;
-    }
-    const Vector g = Vector(gram(open, y)) - z * v;
-    Value value;
-    value.base = gram(y, y) - v.dot(z * v);
-    Eigen::Index at = 0;
-    for (std::size_t j = 0; j < part.actions.size(); ++j) {
-      std::vector<Choice> choices;
-      const bool decided = std::has_single_bit(part.actions[j]);
-      for (std::size_t c = 0; c <= predictor(j).forms.size(); ++c) {
-        if (!has(part.actions[j], c)) continue;
-        const auto w = static_cast<Eigen::Index>(width(j, c));
-        Choice choice{c, c > 0 ? std::size_t{1} : 0, width(j, c), 0.0L};
-        if (!decided && c > 0) {
-          const Matrix own = d.block(at, at, w, w);
-          if (!positive_definite(own)) {
-            blame("a block of D is not positive definite");
-            return std::nullopt;
-          }
-          choice.gain = gain(own, g.segment(at, w));
-          at += w;
-        }
-        choices.push_back(choice);
-      }
-      value.choices.push_back(std::move(choices));
-    }
-    return value;
-  }
-
-  /// Whether every candidate of a part of the problem that was evaluated has a bound above the threshold.
-  bool above(const Value& value, const Part& part) const {
-    std::map<std::pair<std::size_t, std::size_t>, Real> sums{{{0, 0}, 0.0L}};  // the largest by terms and columns
-    for (std::size_t j = 0; j < part.actions.size(); ++j) {
-      std::map<std::pair<std::size_t, std::size_t>, Real> next;
-      for (const auto& [at, sum] : sums)
-        for (const Choice& choice : value.choices[j]) {
-          if (!has(part.actions[j], choice.choice)) continue;
-          const auto [entry, added] =
-              next.try_emplace({at.first + choice.terms, at.second + choice.columns}, sum + choice.gain);
-          if (!added) entry->second = std::max(entry->second, sum + choice.gain);
-        }
-      sums = std::move(next);
-    }
-    for (const auto& [at, sum] : sums) {
-      if (at.first < fewest_terms_ || at.first > most_terms_) continue;
-      if (at.second < part.fewest_columns || at.second > part.most_columns) continue;
-      if (!(score(part.response, value.base - sum, at.second) > threshold_)) return false;
-    }
-    return true;
-  }
-
-  const proof::Problem& problem_;
+  PlainProblem plain_;
   const proof::Restriction& restriction_;
   const Certificate& certificate_;
   const proof::Proof& result_;
   std::size_t keep_;
   double within_, tolerance_;
-  Matrix gram_;
-  std::size_t fewest_terms_ = 0, most_terms_ = 0;
+  TermRange terms_;
   Real threshold_ = 0.0;
   std::set<std::pair<std::size_t, std::vector<std::uint16_t>>> listed_;
   std::map<std::uint64_t, const Certificate::Node*> nodes_;
