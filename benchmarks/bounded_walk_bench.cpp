@@ -62,11 +62,11 @@ void run(const Table& table, std::size_t keep, const Options& options) {
   proof::BoundedWalkOptions walk;
   walk.keep = keep;
   walk.threads = options.threads;
-  walk.seconds = options.seconds;
   walk.effort.superset = options.superset;
   if (options.leaf > 0.0) walk.effort.leaf_size = static_cast<std::uint64_t>(options.leaf);
   proof::BoundedWalk result;
   const auto measure = options.threads == 1 ? thread_seconds : clock_seconds;
+  walk.enough = after_seconds(options.seconds);
   const double seconds = measure([&] { result = proof::bounded_walk(table.space, grams, rows, walk); });
   std::vector<proof::VisitEstimate> estimates;
   const double estimate_seconds =

@@ -97,7 +97,7 @@ proof::Proof run(const Stage& stage, const std::string& name, double seconds, co
   proof::Limits limits;
   limits.keep = kKeep;
   limits.threads = 1;
-  limits.seconds = seconds;
+  limits.enough = after_seconds(seconds);
   proof::Proof result;
   const double taken = clock_seconds([&] { result = proof::prove(stage.root, {}, limits, {}, effort); });
   print_row(name, result.nodes, taken, outcome(result.proved, worst_of(result) - result.lower_bound));

@@ -30,6 +30,13 @@ double clock_seconds(const std::function<void()>& work) {
   return std::chrono::duration<double>(std::chrono::steady_clock::now() - start).count();
 }
 
+std::function<bool()> after_seconds(double seconds) {
+  const auto start = std::chrono::steady_clock::now();
+  return [start, seconds] {
+    return std::chrono::duration<double>(std::chrono::steady_clock::now() - start).count() >= seconds;
+  };
+}
+
 double best_thread_seconds(int repeats, const std::function<void()>& work) {
   double best = std::numeric_limits<double>::infinity();
   for (int i = 0; i < repeats; ++i) best = std::min(best, thread_seconds(work));

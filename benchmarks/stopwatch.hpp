@@ -11,6 +11,9 @@ double thread_seconds(const std::function<void()>& work);
 /// Seconds on the clock.
 double clock_seconds(const std::function<void()>& work);
 
+/// True from so many seconds after the call on: a limit for what asks.
+std::function<bool()> after_seconds(double seconds);
+
 /// The least of `repeats` measurements of thread_seconds.
 double best_thread_seconds(int repeats, const std::function<void()>& work);
 

@@ -1,5 +1,7 @@
 #include "superset_bound.hpp"
 
+#include "stopwatch.hpp"
+
 #include "proof/enumerate.hpp"
 #include "proof/reduced.hpp"
 #include "proof/scope.hpp"
@@ -8,7 +10,6 @@
 
 #include <algorithm>
 #include <bit>
-#include <chrono>
 #include <limits>
 #include <queue>
 #include <vector>
@@ -70,10 +71,10 @@ class Search {
       : root_(root), bound_(bound), threshold_(threshold), scope_(proof::scope_of(root, {})) {}
 
   SupersetProof run(double seconds) {
-    const auto begun = std::chrono::steady_clock::now();
+    const auto expired = after_seconds(seconds);
     open_.push({-kInfinity, root_.all_actions()});
     while (!open_.empty()) {
-      if (std::chrono::duration<double>(std::chrono::steady_clock::now() - begun).count() >= seconds) break;
+      if (expired()) break;
       Node node = open_.top();
       open_.pop();
       ++result_.nodes;

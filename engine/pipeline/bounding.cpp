@@ -73,15 +73,18 @@ Bounded bound_and_walk(const Prepared& prepared, const base::GramSet& grams, con
   options.stop = meter.token();
   const double start = meter.seconds();
   meter.begin("estimating what a bound leaves", 0.0, "");
-  const auto estimates = proof::estimate_visits(prepared.space, grams, held_out_rows(prepared), options, {}, hints);
+  proof::EstimateEffort effort;
+  effort.seconds = [&meter] { return meter.seconds(); };
+  const auto estimates = proof::estimate_visits(prepared.space, grams, held_out_rows(prepared), options, effort, hints);
   const double seconds = kSafety * seconds_of(estimates, limits.candidates_per_second);
-  options.seconds = limits.seconds - (meter.seconds() - start);
-  if (!(seconds <= options.seconds)) {
+  const double end = start + limits.seconds;
+  if (!(meter.seconds() + seconds <= end)) {
     result.words = "Not certain are " + list_words(limits.keep) + ": to visit what a bound leaves would take " +
                    (std::isfinite(seconds) ? "about " + duration_words(seconds / kSafety) : "too long");
     return result;
   }
   meter.begin("visiting what a bound leaves", kSteps, "thousandths");
+  options.enough = [&meter, end] { return meter.seconds() >= end; };
   double told = 0.0;
   options.progress = [&](double share) {
     const double done = std::floor(kSteps * share);

@@ -127,10 +127,13 @@ class Prover {
  private:
   double seconds() const { return std::chrono::duration<double>(Clock::now() - start_).count(); }
   double seconds_left() const { return end_ - seconds(); }
+  std::function<bool()> until(double end) const {
+    return [this, end] { return seconds() >= end; };
+  }
   std::function<void(const proof::Progress&)> news(const std::string& phase) const;
   proof::Proof run(proof::Restriction restriction, proof::Limits limits,
                    const std::vector<search::Choice>& hints) const;
-  void run(Task& task, double seconds, const proof::WarmStart& start) const;
+  void run(Task& task, double most_seconds, const proof::WarmStart& start) const;
   void run_open(std::vector<Task>& tasks, double share, const proof::WarmStart& start) const;
   std::vector<Task> choice_tasks(Proved& proved) const;
   std::vector<Task> terms_tasks(Proved& proved) const;
@@ -171,7 +174,7 @@ void Prover::prove_best(Proved& proved, std::vector<search::Choice> hints) {
   proof::Limits limits;
   limits.progress = news("proving");
   limits.keep = std::max(kFewestListed, plan_.rank.shortlist);
-  limits.seconds = kShareOfBest * limits_.seconds;
+  limits.enough = until(kShareOfBest * limits_.seconds);
   limits.threads = limits_.threads;
   proved.best = run({}, limits, hints);
   proved.nodes += proved.best.nodes;
@@ -185,7 +188,7 @@ void Prover::prove_near(Proved& proved) {
   limits.progress = news("near-best set");
   limits.keep = std::max(kMostNear, plan_.search.pool);
   limits.within = plan_.search.within;
-  limits.seconds = kShareOfNear * std::max(0.0, seconds_left());
+  limits.enough = until(seconds() + kShareOfNear * std::max(0.0, seconds_left()));
   limits.threads = limits_.threads;
   proved.near = run({}, limits, hints);
   proved.nodes += proved.near.nodes;
@@ -273,13 +276,13 @@ std::vector<Task> Prover::response_tasks(Proved& proved) const {
   return tasks;
 }
 
-void Prover::run(Task& task, double seconds, const proof::WarmStart& start) const {
-  if (seconds <= 0.0 || limits_.stop.stop_requested()) return;
+void Prover::run(Task& task, double most_seconds, const proof::WarmStart& start) const {
+  if (most_seconds <= 0.0 || limits_.stop.stop_requested()) return;
   proof::Limits limits;
   limits.keep = 1;
   limits.start = &start;
   limits.threads = 1;
-  limits.seconds = seconds;
+  limits.enough = until(seconds() + most_seconds);
   const proof::Proof one = run(task.restriction, limits, task.hints);
   Forced& forced = *task.result;
   if (!one.best.empty() && (!forced.best || one.best.front().score < forced.best->score))

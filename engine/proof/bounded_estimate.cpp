@@ -4,7 +4,6 @@
 #include "proof/leaf_work.hpp"
 
 #include <algorithm>
-#include <chrono>
 #include <cmath>
 #include <limits>
 #include <memory>
@@ -40,8 +39,9 @@ class Diver {
         scope_(scope_of_response(root, response)),
         frozen_(freeze(root, scope_, largest_rss, [&options] { return options.stop.stop_requested(); })),
         options_(options),
+        effort_(effort),
         random_(effort.seed) {
-    top_ = seen_of(work(root_of(scope_)));
+    top_ = seen_of(work(root_node(scope_, scope_.responses.front())));
   }
 
   Dive dive() { return dive_from(top_); }
@@ -53,6 +53,8 @@ class Diver {
   double in_leaves() const { return in_leaves_; }
 
  private:
+  double now() const { return effort_.seconds ? effort_.seconds() : 0.0; }
+
   LeafWork work(Node node) const { return work_on_leaves(frozen_, options_.effort, std::move(node)); }
 
   Seen seen_of(LeafWork found) {
@@ -70,14 +72,14 @@ class Diver {
 
   void work_on_children(Seen& at) {
     if (at.unworked.empty()) return;
-    const auto begun = std::chrono::steady_clock::now();
+    const double begun = now();
     std::vector<LeafWork> results(at.unworked.size());
     base::parallel_for(results.size(), options_.threads,
                        [&](std::size_t i) { results[i] = work(std::move(at.unworked[i])); });
     n_unworked_ -= results.size();
     at.unworked.clear();
     for (LeafWork& result : results) at.children.push_back(seen_of(std::move(result)));
-    seconds_ += std::chrono::duration<double>(std::chrono::steady_clock::now() - begun).count();
+    seconds_ += now() - begun;
   }
 
   Dive dive_from(Seen& at) {
@@ -108,6 +110,7 @@ class Diver {
   Scope scope_;
   Frozen frozen_;
   const BoundedWalkOptions& options_;
+  const EstimateEffort& effort_;
   std::mt19937_64 random_;
   Seen top_;
   std::uint64_t n_nodes_ = 0, n_unworked_ = 0;

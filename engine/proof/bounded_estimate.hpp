@@ -8,6 +8,7 @@
 
 #include <cstddef>
 #include <cstdint>
+#include <functional>
 #include <span>
 #include <vector>
 
@@ -18,7 +19,7 @@ struct VisitEstimate {
   double visits = 0.0;          ///< candidates to be walked
   double standard_error = 0.0;  ///< of it; 0 when the whole tree was seen
   double nodes = 0.0;           ///< of the tree
-  double node_seconds = 0.0;    ///< one node took, on the clock and on the threads of the options
+  double node_seconds = 0.0;    ///< one node took, by EstimateEffort::seconds and on the threads of the options
   std::size_t n_dives = 0;
 };
 
@@ -26,6 +27,7 @@ struct EstimateEffort {
   std::size_t dives = 100;     ///< at most
   std::uint64_t nodes = 1000;  ///< worked on at most, but for the first two dives
   std::uint64_t seed = 20261201;
+  std::function<double()> seconds;  ///< a clock; empty: nothing is timed
 };
 
 /// Dives into the tree of leaves (Knuth 1975, Estimating the efficiency of backtrack programs): at each node all

@@ -5,7 +5,6 @@
 #include <algorithm>
 #include <bit>
 #include <cassert>
-#include <chrono>
 #include <utility>
 
 namespace formsieve::proof {
@@ -21,23 +20,6 @@ search::Subspace subspace_of(std::size_t response, const Leaf& leaf) {
   }
   return subspace;
 }
-
-class Clock {
- public:
-  Clock(double seconds, std::stop_token stop)
-      : seconds_(seconds), stop_(std::move(stop)), begun_(std::chrono::steady_clock::now()) {}
-
-  bool expired() const {
-    if (stop_.stop_requested()) return true;
-    const std::chrono::duration<double> passed = std::chrono::steady_clock::now() - begun_;
-    return passed.count() >= seconds_;
-  }
-
- private:
-  double seconds_;
-  std::stop_token stop_;
-  std::chrono::steady_clock::time_point begun_;
-};
 
 /// The walk of one response form.
 class ResponseWalk {
@@ -130,8 +112,9 @@ Problem problem_of_leaves(const search::Space& space, const base::GramSet& grams
 BoundedWalk bounded_walk(const search::Space& space, const base::GramSet& grams, const HeldOutRows& rows,
                          const BoundedWalkOptions& options, std::span<const search::Choice> hints) {
   assert(space.n_responses == grams.n_responses);
-  const Clock clock(options.seconds, options.stop);
-  const std::function<bool()> expired = [&] { return clock.expired(); };
+  const std::function<bool()> expired = [&] {
+    return options.stop.stop_requested() || (options.enough && options.enough());
+  };
   const Problem problem = problem_of_leaves(space, grams);
   const RootGram root(problem);
   const search::BigCount total = search::count(space);

@@ -17,7 +17,6 @@
 #include <cstddef>
 #include <cstdint>
 #include <functional>
-#include <limits>
 #include <span>
 #include <stop_token>
 #include <vector>
@@ -26,9 +25,9 @@ namespace formsieve::proof {
 
 struct BoundedWalkOptions {
   std::size_t keep = 100;  ///< candidates listed for each response form
-  double seconds = std::numeric_limits<double>::infinity();
-  unsigned threads = 0;  ///< 0: all that the process may use
+  unsigned threads = 0;    ///< 0: all that the process may use
   std::stop_token stop;
+  std::function<bool()> enough;  ///< as proof::Limits::enough
   /// Share of the candidates of all response forms that are done with: visited or cut. Called between batches; may be
   /// empty.
   std::function<void(double share)> progress;

@@ -3,6 +3,8 @@
 #include "proof/block_sweep.hpp"
 #include "proof/coordinate_descent.hpp"
 #include "proof/first_blocks.hpp"
+#include "proof/pace.hpp"
+#include "proof/starting_point.hpp"
 
 #include <algorithm>
 #include <cmath>
@@ -15,25 +17,6 @@ namespace {
 constexpr double kInfinity = std::numeric_limits<double>::infinity();
 /// The unit λ as a share of the RSS at the threshold: descent stops at 1e-4 of it, the barrier costs a tenth of it.
 constexpr double kUnit_rel = 0.01;
-/// The barrier's weight μ in units of λ over the number of columns: at a root, then.
-constexpr double kFirstBarrier = 1.0;
-constexpr double kLastBarrier = 0.1;
-constexpr double kBarrierStep = 0.3;
-/// A pass that closes less than this share of the gap that remains counts as idle; so many idle ones end it.
-constexpr double kSmallGain_root = 0.01;
-constexpr double kSmallGain_node = 0.03;
-constexpr std::size_t kMostIdle = 2;
-constexpr std::size_t kRootDescent = 200;
-constexpr std::size_t kNodeDescent = 60;
-
-/// D is inherited and valid but for rounding: a little less of it may be provably so.
-bool shrink_until_certified(const Reduced& problem, Eigen::MatrixXd& d, CertifiedDifference& z) {
-  constexpr int kTrials = 60;
-  constexpr double kShrink = 0.9;
-  for (int trial = 0; trial < kTrials; ++trial, d *= kShrink)
-    if (z.certify(problem, d)) return true;
-  return false;
-}
 
 class RssBound {
  public:
@@ -44,6 +27,7 @@ class RssBound {
         node_(node),
         steered_(problem),
         sweep_(steered_),
+        pace_(node.inherited == nullptr, node.inherited != nullptr, 0.0),
         evaluator_(*frozen.root, problem, range_of(frozen, node)) {
     const double log_rss = frozen.root->log_rss(node.response, frozen.threshold, 0);
     unit_ = kUnit_rel * std::exp(std::clamp(log_rss, std::log(kExactFit_rel), 0.0));
@@ -55,18 +39,21 @@ class RssBound {
   Refined run() {
     if (effort_.superset) return superset();
     if (!begin()) return {};
-    const std::size_t most = root_ ? effort_.root_sweeps : effort_.node_sweeps;
+    const std::size_t most = pace_.root() ? effort_.root_sweeps : effort_.node_sweeps;
     for (std::size_t pass = 0;; ++pass) {
       const Narrowed narrowed = evaluate();
       if (narrowed.cut) return {Standing::cut, {}};
       if (narrowed.n_struck > 0) return leave(Standing::changed);
       if (frozen_.expired && frozen_.expired()) return leave(Standing::expired);
-      if (pass >= most || finished()) break;
-      const double mu = barrier_ * unit_ / static_cast<double>(problem_.m.rows());
+      if (pass >= most || pace_.finished()) break;
+      const double mu = pace_.barrier() * unit_ / static_cast<double>(problem_.m.rows());
       const BlockSweep::Outcome outcome = sweep_(point_.v, point_.lambda, mu, point_.d, z_);
       if (outcome == BlockSweep::Outcome::stuck) break;
       // children must not inherit the badly conditioned D
-      if (outcome == BlockSweep::Outcome::reconditioned) best_lower_ = reference_ = -kInfinity;
+      if (outcome == BlockSweep::Outcome::reconditioned) {
+        best_lower_ = -kInfinity;
+        pace_.forget();
+      }
     }
     return leave(Standing::open);
   }
@@ -75,7 +62,6 @@ class RssBound {
   /// The RSS with every form that is left, as near as a tiny D brings it.
   Refined superset() {
     constexpr double kTiny = 1e-7;
-    root_ = false;
     point_.d = kTiny * Eigen::MatrixXd(problem_.m.diagonal().cwiseMax(kTiny).asDiagonal());
     if (!z_.certify(problem_, point_.d)) return {};
     point_.v = z_.solve(problem_.b);
@@ -84,8 +70,6 @@ class RssBound {
   }
 
   bool begin() {
-    root_ = !node_.inherited;
-    barrier_ = root_ ? kFirstBarrier : kLastBarrier;
     if (node_.inherited) {
       point_ = unpack(*node_.inherited, problem_);
       point_.lambda = std::max(point_.lambda, unit_);
@@ -97,7 +81,7 @@ class RssBound {
   }
 
   Narrowed evaluate() {
-    coordinate_descent(steered_, z_.z(), point_.d, point_.lambda, root_ ? kRootDescent : kNodeDescent, point_.v);
+    coordinate_descent(steered_, z_.z(), point_.d, point_.lambda, pace_.descent(), point_.v);
     const DualValue value = dual_value(problem_, z_, point_.d, point_.v);
     set_price(value.gains);
     return narrow_by(evaluator_(value, frozen_.threshold));
@@ -106,11 +90,7 @@ class RssBound {
   Narrowed narrow_by(Bound bound) {
     Account account{0.0, nullptr};
     const Narrowed narrowed = narrow(frozen_, problem_, bound, point_.d, point_.v, node_, account);
-    const double gap = frozen_.threshold - reference_;
-    const double share = root_ ? kSmallGain_root : kSmallGain_node;
-    const bool gained = !std::isfinite(reference_) || bound.lower > reference_ + share * gap;
-    idle_ = gained ? 0 : idle_ + 1;
-    if (gained) reference_ = bound.lower;
+    pace_.note(bound.lower, frozen_.threshold);
     if (best_.action.empty() || bound.lower >= best_lower_) {
       best_lower_ = bound.lower;
       best_point_ = point_;
@@ -129,14 +109,6 @@ class RssBound {
     point_.lambda = std::max(unit_, 0.5 * (largest[n_picks_ - 1] + largest[n_picks_]));
   }
 
-  bool finished() {
-    if (root_ && idle_ >= kMostIdle && barrier_ > kLastBarrier * 1.01) {
-      barrier_ = std::max(kLastBarrier, barrier_ * kBarrierStep);
-      idle_ = 0;
-    }
-    return idle_ >= kMostIdle;
-  }
-
   Refined leave(Standing standing) {
     const DualPoint& point = standing == Standing::open ? best_point_ : point_;
     node_.inherited = std::make_shared<const Inherited>(pack(problem_, point, point.v));
@@ -149,15 +121,14 @@ class RssBound {
   Node& node_;
   Reduced steered_;  ///< the problem as v and D are steered
   BlockSweep sweep_;
+  SweepPace pace_;
   BoundEvaluator evaluator_;
   CertifiedDifference z_;
   DualPoint point_, best_point_;
   Bound best_;
-  bool root_ = false;
-  double unit_ = 0.0, barrier_ = kLastBarrier;
+  double unit_ = 0.0;
   std::size_t n_picks_ = 0;  ///< open predictors that a candidate may still have
-  double best_lower_ = -kInfinity, reference_ = -kInfinity;
-  std::size_t idle_ = 0;
+  double best_lower_ = -kInfinity;
 };
 
 }  // namespace

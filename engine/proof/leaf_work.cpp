@@ -1,5 +1,6 @@
 #include "proof/leaf_work.hpp"
 
+#include "proof/branching.hpp"
 #include "proof/leaf_bound.hpp"
 #include "proof/settle.hpp"
 
@@ -14,10 +15,6 @@ namespace {
 /// How fast an action's weight falls with its bound's distance from the node's, in units of the gap: the predictor
 /// branched on has the smallest mean weight.
 constexpr double kBranchDecay = 4.0;
-
-Actions bit_of(const OpenPredictor& predictor, std::size_t action) {
-  return action == predictor.forms.size() ? Actions{1} : Actions{2} << predictor.forms[action].form;
-}
 
 Leaf leaf_of(const Frozen& frozen, const Node& node) {
   return {node.actions, node.lower, count_candidates(frozen.root->space(), node.actions)};
@@ -43,37 +40,10 @@ std::size_t branching_predictor(const Frozen& frozen, const Reduced& problem, co
   return chosen;
 }
 
-/// Without bounds of actions: the predictor without which the RSS falls least by the others' forms is not known; the
-/// one with the form that lowers the RSS most stands in.
-std::size_t strongest_predictor(const Reduced& problem) {
-  std::size_t chosen = 0;
-  double most = -1.0;
-  for (std::size_t j = 0; j < problem.open.size(); ++j) {
-    for (const OpenForm& form : problem.open[j].forms) {
-      const double diagonal = problem.m(form.first, form.first);
-      const double gain = diagonal > 0.0 ? std::pow(problem.b(form.first), 2) / diagonal : 0.0;
-      if (gain <= most) continue;
-      most = gain;
-      chosen = j;
-    }
-  }
-  return chosen;
-}
-
 std::vector<Node> branch(const Frozen& frozen, const Reduced& problem, const Node& node, const Bound& bound) {
   const bool bounded = !bound.action.empty();
   const std::size_t j = bounded ? branching_predictor(frozen, problem, node, bound) : strongest_predictor(problem);
-  const OpenPredictor& predictor = problem.open[j];
-  std::vector<Node> children;
-  for (std::size_t a = 0; a <= predictor.forms.size(); ++a) {
-    const Actions bit = bit_of(predictor, a);
-    if ((node.actions[predictor.predictor] & bit) == 0) continue;
-    Node child = node;
-    child.actions[predictor.predictor] = bit;
-    if (bounded) child.lower = std::max(child.lower, bound.action[j][a]);
-    ++child.depth;
-    children.push_back(std::move(child));
-  }
+  std::vector<Node> children = children_of(problem, node, j, bound);
   // the most promising is worked on first: the last
   std::stable_sort(children.begin(), children.end(), [](const Node& a, const Node& b) { return a.lower > b.lower; });
   return children;
@@ -131,14 +101,6 @@ Scope scope_of_response(const RootGram& root, std::size_t response) {
   Restriction restriction;
   restriction.response = response;
   return scope_of(root, restriction);
-}
-
-Node root_of(const Scope& scope) {
-  Node node;
-  node.response = scope.responses.front();
-  node.most_columns = scope.most_columns;
-  node.actions = scope.actions;
-  return node;
 }
 
 Frozen freeze(const RootGram& root, const Scope& scope, double largest_rss, const std::function<bool()>& expired) {

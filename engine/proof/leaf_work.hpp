@@ -24,7 +24,6 @@ LeafWork work_on_leaves(const Frozen& frozen, const LeafEffort& effort, Node nod
 
 /// All candidates of a response form.
 Scope scope_of_response(const RootGram& root, std::size_t response);
-Node root_of(const Scope& scope);
 /// What nodes go by when candidates with an RSS above `largest_rss` need not be in any leaf.
 Frozen freeze(const RootGram& root, const Scope& scope, double largest_rss, const std::function<bool()>& expired);
 

@@ -38,7 +38,7 @@ search::BigCount count_candidates(const search::Space& space, std::span<const Ac
 
 LeafTree::LeafTree(const RootGram& root, std::size_t response, const LeafEffort& effort)
     : root_(&root), effort_(effort), scope_(scope_of_response(root, response)) {
-  open_.push_back(root_of(scope_));
+  open_.push_back(root_node(scope_, response));
 }
 LeafTree::~LeafTree() = default;
 LeafTree::LeafTree(LeafTree&&) noexcept = default;

@@ -22,8 +22,7 @@ Narrowed apply(const Frozen& frozen, const Reduced& problem, const Bound& bound,
     const OpenPredictor& predictor = problem.open[j];
     Actions& actions = node.actions[predictor.predictor];
     for (std::size_t a = 0; a < bound.action[j].size(); ++a) {
-      const bool absence = a == predictor.forms.size();
-      const Actions bit = absence ? Actions{1} : Actions{2} << predictor.forms[a].form;
+      const Actions bit = bit_of(predictor, a);
       if ((actions & bit) == 0 || !(bound.action[j][a] > limit)) continue;
       actions &= ~bit;
       ++narrowed.n_struck;

@@ -1,6 +1,7 @@
 #include "proof/coordinate_descent.hpp"
 #include "proof/first_blocks.hpp"
 #include "proof/newton.hpp"
+#include "proof/pace.hpp"
 #include "proof/refinement.hpp"
 #include "proof/starting_point.hpp"
 
@@ -13,7 +14,6 @@ namespace formsieve::proof {
 
 namespace {
 
-constexpr double kInfinity = std::numeric_limits<double>::infinity();
 /// μ in units of λ over the number of columns: at a root, after the range of columns was cut, and the last; and the
 /// factor between.
 constexpr double kFirstBarrier = 1000.0;
@@ -37,14 +37,11 @@ constexpr std::size_t kPasses_node = 8;
 constexpr int kSteps_root = 3;
 constexpr int kSteps_node = 1;
 constexpr double kSmallGain = 0.03;
-constexpr std::size_t kMostIdle = 2;
 constexpr double kSmallestGap = 0.05;  ///< of a score
 /// The problem is built anew, smaller, once more than this share of the actions was struck off.
 constexpr double kRebuild_at_once = 0.15;
 constexpr double kRebuild_at_once_root = 0.07;  ///< its steps are the dearest, and many
 constexpr double kRebuild_at_end = 0.05;
-constexpr std::size_t kRootDescent = 200;
-constexpr std::size_t kNodeDescent = 60;
 
 class NewtonRefinement {
  public:
@@ -58,7 +55,7 @@ class NewtonRefinement {
       if (struck_share() > (root_ ? kRebuild_at_once_root : kRebuild_at_once)) return leave(Standing::changed);
       if (frozen_.expired && frozen_.expired()) return leave(Standing::expired);
       const bool last_barrier = point_.mu <= last_barrier_ * 1.001;
-      if (pass >= (thorough_ ? kPasses_root : kPasses_node) || (idle_ >= kMostIdle && last_barrier)) break;
+      if (pass >= (thorough_ ? kPasses_root : kPasses_node) || (idleness_.enough() && last_barrier)) break;
       if (!steps()) break;
     }
     const bool rebuild = struck_share() > kRebuild_at_end || (n_struck_ > 0 && problem_.open.size() <= 3);
@@ -110,16 +107,9 @@ class NewtonRefinement {
     if (narrowed.cut) return true;
     n_struck_ += narrowed.n_struck;
     if (node_.fewest_columns != fewest || node_.most_columns != most) newton_.reset();
-    note_gain(bound.lower);
+    idleness_.note(bound.lower, frozen_.threshold);
     if (best_.action.empty() || bound.lower >= best_.lower) best_ = std::move(bound);
     return false;
-  }
-
-  void note_gain(double lower) {
-    const double gap = std::max(frozen_.threshold - reference_, kSmallestGap);
-    const bool gained = !std::isfinite(reference_) || (std::isfinite(gap) && lower > reference_ + kSmallGain * gap);
-    idle_ = gained ? 0 : idle_ + 1;
-    if (gained) reference_ = lower;
   }
 
   /// False: the method can do no more here.
@@ -187,8 +177,9 @@ class NewtonRefinement {
   std::optional<Newton> newton_;
   Bound best_;
   bool root_ = false, thorough_ = false;
-  double last_barrier_ = 0.0, reference_ = -kInfinity;
-  std::size_t n_actions_ = 0, n_struck_ = 0, idle_ = 0;
+  double last_barrier_ = 0.0;
+  Idleness idleness_{kSmallGain, kSmallestGap};
+  std::size_t n_actions_ = 0, n_struck_ = 0;
   int steps_at_mu_ = 0;
 };
 

@@ -1,5 +1,6 @@
 #include "proof/node_work.hpp"
 
+#include "proof/branching.hpp"
 #include "proof/column_price.hpp"
 #include "proof/refinement.hpp"
 #include "proof/settle.hpp"
@@ -17,10 +18,6 @@ constexpr std::size_t kMostParts = 8;
 /// branched on has the smallest sum of weights. So slow that the number of actions counts most (proof_bench: at 4 hard
 /// spaces take up to twice the nodes).
 constexpr double kBranchDecay = 0.5;
-
-Actions bit_of(const OpenPredictor& predictor, std::size_t action) {
-  return action == predictor.forms.size() ? Actions{1} : Actions{2} << predictor.forms[action].form;
-}
 
 /// The candidate of the actions with the lowest bounds.
 search::Choice round_off(const Reduced& problem, const Bound& bound) {
@@ -76,44 +73,13 @@ std::size_t branching_predictor(const Frozen& frozen, const Reduced& problem, co
   return chosen;
 }
 
-/// Without a bound: the predictor with the form that lowers the RSS most.
-std::size_t strongest_predictor(const Reduced& problem) {
-  std::size_t chosen = 0;
-  double most = -1.0;
-  for (std::size_t j = 0; j < problem.open.size(); ++j) {
-    for (const OpenForm& form : problem.open[j].forms) {
-      const double diagonal = problem.m(form.first, form.first);
-      const double gain = diagonal > 0.0 ? std::pow(problem.b(form.first), 2) / diagonal : 0.0;
-      if (gain <= most) continue;
-      most = gain;
-      chosen = j;
-    }
-  }
-  return chosen;
-}
-
 std::vector<Node> branch(const Frozen& frozen, const Reduced& problem, const Node& node, const Bound& bound) {
   const bool bounded = !bound.action.empty();
   if (bounded)
     if (std::vector<Node> parts = split_columns(frozen, node); !parts.empty()) return parts;
   const std::size_t j = bounded ? branching_predictor(frozen, problem, node, bound) : strongest_predictor(problem);
-  const OpenPredictor& predictor = problem.open[j];
-  std::vector<Node> children;
-  for (std::size_t a = 0; a <= predictor.forms.size(); ++a) {
-    const Actions bit = bit_of(predictor, a);
-    if ((node.actions[predictor.predictor] & bit) == 0) continue;
-    Node child = node;
-    child.actions[predictor.predictor] = bit;
-    if (bounded) child.lower = std::max(child.lower, bound.action[j][a]);
-    ++child.depth;
-    children.push_back(std::move(child));
-  }
-  return children;
+  return children_of(problem, node, j, bound);
 }
-
-}  // namespace
-
-namespace {
 
 /// The steps that the numbers of columns and terms, or pivots, decide, recorded as those of bounds are.
 class Worker {

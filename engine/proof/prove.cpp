@@ -10,7 +10,6 @@
 #include "proof/warm_start.hpp"
 
 #include <algorithm>
-#include <chrono>
 #include <cmath>
 
 namespace formsieve::proof {
@@ -33,7 +32,6 @@ class Tree {
         scope_(scope_of(root, restriction)),
         limits_(limits),
         effort_(effort),
-        begun_(std::chrono::steady_clock::now()),
         list_(limits.keep, limits.within),
         incumbents_(root, scope_, list_, [this] { return expired(); }) {}
 
@@ -53,12 +51,7 @@ class Tree {
   }
 
  private:
-  bool expired() const {
-    if (limits_.stop.stop_requested()) return true;
-    if (!std::isfinite(limits_.seconds)) return false;
-    const std::chrono::duration<double> passed = std::chrono::steady_clock::now() - begun_;
-    return passed.count() >= limits_.seconds;
-  }
+  bool expired() const { return limits_.stop.stop_requested() || (limits_.enough && limits_.enough()); }
 
   void begin() {
     if (limits_.certificate) *limits_.certificate = {};
@@ -181,7 +174,6 @@ class Tree {
   Scope scope_;
   const Limits& limits_;
   Effort effort_;
-  std::chrono::steady_clock::time_point begun_;
   Shortlist list_;
   Incumbents incumbents_;
   OpenNodes open_;

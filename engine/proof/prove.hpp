@@ -38,10 +38,12 @@ struct Limits {
   std::size_t keep = 100;  ///< candidates listed at most
   /// Candidates whose score lies further above the best are not listed.
   double within = std::numeric_limits<double>::infinity();
-  double seconds = std::numeric_limits<double>::infinity();
   std::uint64_t nodes = std::numeric_limits<std::uint64_t>::max();
   unsigned threads = 0;  ///< 0: all that the process may use
   std::stop_token stop;
+  /// Asked between evaluations of bounds, from several threads; true ends the proof. A limit of time belongs here. May
+  /// be empty.
+  std::function<bool()> enough;
   std::function<void(const Progress&)> progress;  ///< called between batches; may be empty
   /// Where the roots begin; may be null. What is proved does not depend on it, only how soon.
   const WarmStart* start = nullptr;

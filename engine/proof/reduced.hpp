@@ -28,6 +28,11 @@ struct OpenPredictor {
   std::vector<OpenForm> forms;
 };
 
+/// The action of an open predictor: its open forms in order, then absence.
+inline Actions bit_of(const OpenPredictor& predictor, std::size_t action) {
+  return action == predictor.forms.size() ? Actions{1} : Actions{2} << predictor.forms[action].form;
+}
+
 /// The open columns after the fixed ones were eliminated. With c the coefficients of the open columns,
 ///     RSS_rel = yy − 2 bᵀc + cᵀMc.
 /// Always built from the root by one Cholesky factorisation of the fixed columns: errors do not grow with depth.

@@ -28,7 +28,8 @@ void fit_best(const Frozen& frozen, const Reduced& problem, Eigen::VectorXd& v) 
   fit_columns(problem, columns, v);
 }
 
-/// D is inherited and valid but for rounding: a little less of it may be provably so.
+}  // namespace
+
 bool shrink_until_certified(const Reduced& problem, Eigen::MatrixXd& d, CertifiedDifference& z) {
   constexpr int kTrials = 60;
   constexpr double kShrink = 0.9;
@@ -36,8 +37,6 @@ bool shrink_until_certified(const Reduced& problem, Eigen::MatrixXd& d, Certifie
     if (z.certify(problem, d)) return true;
   return false;
 }
-
-}  // namespace
 
 bool starting_point(const Frozen& frozen, const Reduced& problem, const Node& node, const ColumnPrice& price,
                     DualPoint& point, CertifiedDifference& z, double& work) {

@@ -32,7 +32,7 @@ struct Example {
   }
 };
 
-constexpr proof::EstimateEffort kAll{100'000, 100'000, 1};
+const proof::EstimateEffort kAll{100'000, 100'000, 1, {}};
 
 }  // namespace
 
@@ -62,7 +62,7 @@ TEST_CASE("proof: dives are right on average and say how far they may be off", "
   double variance = 0.0;
   constexpr int kRuns = 150;
   for (int run = 0; run < kRuns; ++run) {
-    const auto estimate = example.estimate({2, 1, static_cast<std::uint64_t>(run)})[0];
+    const auto estimate = example.estimate({2, 1, static_cast<std::uint64_t>(run), {}})[0];
     REQUIRE(estimate.n_dives == 2);
     sum += estimate.visits / kRuns;
     sum_nodes += estimate.nodes / kRuns;
@@ -78,9 +78,9 @@ TEST_CASE("proof: dives are right on average and say how far they may be off", "
 
 TEST_CASE("proof: the estimate is the same for any number of threads", "[proof][unit][parallel]") {
   Example example;
-  const auto one = example.estimate({5, 1000, 3});
+  const auto one = example.estimate({5, 1000, 3, {}});
   example.options.threads = 4;
-  const auto four = example.estimate({5, 1000, 3});
+  const auto four = example.estimate({5, 1000, 3, {}});
   CHECK(one[0].visits == four[0].visits);
   CHECK(one[0].standard_error == four[0].standard_error);
 }

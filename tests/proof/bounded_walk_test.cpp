@@ -247,7 +247,7 @@ TEST_CASE("proof: a bounded walk keeps to its time", "[proof][unit]") {
   const test::Problem problem = strong_problem(22, 7);
   const base::GramSet grams = test::grams_of(problem);
   proof::BoundedWalkOptions options = tiny_leaves(10, 1);
-  options.seconds = 0.0;
+  options.enough = [] { return true; };
   const auto result = proof::bounded_walk(problem.space, grams, rows_of(problem), options);
   CHECK(!result.complete);
   check_counts(problem, result);
