@@ -96,11 +96,6 @@ std::unique_ptr<Stage> make_stage(const Prepared& prepared, judge::Criterion cri
   return stage;
 }
 
-std::size_t n_terms(const search::Choice& choice) {
-  return static_cast<std::size_t>(
-      std::count_if(choice.choice.begin(), choice.choice.end(), [](std::uint16_t c) { return c != 0; }));
-}
-
 /// One proof of the profile.
 struct Task {
   proof::Restriction restriction;
@@ -216,7 +211,8 @@ std::vector<search::Choice> Prover::forced_hints(const Proved& proved, std::size
   for (std::size_t i = 0; i < std::min(kHints, proved.best.best.size()); ++i) {
     search::Choice hint = proved.best.best[i].choice;
     hint.choice[predictor] = choice;
-    if (n_terms(hint) <= stage_.space.max_terms.value_or(hint.choice.size())) hints.push_back(std::move(hint));
+    if (search::n_terms(hint.choice) <= stage_.space.max_terms.value_or(hint.choice.size()))
+      hints.push_back(std::move(hint));
   }
   return hints;
 }
@@ -243,14 +239,15 @@ std::vector<Task> Prover::choice_tasks(Proved& proved) const {
 
 std::vector<Task> Prover::terms_tasks(Proved& proved) const {
   std::size_t most = 0, fewest = 0;
-  for (const auto& listed : proved.near.best) most = std::max(most, n_terms(listed.choice));
+  for (const auto& listed : proved.near.best) most = std::max(most, search::n_terms(listed.choice.choice));
   for (const auto& predictor : stage_.space.predictors) fewest += predictor.always ? 1 : 0;
   most = std::min({most + kTermsBeyond, stage_.space.predictors.size(),
                    stage_.space.max_terms.value_or(stage_.space.predictors.size())});
   std::vector<Task> tasks;
   proved.by_terms.assign(most + 1, {{}, -kInfinity, false});
   for (std::size_t k = fewest; k <= most; ++k) {
-    if (settle(proved, proved.by_terms[k], [&](const search::Choice& choice) { return n_terms(choice) == k; }))
+    if (settle(proved, proved.by_terms[k],
+               [&](const search::Choice& choice) { return search::n_terms(choice.choice) == k; }))
       continue;
     Task task{{}, {}, &proved.by_terms[k]};
     task.restriction.fewest_terms = task.restriction.most_terms = k;

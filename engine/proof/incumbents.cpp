@@ -27,10 +27,6 @@ constexpr std::size_t kLargestStart = 120;
 /// Candidates remembered as looked at or descended from.
 constexpr std::size_t kMostRemembered = 200'000;
 
-std::size_t n_terms(const std::vector<std::uint16_t>& choice) {
-  return static_cast<std::size_t>(std::count_if(choice.begin(), choice.end(), [](std::uint16_t c) { return c != 0; }));
-}
-
 }  // namespace
 
 Incumbents::Incumbents(const RootGram& root, const Scope& scope, Shortlist& list, std::function<bool()> expired)
@@ -125,11 +121,11 @@ void Incumbents::start() {
       }
       large.choice.push_back(strongest);
     }
-    for (std::size_t j = 0; j < large.choice.size() && n_terms(smallest.choice) < scope_->fewest_terms; ++j)
+    for (std::size_t j = 0; j < large.choice.size() && search::n_terms(smallest.choice) < scope_->fewest_terms; ++j)
       smallest.choice[j] = large.choice[j];
     for (search::Choice& begin : std::array{smallest, large}) {
       offer(begin);
-      const std::size_t terms = n_terms(begin.choice);
+      const std::size_t terms = search::n_terms(begin.choice);
       if (terms <= scope_->most_terms && terms <= kLargestStart) descend(begin);
     }
   }

@@ -102,8 +102,7 @@ void SingleChanges::visit_predictor(const search::Choice& from, std::size_t j, s
 
 bool SingleChanges::operator()(const search::Choice& from, const Visit& visit) {
   if (!prepare(from)) return false;
-  const auto terms = static_cast<std::size_t>(
-      std::count_if(from.choice.begin(), from.choice.end(), [](std::uint16_t c) { return c != 0; }));
+  const std::size_t terms = search::n_terms(from.choice);
   for (std::size_t j = 0; j < from.choice.size(); ++j) visit_predictor(from, j, terms, visit);
   return true;
 }

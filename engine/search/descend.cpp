@@ -20,27 +20,6 @@ using Choices = std::vector<std::uint16_t>;
 /// Smaller score first, then smaller candidate number.
 using Ranked = std::pair<double, Choices>;
 
-std::size_t n_terms(const Choices& choice) {
-  return static_cast<std::size_t>(std::count_if(choice.begin(), choice.end(), [](std::uint16_t c) { return c != 0; }));
-}
-
-/// All candidates that differ from one in the choice of a single predictor, in the order of predictors and choices.
-std::vector<Choices> single_changes(const Space& space, const Choices& from) {
-  const std::size_t most_terms = space.max_terms.value_or(space.predictors.size());
-  const std::size_t terms = n_terms(from);
-  std::vector<Choices> changes;
-  for (std::size_t j = 0; j < from.size(); ++j) {
-    const PredictorChoices& predictor = space.predictors[j];
-    if (from[j] == 0 && terms >= most_terms) continue;
-    for (std::size_t c = predictor.always ? 1 : 0; c <= predictor.forms.size(); ++c) {
-      if (c == from[j]) continue;
-      changes.push_back(from);
-      changes.back()[j] = static_cast<std::uint16_t>(c);
-    }
-  }
-  return changes;
-}
-
 /// Every candidate looked at, each scored once.
 class Scores {
  public:
@@ -90,15 +69,29 @@ class Scores {
 
 }  // namespace
 
+std::vector<Choices> single_changes(const Space& space, const Choices& from) {
+  const std::size_t most_terms = space.max_terms.value_or(space.predictors.size());
+  const std::size_t terms = n_terms(from);
+  std::vector<Choices> changes;
+  for (std::size_t j = 0; j < from.size(); ++j) {
+    const PredictorChoices& predictor = space.predictors[j];
+    if (from[j] == 0 && terms >= most_terms) continue;
+    for (std::size_t c = predictor.always ? 1 : 0; c <= predictor.forms.size(); ++c) {
+      if (c == from[j]) continue;
+      changes.push_back(from);
+      changes.back()[j] = static_cast<std::uint16_t>(c);
+    }
+  }
+  return changes;
+}
+
 std::vector<Choice> descend(const Space& space, const base::GramSet& grams, std::size_t response,
                             const DescentOptions& options) {
-  Choices start;
-  for (const PredictorChoices& predictor : space.predictors)
-    start.push_back(predictor.always ? std::uint16_t{1} : std::uint16_t{0});
-  if (n_terms(start) > space.max_terms.value_or(space.predictors.size())) return {};
+  const Choices start = options.from.empty() ? least_choice(space) : options.from;
+  if (!admits(space, start)) return {};
   Scores scores(space, grams, response, options.threads);
   Ranked at{scores.best({start}).first, start};
-  for (std::size_t move = 0; move < options.most_moves; ++move) {
+  for (std::size_t move = 0; move < options.most_moves && !options.stop.stop_requested(); ++move) {
     Ranked next = scores.best(single_changes(space, at.second));
     if (!(next.first < at.first)) break;
     at = std::move(next);

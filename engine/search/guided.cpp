@@ -98,7 +98,7 @@ GuidedSearch::GuidedSearch(const Space& space, const base::GramSet& grams, const
   tally_ = Tally(setup_.objectives.size());
   for (const Choice& hint : options.hints)
     for (std::size_t o = 0; o < setup_.objectives.size(); ++o)
-      if (setup_.objectives[o].response() == hint.response && space_.admits(hint.choice))
+      if (setup_.objectives[o].response() == hint.response && admits(space, hint.choice))
         hints_.push_back({o, hint.choice, false, 0, false});
 }
 
@@ -118,7 +118,7 @@ Task GuidedSearch::start(std::size_t index) const {
   task.objective = index % setup_.objectives.size();
   const auto good = tally_.best_endings(task.objective, kGoodEndings);
   if (turn == 0) {
-    task.choices = least_start(space_);
+    task.choices = least_choice(space_.space());
   } else if (turn % 2 == 1 || good.empty()) {
     task.choices = random_start(space_, std::max(kFewestStartTerms, kStartTerms * tally_.most_terms()), random);
   } else {

@@ -24,12 +24,11 @@ void Scout::look_in_place(std::size_t objective, const Choices& candidate, std::
 }
 
 void Scout::look_for_more(std::size_t objective, const Choices& candidate) {
-  if (GuidedSpace::n_terms(candidate) < space_.most_terms())
-    consider(objective, look(objective).extend(candidate), std::nullopt);
+  if (n_terms(candidate) < space_.most_terms()) consider(objective, look(objective).extend(candidate), std::nullopt);
 }
 
 void Scout::look_around(std::size_t objective, const Choices& candidate) {
-  const bool more = GuidedSpace::n_terms(candidate) < space_.most_terms();
+  const bool more = n_terms(candidate) < space_.most_terms();
   for (const Extensions& extensions : look(objective).around(candidate)) {
     std::optional<std::size_t> slot;
     for (std::size_t j = 0; j < candidate.size(); ++j)

@@ -35,18 +35,6 @@ GuidedSpace::GuidedSpace(const Space& space) : space_(space), first_form_{0} {
   if (most_terms_ < n_always_) any_ = false;
 }
 
-std::size_t GuidedSpace::n_terms(const Choices& choices) {
-  return static_cast<std::size_t>(
-      std::count_if(choices.begin(), choices.end(), [](std::uint16_t c) { return c != 0; }));
-}
-
-bool GuidedSpace::admits(const Choices& choices) const {
-  if (choices.size() != n_predictors() || n_terms(choices) > most_terms_) return false;
-  for (std::size_t j = 0; j < choices.size(); ++j)
-    if (choices[j] > space_.predictors[j].forms.size() || (choices[j] == 0 && always(j))) return false;
-  return true;
-}
-
 std::uint64_t GuidedSpace::hash(std::size_t response, const Choices& choices) const {
   std::uint64_t hash = response_key_[response];
   for (std::size_t j = 0; j < choices.size(); ++j)

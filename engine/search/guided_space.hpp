@@ -43,9 +43,6 @@ class GuidedSpace {
   /// False when no candidate exists: max_terms below the predictors that are always in, or one of these without a form.
   bool any() const { return any_; }
 
-  static std::size_t n_terms(const Choices& choices);
-  /// Whether every predictor that is always in is in, and no more than may be are.
-  bool admits(const Choices& choices) const;
   /// XOR of the keys of a candidate's response and forms.
   std::uint64_t hash(std::size_t response, const Choices& choices) const;
 

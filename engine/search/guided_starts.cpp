@@ -30,13 +30,6 @@ base::SplitMix64 generator_of(std::uint64_t seed, std::uint64_t index) {
   return base::SplitMix64(base::SplitMix64(first + index).next());
 }
 
-Choices least_start(const GuidedSpace& space) {
-  Choices choices(space.n_predictors(), 0);
-  for (std::size_t j = 0; j < choices.size(); ++j)
-    if (space.always(j)) choices[j] = 1;
-  return choices;
-}
-
 Choices random_start(const GuidedSpace& space, std::size_t most_terms, base::SplitMix64& random) {
   Choices choices(space.n_predictors(), 0);
   std::vector<std::size_t> optional;
@@ -57,7 +50,7 @@ Choices random_start(const GuidedSpace& space, std::size_t most_terms, base::Spl
 Choices shaken(const GuidedSpace& space, const Choices& candidate, base::SplitMix64& random) {
   enum Change : std::uint8_t { leave, enter, change, kChanges };
   Choices choices = candidate;
-  const std::size_t n_changes = 2 + random.below(1 + GuidedSpace::n_terms(candidate) / 3);
+  const std::size_t n_changes = 2 + random.below(1 + n_terms(candidate) / 3);
   for (std::size_t i = 0; i < n_changes; ++i) {
     const auto what = static_cast<Change>(random.below(kChanges));
     const std::size_t j = random_predictor(space, random, [&](std::size_t p) {
@@ -65,7 +58,7 @@ Choices shaken(const GuidedSpace& space, const Choices& candidate, base::SplitMi
       return choices[p] != 0 && (what == change || !space.always(p));
     });
     if (j == space.n_predictors()) continue;
-    if (what == enter && GuidedSpace::n_terms(choices) >= space.most_terms()) continue;
+    if (what == enter && n_terms(choices) >= space.most_terms()) continue;
     choices[j] = what == leave ? std::uint16_t{0} : random_form(space, j, random);
   }
   return choices;

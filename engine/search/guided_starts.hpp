@@ -12,9 +12,6 @@ namespace formsieve::search {
 /// The generator of restart `index`: depends on both numbers alone.
 base::SplitMix64 generator_of(std::uint64_t seed, std::uint64_t index);
 
-/// Predictors that are always in alone, each in its first form.
-Choices least_start(const GuidedSpace& space);
-
 /// A random number of random predictors, at most `most_terms` (or those that are always in), in random forms.
 Choices random_start(const GuidedSpace& space, std::size_t most_terms, base::SplitMix64& random);
 

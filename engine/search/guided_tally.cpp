@@ -8,7 +8,7 @@ namespace formsieve::search {
 void Tally::record(std::span<const Leg> legs, bool independent) {
   for (const Leg& leg : legs) {
     if (!leg.known) endings_[leg.objective].try_emplace(*leg.ending, Ending{leg.score, 0});
-    most_terms_ = std::max(most_terms_, GuidedSpace::n_terms(*leg.ending));
+    most_terms_ = std::max(most_terms_, n_terms(*leg.ending));
   }
   if (!independent) return;
   const Leg& first = legs.front();

@@ -10,12 +10,25 @@ namespace {
 /// Choices of one predictor, absence included where it is one.
 std::size_t radix(const PredictorChoices& predictor) { return predictor.forms.size() + (predictor.always ? 0 : 1); }
 
-std::size_t terms(const Choice& choice) {
-  return static_cast<std::size_t>(
-      std::count_if(choice.choice.begin(), choice.choice.end(), [](std::uint16_t c) { return c != 0; }));
+}  // namespace
+
+std::size_t n_terms(std::span<const std::uint16_t> choice) {
+  return static_cast<std::size_t>(std::count_if(choice.begin(), choice.end(), [](std::uint16_t c) { return c != 0; }));
 }
 
-}  // namespace
+bool admits(const Space& space, std::span<const std::uint16_t> choice) {
+  if (choice.size() != space.predictors.size()) return false;
+  for (std::size_t j = 0; j < choice.size(); ++j)
+    if (choice[j] > space.predictors[j].forms.size() || (choice[j] == 0 && space.predictors[j].always)) return false;
+  return n_terms(choice) <= space.max_terms.value_or(choice.size());
+}
+
+std::vector<std::uint16_t> least_choice(const Space& space) {
+  std::vector<std::uint16_t> choice;
+  for (const PredictorChoices& predictor : space.predictors)
+    choice.push_back(predictor.always ? std::uint16_t{1} : std::uint16_t{0});
+  return choice;
+}
 
 std::vector<BigCount> count_by_terms(const Space& space) {
   const std::size_t n_predictors = space.predictors.size();
@@ -66,7 +79,7 @@ std::optional<Choice> choice_of(const Space& space, const BigCount& number) {
   }
   if (rest >= space.n_responses) return std::nullopt;
   choice.response = rest.convert_to<std::size_t>();
-  if (space.max_terms && terms(choice) > *space.max_terms) return std::nullopt;
+  if (space.max_terms && n_terms(choice.choice) > *space.max_terms) return std::nullopt;
   return choice;
 }
 

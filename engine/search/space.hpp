@@ -7,6 +7,7 @@
 #include <cstddef>
 #include <cstdint>
 #include <optional>
+#include <span>
 #include <string>
 #include <vector>
 
@@ -42,6 +43,13 @@ struct Choice {
   std::vector<std::uint16_t> choice;  ///< [n_predictors]
   bool operator==(const Choice&) const = default;
 };
+
+/// Predictors present.
+std::size_t n_terms(std::span<const std::uint16_t> choice);
+/// Whether choices of the predictors make a candidate of the space: forms that exist, what is always in, max_terms.
+bool admits(const Space& space, std::span<const std::uint16_t> choice);
+/// Every predictor that is always in with its first form, no other; max_terms may have no room for it.
+std::vector<std::uint16_t> least_choice(const Space& space);
 
 /// Exact number of candidates (dynamic programme over max_terms).
 BigCount count(const Space& space);

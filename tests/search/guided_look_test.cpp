@@ -78,7 +78,7 @@ void check_looks(const Made& made, std::uint64_t seed) {
       const Choices candidate = search::random_start(space, space.n_predictors(), random);
       compare(space, objective, look.extend(candidate), comparison);
       const auto& around = look.around(candidate);
-      REQUIRE(around.size() == GuidedSpace::n_terms(candidate) + 1);
+      REQUIRE(around.size() == search::n_terms(candidate) + 1);
       for (const auto& extensions : around) {
         for (std::size_t j = 0; j < candidate.size(); ++j)
           CHECK((extensions.base[j] == candidate[j] || extensions.base[j] == 0));

@@ -423,8 +423,7 @@ TEST_CASE("search: a descent ends where no change of one or two predictors is an
         ++n_changes;
         if (end[j] == 0) ++n_absent;
       }
-      const bool exchange =
-          n_changes == 2 && n_absent == 1 && search::GuidedSpace::n_terms(better) == search::GuidedSpace::n_terms(end);
+      const bool exchange = n_changes == 2 && n_absent == 1 && search::n_terms(better) == search::n_terms(end);
       CHECK(n_changes >= 2);
       CHECK_FALSE(exchange);
       if (n_changes == 2) CHECK(n_absent > 0);
