@@ -37,18 +37,14 @@ bool fits(const Estimate& estimate, const run::Plan& plan) {
 }
 
 Strategy automatic(const Estimate& estimate, const Prepared& prepared, const run::Plan& plan) {
+  // no measured time in these words: they are part of the shortlist, which is the same on every machine
   const std::string budget = duration_words(plan.search.budget_seconds);
-  const std::string time = duration_words(estimate.total());
   if (fits(estimate, plan))
-    return {true,
-            false,
-            false,
-            false,
-            "every",
-            "every candidate is scored: " + in_words(prepared, estimate) + " take about " + time +
-                ", within the budget of " + budget};
-  const std::string too_long = "to score " + in_words(prepared, estimate) + " would take about " + time +
-                               ", beyond the budget of " + budget + ": ";
+    return {true,    false,
+            false,   false,
+            "every", "every candidate is scored: " + in_words(prepared, estimate) + " fit the budget of " + budget};
+  const std::string too_long =
+      "to score " + in_words(prepared, estimate) + " would take more than the budget of " + budget + ": ";
   if (most_forms(prepared) > proof::kMostForms)
     return {false, false,    true,
             false, "guided", too_long + "guided local search looks for the lowest held-out error, without proof"};

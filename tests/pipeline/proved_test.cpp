@@ -138,7 +138,8 @@ TEST_CASE("pipeline: a space beyond the budget is searched by proof and guidance
   plan.forms.response = {form_entry("ln"), form_entry("sqrt"), form_entry("identity")};
   const json result = searched(plan, "auto", "cv_rmse");
   CHECK(result.at("space").at("strategy") == "proved and guided");
-  CHECK(result.at("space").at("strategy_why").get<std::string>().find("beyond the budget of 3 s") != std::string::npos);
+  CHECK(result.at("space").at("strategy_why").get<std::string>().find("more than the budget of 3 s") !=
+        std::string::npos);
   CHECK(result.at("shortlist").size() > 1);
   CHECK(result.contains("proof"));
 }
