@@ -64,6 +64,11 @@ struct Candidate {
   std::vector<checks::Check> checks;
   backtransform::Summary back;
   std::vector<ValidRange> ranges;
+  checks::Influence influence;
+  std::vector<backtransform::Effect> effects;  ///< in the order of the terms
+  bool pareto = false;  ///< no other examined candidate is as good or better by CV error, number of terms and failed
+                        ///< checks, and better by one of them
+  std::vector<std::string> siblings;  ///< numbers of examined candidates with nearly the same predictions, by rank
   std::vector<std::string> cautions;
 };
 
@@ -85,6 +90,7 @@ struct Coverage {
   std::string pool_formed;              ///< in words: which lists, how long
   std::string pool_margin;              ///< in words: how far the last pooled lie behind the shortlist
   double seconds = 0.0;                 ///< wall time of the search; not part of the byte-identical shortlist
+  std::string family_rule;              ///< in words: when two candidates are shown as one line
 };
 
 struct DataSummary {
