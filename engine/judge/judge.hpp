@@ -44,4 +44,11 @@ std::vector<std::string> general_cautions(const Shortlist& shortlist);
 /// search …
 std::vector<std::string> candidate_cautions(const Candidate& candidate);
 
+/// What may mend a check of `candidate` that is strained or broken: the best-ranked of `listed` [by rank, examined in
+/// full] for which it holds with another response form or another form of the term in question, and what that costs in
+/// cross-validated error; where there is none, what is usually done. Empty where the check holds or was not made. Cost
+/// O(listed).
+std::vector<std::string> mends(const Candidate& candidate, const checks::Check& check,
+                               std::span<const Candidate> listed);
+
 }  // namespace formsieve::judge
