@@ -90,7 +90,7 @@ double median_scale(const Eigen::Ref<const Eigen::VectorXd>& r) {
 
 double m_scale(const Eigen::Ref<const Eigen::VectorXd>& r, Index p, double start) {
   constexpr int kMostSteps = 200;
-  constexpr double kDone = 1e-13;
+  constexpr double kDone = 1e-12;
   const double wanted = 0.5 * static_cast<double>(r.size() - p);
   double scale = start;
   for (int step = 0; step < kMostSteps; ++step) {

@@ -89,34 +89,56 @@ bool improve_to_the_end(const Rows& rows, SEstimate& at) {
   return at.scale > 0.0;
 }
 
-/// A candidate after its first steps, with its M-scale.
-std::optional<SEstimate> first_improved(const Rows& rows, Eigen::VectorXd delta) {
+/// Whether the M-scale of `r` lies below `limit`, by one sum.
+bool is_below(const Eigen::VectorXd& r, Index p, double limit) {
+  double total = 0.0;
+  for (const double one : r) total += kHalfBreakdown.rho(one / limit);
+  return total < 0.5 * static_cast<double>(r.size() - p);
+}
+
+/// A candidate after its first steps, with its M-scale; unset also when that is no smaller than `limit`.
+std::optional<SEstimate> first_improved(const Rows& rows, Eigen::VectorXd delta, std::optional<double> limit) {
   SEstimate at{std::move(delta), 0.0};
   at.scale = median_scale(rows.e - rows.u * at.delta);
   if (!(at.scale > 0.0)) return std::nullopt;
   for (int step = 0; step < kFirstSteps; ++step)
     if (!improve(rows, at)) return std::nullopt;
-  at.scale = m_scale(rows.e - rows.u * at.delta, rows.p(), at.scale);
+  const Eigen::VectorXd r = rows.e - rows.u * at.delta;
+  if (limit && !is_below(r, rows.p(), *limit)) return std::nullopt;
+  at.scale = m_scale(r, rows.p(), at.scale);
   if (!(at.scale > 0.0)) return std::nullopt;
   return at;
 }
 
-void keep_best(std::vector<SEstimate>& best, std::optional<SEstimate> candidate) {
-  if (!candidate) return;
-  const auto smaller = [](const SEstimate& a, const SEstimate& b) { return a.scale < b.scale; };
-  best.insert(std::upper_bound(best.begin(), best.end(), *candidate, smaller), *candidate);
-  if (best.size() > kBest) best.pop_back();
-}
+/// The candidates of smallest scale so far, smallest first.
+class Best {
+ public:
+  /// What a candidate must stay below to be kept.
+  std::optional<double> limit() const {
+    return kept_.size() < kBest ? std::nullopt : std::optional(kept_.back().scale);
+  }
+  void keep(std::optional<SEstimate> candidate) {
+    if (!candidate) return;
+    const auto smaller = [](const SEstimate& a, const SEstimate& b) { return a.scale < b.scale; };
+    kept_.insert(std::upper_bound(kept_.begin(), kept_.end(), *candidate, smaller), *candidate);
+    if (kept_.size() > kBest) kept_.pop_back();
+  }
+  std::vector<SEstimate>& kept() { return kept_; }
+
+ private:
+  std::vector<SEstimate> kept_;
+};
 
 std::optional<SEstimate> best_start(const Rows& rows, base::SplitMix64& random) {
-  std::vector<SEstimate> best;
-  keep_best(best, first_improved(rows, Eigen::VectorXd::Zero(rows.p())));
+  Best best;
+  best.keep(first_improved(rows, Eigen::VectorXd::Zero(rows.p()), std::nullopt));
   std::vector<Index> shuffled(static_cast<std::size_t>(rows.n()));
   std::iota(shuffled.begin(), shuffled.end(), Index{0});
   for (std::size_t i = 0; i < n_candidates(rows.p()); ++i)
-    if (auto delta = through_few_rows(rows, shuffled, random)) keep_best(best, first_improved(rows, std::move(*delta)));
+    if (auto delta = through_few_rows(rows, shuffled, random))
+      best.keep(first_improved(rows, std::move(*delta), best.limit()));
   std::optional<SEstimate> first;
-  for (SEstimate& candidate : best)
+  for (SEstimate& candidate : best.kept())
     if (improve_to_the_end(rows, candidate) && (!first || candidate.scale < first->scale)) first = candidate;
   return first;
 }

@@ -9,9 +9,6 @@
 #include "report/equation.hpp"
 
 #include <cmath>
-#include <optional>
-#include <utility>
-#include <vector>
 
 namespace formsieve::pipeline {
 

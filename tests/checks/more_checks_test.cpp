@@ -11,6 +11,9 @@
 #include <Eigen/LU>
 #include <Eigen/SVD>
 
+#include <boost/math/distributions/chi_squared.hpp>
+#include <boost/math/distributions/fisher_f.hpp>
+#include <boost/math/distributions/students_t.hpp>
 #include <catch2/catch.hpp>
 
 #include <algorithm>
@@ -34,6 +37,19 @@ TEST_CASE("checks: Brown and Forsythe's test equals SciPy", "[checks][reference]
   // equal deviations within every group leave nothing to compare with
   CHECK_FALSE(
       brown_forsythe(vector_of({1, -1, 2, -2, 3, -3}), std::vector<std::vector<Eigen::Index>>{{0, 1}, {2, 3}, {4, 5}}));
+}
+
+TEST_CASE("checks: tails of the distributions behind the p-values are 5 % at handbook quantiles", "[checks][reference]") {
+  // handbook tables, four or five digits, from memory: χ²(.95), t(.975), F(.95)
+  namespace bm = boost::math;
+  const auto tail = [](const auto& distribution, double x) { return bm::cdf(bm::complement(distribution, x)); };
+  const std::array<std::array<double, 2>, 4> chi{{{1, 3.841}, {2, 5.991}, {5, 11.070}, {10, 18.307}}};
+  for (const auto& [df, x] : chi) CHECK(tail(bm::chi_squared(df), x) == Approx(0.05).epsilon(1e-3));
+  const std::array<std::array<double, 2>, 4> t{{{5, 2.571}, {10, 2.228}, {30, 2.042}, {120, 1.980}}};
+  for (const auto& [df, x] : t) CHECK(2.0 * tail(bm::students_t(df), x) == Approx(0.05).epsilon(2e-3));
+  const std::array<std::array<double, 3>, 5> f{
+      {{1, 10, 4.965}, {2, 10, 4.103}, {5, 10, 3.326}, {3, 20, 3.098}, {10, 30, 2.165}}};
+  for (const auto& [df1, df2, x] : f) CHECK(tail(bm::fisher_f(df1, df2), x) == Approx(0.05).epsilon(1e-3));
 }
 
 TEST_CASE("checks: thirds go by value, then by row, and are listed in row order", "[checks][unit]") {

@@ -36,11 +36,10 @@ def m_scale(r, p):
     return float(numpy.exp(scipy.optimize.brentq(f, top - 60.0, top, xtol=1e-15, rtol=8.9e-16)))
 
 
-def s_estimate(x, y, start_limit=None):
+def s_estimate(x, y):
     n, p = x.shape
     best = (numpy.inf, None)
-    starts = itertools.combinations(range(n), p)
-    for rows in itertools.islice(starts, start_limit):
+    for rows in itertools.combinations(range(n), p):
         sub = x[list(rows)]
         if numpy.linalg.matrix_rank(sub) < p:
             continue
@@ -64,13 +63,9 @@ def s_estimate(x, y, start_limit=None):
 
 
 def bisquare(x, y, start, scale):
-    """statsmodels' bisquare M estimate with the scale held: the response is divided by `scale`, and the start is moved so
-    that statsmodels' own first scale, which it then keeps, is 1."""
+    """statsmodels' bisquare M estimate from a start, with the scale held: what it would estimate first is overridden."""
     model = sm.RLM(y, x, M=sm.robust.norms.TukeyBiweight(4.685))
-    # statsmodels takes the scale of the start's residuals; held at `scale` by an estimator that ignores them
-    held = type("Held", (), {"__call__": lambda self, *args, **kwargs: scale})()
     model._estimate_scale = lambda resid: scale
-    model.scale_est = held
     return model.fit(start_params=start, update_scale=False, maxiter=5000, tol=1e-14, conv="coefs").params
 
 
@@ -85,6 +80,7 @@ def values(name, response, columns):
     }
 
 
+# about two minutes: stack loss has 5,985 sets of four rows, the hill races 6,545 of three
 print(json.dumps({
     "versions": {"statsmodels": statsmodels.__version__, "numpy": numpy.__version__, "scipy": scipy.__version__},
     "fits": [
