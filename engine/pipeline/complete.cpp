@@ -2,8 +2,9 @@
 
 #include "base/sums.hpp"
 #include "backtransform/backtransform.hpp"
-#include "checks/checks.hpp"
+#include "checks/influence.hpp"
 #include "fit/least_squares.hpp"
+#include "fit/robust.hpp"
 #include "judge/judge.hpp"
 #include "report/equation.hpp"
 
@@ -37,6 +38,21 @@ checks::Subject subject_of(const judge::Candidate& candidate, const Eigen::Matri
     at += forms::n_columns(term.form);
   }
   return subject;
+}
+
+/// The fit that a few rows cannot move; unset where there is none to compare with.
+std::optional<checks::Insensitive> insensitive(const Eigen::MatrixXd& x, const Eigen::VectorXd& weights,
+                                               const fit::Fit& plain) {
+  auto robust = fit::robust_fit(x, weights, plain);
+  if (!robust) return std::nullopt;
+  return checks::Insensitive{std::move(robust->coefficients), robust->n_downweighted, std::move(robust->method)};
+}
+
+/// Data row of the table, counted from 1 below the header, of each row in use; empty where the source has no lines.
+std::vector<std::size_t> data_rows(const table::Table& table) {
+  std::vector<std::size_t> rows(table.line_of_row.size());
+  for (std::size_t i = 0; i < rows.size(); ++i) rows[i] = table.line_of_row[i] - 1;  // line 1 is the header
+  return rows;
 }
 
 /// R² in own units of the smeared predictions, and the mean smeared over the mean uncorrected prediction, on the rows
@@ -129,7 +145,10 @@ Status Examiner::complete(const search::Choice& choice, judge::Candidate& candid
   for (auto& correction : candidate.back.corrections)
     if (correction.method == "smearing") correction.factor = own.factor;
 
-  candidate.checks = checks::run_all(subject_of(candidate, x, *fit, weights_, prepared_.order));
+  auto found = checks::examine(subject_of(candidate, x, *fit, weights_, prepared_.order), candidate.coefficients,
+                               insensitive(x, weights_, *fit), data_rows(prepared_.table));
+  candidate.checks = std::move(found.checks);
+  candidate.influence = std::move(found.influence);
   candidate.ranges = ranges(choice);
   candidate.equation = report::equation(candidate);
   candidate.back.formula =
