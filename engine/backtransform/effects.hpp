@@ -16,7 +16,7 @@ struct EffectTerm {
   forms::Form form;
   int declared = 0;  ///< +1 rising, −1 falling, 0 undeclared
   double min = 0.0, q1 = 0.0, median = 0.0, q3 = 0.0, max = 0.0;
-  std::string most_frequent;  ///< level; text columns only
+  std::string most_frequent = {};  ///< level; text columns only
 };
 
 /// One fit, as the effects see it. Views, form's scale; p coefficients, the intercept first.

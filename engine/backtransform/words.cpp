@@ -9,7 +9,7 @@ namespace formsieve::backtransform {
 namespace {
 
 std::string digits_of(double size, int significant) {
-  constexpr double kWholeFrom = 1e3;  // people read numbers of this size in full
+  constexpr double kWholeFrom = 999.5;  // people read numbers of this size in full; 999.6 is 1,000
   constexpr double kWholeTo = 1e7;
   std::array<char, 64> buffer{};
   char* const end = buffer.data() + buffer.size();
