@@ -44,6 +44,13 @@ class Examiner {
   /// ranges, equation, cautions.
   Status complete(const search::Choice& choice, judge::Candidate& candidate) const;
 
+  /// Fills in the checks alone: what a gate needs to know. Cost of one full fit and its checks.
+  Status check(const search::Choice& choice, judge::Candidate& candidate) const;
+
+  /// Smeared own-units predictions of the fit on all rows, at the rows in use number 0, step, 2·step, …; NaN where
+  /// undefined, all NaN where it cannot be fitted. Cost O(n k²).
+  std::vector<double> predictions(const search::Choice& choice, std::size_t step) const;
+
   /// What turns residual sums of squares into own-scale likelihoods.
   LikelihoodConstants likelihood_constants() const { return {log_jacobian_, half_log_weights_}; }
 

@@ -3,6 +3,7 @@
 #include <formsieve/report.hpp>
 
 #include "report/criterion_name.hpp"
+#include "report/examination_json.hpp"
 #include "report/json_text.hpp"
 #include "report/proof_json.hpp"
 #include "report/schema.hpp"
@@ -46,6 +47,7 @@ Json space_json(const judge::Coverage& space) {
   json["set_aside_require"] = count_json(space.set_aside_require);
   json["pool_formed"] = space.pool_formed;
   json["pool_margin"] = space.pool_margin;
+  json["family_rule"] = space.family_rule;
   return json;
 }
 
@@ -110,43 +112,6 @@ Json cv_json(const judge::CrossValidation& cv) {
   return json;
 }
 
-Json check_json(const checks::Check& check) {
-  Json json;
-  json["check"] = check.name;
-  json["method"] = check.method;
-  json["hypothesis"] = check.hypothesis;
-  json["statistic"] = number_or_null(check.statistic);
-  json["df"] = number_or_null(check.df);
-  json["df2"] = number_or_null(check.df2);
-  json["p"] = number_or_null(check.p);
-  json["p_adjusted"] = number_or_null(check.p_adjusted);
-  json["size"] = number_or_null(check.size);
-  json["size2"] = number_or_null(check.size2);
-  json["size_words"] = check.size_words;
-  json["passes"] = check.passes;
-  json["note"] = check.note;
-  return json;
-}
-
-Json correction_json(const backtransform::Correction& correction) {
-  Json json;
-  json["method"] = correction.method;
-  json["factor"] = number_or_null(correction.factor);
-  json["cv_bias"] = number_or_null(correction.cv_bias);
-  json["cv_rmse"] = number_or_null(correction.cv_rmse);
-  return json;
-}
-
-Json back_json(const backtransform::Summary& back) {
-  Json json;
-  json["smearing_factor"] = number_or_null(back.smearing_factor);
-  json["used"] = back.used;
-  json["formula"] = back.formula;
-  json["corrections"] = Json::array();
-  for (const auto& correction : back.corrections) json["corrections"].push_back(correction_json(correction));
-  return json;
-}
-
 Json range_json(const judge::ValidRange& range) {
   Json json;
   json["column"] = range.column;
@@ -184,6 +149,10 @@ Json candidate_json(const judge::Candidate& candidate) {
   json["checks"] = list_json(candidate.checks, check_json);
   json["back_transformation"] = back_json(candidate.back);
   json["ranges"] = list_json(candidate.ranges, range_json);
+  json["influence"] = influence_json(candidate.influence);
+  json["effects"] = list_json(candidate.effects, effect_json);
+  json["pareto"] = candidate.pareto;
+  json["siblings"] = candidate.siblings;
   json["cautions"] = candidate.cautions;
   return json;
 }

@@ -3,6 +3,7 @@
 #include <formsieve/report.hpp>
 
 #include "report/criterion_name.hpp"
+#include "report/examination_reader.hpp"
 #include "report/form_reader.hpp"
 #include "report/json_reader.hpp"
 #include "report/schema.hpp"
@@ -50,6 +51,7 @@ judge::Coverage read_space(const Node& node) {
   space.set_aside_require = node.get("set_aside_require").count();
   space.pool_formed = node.get("pool_formed").text();
   space.pool_margin = node.get("pool_margin").text();
+  space.family_rule = node.get("family_rule").text();
   return space;
 }
 
@@ -106,40 +108,6 @@ judge::CrossValidation read_cv(const Node& node) {
   return cv;
 }
 
-checks::Check read_check(const Node& node) {
-  checks::Check check;
-  check.name = node.at("check").text();
-  check.method = node.get("method").text();
-  check.hypothesis = node.get("hypothesis").text();
-  check.statistic = node.at("statistic").optional_number();
-  check.df = node.get("df").optional_number();
-  check.df2 = node.get("df2").optional_number();
-  check.p = node.at("p").optional_number();
-  check.p_adjusted = node.at("p_adjusted").optional_number();
-  check.size = node.at("size").number();
-  check.size2 = node.get("size2").optional_number();
-  check.size_words = node.get("size_words").text();
-  check.passes = node.at("passes").truth();
-  check.note = node.get("note").text();
-  return check;
-}
-
-backtransform::Summary read_back(const Node& node) {
-  backtransform::Summary back;
-  back.smearing_factor = node.at("smearing_factor").number();
-  if (const Node used = node.get("used"); used.present()) back.used = used.text();
-  back.formula = node.get("formula").text();
-  for (const Node& item : node.at("corrections").items()) {
-    backtransform::Correction correction;
-    correction.method = item.at("method").text();
-    correction.factor = item.at("factor").number();
-    correction.cv_bias = item.at("cv_bias").optional_number();
-    correction.cv_rmse = item.at("cv_rmse").optional_number();
-    back.corrections.push_back(std::move(correction));
-  }
-  return back;
-}
-
 judge::ValidRange read_range(const Node& node) {
   judge::ValidRange range;
   range.column = node.at("column").text();
@@ -176,6 +144,10 @@ judge::Candidate read_candidate(const Node& node, const std::string& response_co
   for (const Node& check : node.at("checks").items()) candidate.checks.push_back(read_check(check));
   candidate.back = read_back(node.at("back_transformation"));
   for (const Node& range : node.get("ranges").items()) candidate.ranges.push_back(read_range(range));
+  candidate.influence = read_influence(node.get("influence"));
+  for (const Node& effect : node.get("effects").items()) candidate.effects.push_back(read_effect(effect));
+  candidate.pareto = node.get("pareto").truth();
+  candidate.siblings = node.get("siblings").texts();
   candidate.cautions = node.at("cautions").texts();
   return candidate;
 }

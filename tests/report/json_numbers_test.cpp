@@ -85,5 +85,5 @@ TEST_CASE("report: JSON has null where a number is not finite", "[report][unit]"
   CHECK(std::isnan(values[2]));
   CHECK(values[3] == 2.5);
   CHECK(text.find("NaN") == std::string::npos);
-  CHECK(text.find("inf") == std::string::npos);
+  for (const char* unreadable : {": inf", "-inf", ": Inf"}) CHECK(text.find(unreadable) == std::string::npos);
 }

@@ -36,6 +36,9 @@ class Maker {
 
   forms::Form form();
   checks::Check check();
+  checks::Influence influence();
+  backtransform::Summary back();
+  backtransform::Effect effect();
   judge::CrossValidation cv();
   judge::ValidRange range();
   judge::PredictorMenu menu();
@@ -99,8 +102,54 @@ forms::Form Maker::form() {
 }
 
 checks::Check Maker::check() {
-  return {text(),  text(),          text(),  maybe(), maybe(), maybe(), maybe(),
-          maybe(), number_or_nan(), maybe(), text(),  coin(),  text()};
+  checks::Check check;
+  for (auto* words : {&check.name, &check.method, &check.hypothesis, &check.size_words, &check.note}) *words = text();
+  for (auto* figure : {&check.statistic, &check.df, &check.df2, &check.p, &check.p_adjusted, &check.size2})
+    *figure = maybe();
+  check.size = number_or_nan();
+  check.passes = coin();
+  if (coin()) check.verdict = static_cast<checks::Verdict>(below(3));
+  check.parts = several([&] { return checks::CheckPart{text(), maybe(), maybe(), number_or_nan()}; });
+  check.mends = texts();
+  return check;
+}
+
+checks::Influence Maker::influence() {
+  checks::Influence influence;
+  influence.largest_leverage = number_or_nan();
+  influence.n_downweighted = count();
+  influence.rows = several([&] {
+    return checks::InfluentialRow{count(),         count(),
+                                  number_or_nan(), number_or_nan(),
+                                  number_or_nan(), number_or_nan(),
+                                  number_or_nan(), text(),
+                                  number_or_nan(), coin() ? std::optional<std::size_t>(count()) : std::nullopt};
+  });
+  influence.robust = several([&] { return checks::RobustCoefficient{text(), number_or_nan(), number_or_nan()}; });
+  influence.words = texts();
+  return influence;
+}
+
+backtransform::Summary Maker::back() {
+  backtransform::Summary back;
+  back.smearing_factor = number();
+  for (auto* words : {&back.used, &back.formula, &back.why_used, &back.mean_median_words}) *words = text();
+  back.corrections =
+      several([&] { return backtransform::Correction{text(), number_or_nan(), maybe(), maybe(), maybe(), text()}; });
+  back.intervals = several(
+      [&] { return backtransform::Interval{text(), number_or_nan(), maybe(), maybe(), maybe(), maybe(), text()}; });
+  return back;
+}
+
+backtransform::Effect Maker::effect() {
+  backtransform::Effect effect;
+  for (auto* words : {&effect.column, &effect.kind, &effect.from_level, &effect.to_level, &effect.direction,
+                      &effect.declared, &effect.words})
+    *words = text();
+  effect.from = number_or_nan();
+  effect.to = number_or_nan();
+  for (auto* figure : {&effect.at_from, &effect.at_to, &effect.change, &effect.low, &effect.high}) *figure = maybe();
+  return effect;
 }
 
 judge::CrossValidation Maker::cv() {
@@ -149,10 +198,12 @@ Candidate Maker::candidate() {
   c.r2_form_scale = number_or_nan();
   c.r2_own_units = maybe();
   c.checks = several([&] { return check(); });
-  c.back = {number(), text(), text(), several([&] {
-              return backtransform::Correction{text(), number_or_nan(), maybe(), maybe()};
-            })};
+  c.back = back();
   c.ranges = several([&] { return range(); });
+  c.influence = influence();
+  c.effects = several([&] { return effect(); });
+  c.pareto = coin();
+  c.siblings = texts();
   c.cautions = texts();
   return c;
 }
@@ -248,12 +299,33 @@ class Printer {
     return *this << v.rmse << v.rmse_se << v.bias << v.mae << v.mae_median << v.rmse_naive << v.rmse_form_scale
                  << v.bias_form_scale << v.fold_mse << v.n_undefined;
   }
+  Printer& operator<<(const checks::CheckPart& p) { return *this << p.subject << p.statistic << p.p << p.size; }
   Printer& operator<<(const checks::Check& c) {
     return *this << c.name << c.method << c.hypothesis << c.statistic << c.df << c.df2 << c.p << c.p_adjusted << c.size
-                 << c.size2 << c.size_words << c.passes << c.note;
+                 << c.size2 << c.size_words << c.passes << c.note << c.verdict.has_value()
+                 << static_cast<std::uint64_t>(c.verdict.value_or(checks::Verdict::holds)) << c.parts << c.mends;
+  }
+  Printer& operator<<(const checks::InfluentialRow& r) {
+    return *this << r.row << r.line << r.leverage << r.cook << r.studentised << r.p_bonferroni << r.prediction_sd
+                 << r.moved_term << r.moved_se << r.leader_without.has_value() << r.leader_without.value_or(0);
+  }
+  Printer& operator<<(const checks::RobustCoefficient& c) { return *this << c.term << c.value << c.shift_se; }
+  Printer& operator<<(const checks::Influence& i) {
+    return *this << i.largest_leverage << i.n_downweighted << i.rows << i.robust << i.words;
   }
   Printer& operator<<(const backtransform::Correction& c) {
-    return *this << c.method << c.factor << c.cv_bias << c.cv_rmse;
+    return *this << c.method << c.factor << c.cv_bias << c.cv_rmse << c.shift << c.note;
+  }
+  Printer& operator<<(const backtransform::Interval& i) {
+    return *this << i.method << i.level << i.coverage << i.below << i.above << i.median_width_own << i.note;
+  }
+  Printer& operator<<(const backtransform::Summary& b) {
+    return *this << b.smearing_factor << b.used << b.formula << b.corrections << b.why_used << b.mean_median_words
+                 << b.intervals;
+  }
+  Printer& operator<<(const backtransform::Effect& e) {
+    return *this << e.column << e.kind << e.from << e.to << e.from_level << e.to_level << e.at_from << e.at_to
+                 << e.change << e.low << e.high << e.direction << e.declared << e.words;
   }
   Printer& operator<<(const judge::ValidRange& r) {
     const auto infinite = [](double x) { return std::isinf(x); };
@@ -319,8 +391,7 @@ Printer& Printer::operator<<(const Candidate& c) {
         << c.n << c.rss << c.sigma << c.likelihood.log_likelihood << c.likelihood.aic << c.likelihood.aicc
         << std::isinf(c.likelihood.aicc) << c.likelihood.bic << c.likelihood.n_parameters << c.cv << c.r2_form_scale
         << c.r2_own_units << c.checks;
-  return *this << c.back.smearing_factor << c.back.used << c.back.formula << c.back.corrections << c.ranges
-               << c.cautions;
+  return *this << c.back << c.ranges << c.influence << c.effects << c.pareto << c.siblings << c.cautions;
 }
 
 }  // namespace
@@ -334,9 +405,9 @@ Shortlist made_shortlist(std::uint64_t seed) {
             make.text(),  make.text(),
             make.text(),  make.count(),
             make.count(), make.several([&] { return std::pair{make.text(), make.count()}; })};
-  s.space = {make.digits(), make.digits(), make.digits(), make.text(),  make.text(),
-             make.coin(),   make.coin(),   make.number(), make.count(), make.count(),
-             make.count(),  make.count(),  make.text(),   make.text(),  1.5};
+  s.space = {make.digits(), make.digits(), make.digits(), make.text(),  make.text(),  make.coin(),
+             make.coin(),   make.number(), make.count(),  make.count(), make.count(), make.count(),
+             make.text(),   make.text(),   1.5,           make.text()};
   s.folds = {make.count(), make.count(), make.coin() ? ~std::uint64_t{0} : make.below(100), make.text()};
   s.criterion = static_cast<judge::Criterion>(make.below(4));
   s.near_tie = make.number();
@@ -414,10 +485,12 @@ Shortlist plain_shortlist() {
   c.n = 411;
   c.cv.rmse = 1234.5;
   c.cv.fold_mse = {1.0, 2.0};
-  c.checks = {
-      {"equal-spread", "Breusch–Pagan", "same spread", 3.5, 1.0, {}, 0.06, 0.12, 1.4, {}, "ratio 1.4", false, ""},
-      {"straightness", "RESET", "straight", 0.5, 2.0, 400.0, 0.6, 0.6, 0.001, {}, "gain 0.001", true, ""}};
-  c.back.corrections = {{"smearing", 1.03, 0.5, 1234.5}};
+  c.checks.resize(2);
+  c.checks[0].name = "equal-spread";
+  c.checks[0].passes = false;
+  c.checks[1].name = "straightness";
+  c.back.corrections.resize(1);
+  c.back.corrections[0].method = "smearing";
   c.ranges = {{"floor_area", 12.0, 9000.0, {0.0, std::numeric_limits<double>::infinity(), false, false}, {}}};
   c.cautions = {"the spread is unequal"};
   s.candidates = {c, c};
@@ -435,7 +508,8 @@ std::string print_out(const Shortlist& s) {
       << s.data.fold << s.data.rows_read << s.data.rows_used << s.data.dropped;
   out << s.space.candidates << s.space.scored << s.space.inseparable << s.space.strategy << s.space.strategy_why
       << s.space.complete << s.space.proved << s.space.gap << s.space.pooled << s.space.examined
-      << s.space.set_aside_direction << s.space.set_aside_require << s.space.pool_formed << s.space.pool_margin;
+      << s.space.set_aside_direction << s.space.set_aside_require << s.space.pool_formed << s.space.pool_margin
+      << s.space.family_rule;
   out << s.folds.count << s.folds.repeats << s.folds.seed << s.folds.kind;
   out << static_cast<std::uint64_t>(s.criterion) << s.near_tie << s.responses << s.response_notes << s.menus
       << s.summary << s.proof << s.candidates << s.remarks << s.cautions;

@@ -4,12 +4,18 @@
 #include <cstddef>
 #include <optional>
 #include <string>
+#include <string_view>
 #include <vector>
 
 namespace formsieve::checks {
 
 /// What a check comes to, from its size and its p-value together.
 enum class Verdict { holds, strained, broken };
+
+/// The verdict as it is written.
+constexpr std::string_view verdict_word(Verdict verdict) {
+  return verdict == Verdict::holds ? "holds" : verdict == Verdict::strained ? "strained" : "broken";
+}
 
 /// What a check says of one of the things that it looks at: a term, a design column.
 struct CheckPart {

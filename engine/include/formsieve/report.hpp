@@ -2,6 +2,7 @@
 #pragma once
 
 #include <formsieve/base.hpp>
+#include <formsieve/comparison.hpp>
 #include <formsieve/judge.hpp>
 #include <formsieve/survey.hpp>
 
@@ -16,6 +17,9 @@ Result<judge::Shortlist> read_shortlist_json(const std::string& text, const std:
 
 /// One line a candidate, RFC 4180, decimal point.
 std::string shortlist_csv(const judge::Shortlist& shortlist);
+
+/// Candidates side by side: `compare --json`.
+std::string comparison_json(const judge::Comparison& comparison);
 
 /// survey.json
 std::string survey_json(const survey::Survey& survey);
