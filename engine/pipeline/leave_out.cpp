@@ -74,7 +74,7 @@ std::vector<std::string> find_leaders_without_rows(const Prepared& prepared, con
     if (!rank) continue;
     set_leader(listed, one.row, *rank);
     if (*rank != listed.front().rank)
-      said.push_back("Without data row " + judge::grouped_digits(std::to_string(one.line)) + " rank " +
+      said.push_back("Without line " + judge::grouped_digits(std::to_string(one.line)) + " rank " +
                      std::to_string(*rank) + " would lead the shortlist.");
   }
   return said;
