@@ -106,6 +106,8 @@ class BlockReader {
     if (content.fault != CellFault::none) {
       note(fault_kind(content.fault), p + content.fault_at);
       store_missing(column);
+    } else if (sink.read_as == ReadAs::written) {
+      if (sink.cells != nullptr) sink.cells[row_] = cell.raw;
     } else {
       store(column, content);
     }
@@ -133,6 +135,7 @@ class BlockReader {
     const ColumnSink& sink = task_.sinks[column];
     if (sink.read_as == ReadAs::number) sink.numbers[row_] = std::numeric_limits<double>::quiet_NaN();
     if (sink.read_as == ReadAs::text) sink.codes[row_] = kMissingLevel;
+    if (sink.cells != nullptr) sink.cells[row_] = {};
     ++reading_.columns[column].n_missing;
   }
 
