@@ -37,12 +37,22 @@ class FoldedFit {
   Result<Solution> without(std::size_t fold) const;
   /// Fit on all rows.
   Result<Solution> all() const;
+  /// [n_folds] Entry g: fit on all rows but those of `fold` and of fold g; entry `fold` is without(fold). An error when
+  /// one of them has none. Cost O(K p³).
+  Result<std::vector<Solution>> without_each_beside(std::size_t fold) const;
+
+  /// [p × p] A with A·Aᵀ = (XᵀWX)⁻¹ of all rows but those of one fold, so that a row x has leverage ‖Aᵀx‖² there. Where
+  /// without(fold) is an error, so is this.
+  Result<Eigen::MatrixXd> inverse_root_without(std::size_t fold) const;
+  Result<Eigen::MatrixXd> inverse_root_of_all() const;
 
  private:
   Result<Solution> solve(const Eigen::MatrixXd& triangle, Eigen::Index n_rows) const;
+  Result<Eigen::MatrixXd> inverse_root(const Eigen::MatrixXd& triangle, Eigen::Index n_rows) const;
 
   std::optional<Error> refused_;  ///< why there is nothing to solve
   std::vector<Standard> standards_;
+  std::vector<Eigen::MatrixXd> of_fold_;  ///< [n_folds] triangles of single folds
   std::vector<Eigen::MatrixXd> before_, after_;  ///< [n_folds + 1] triangles of folds 0 … g − 1, and of g … n_folds − 1
   std::vector<Eigen::Index> rows_;               ///< [n_folds] rows in each fold
   Eigen::Index n_rows_ = 0;

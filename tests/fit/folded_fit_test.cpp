@@ -31,15 +31,20 @@ Problem random_problem(Eigen::Index n, Eigen::Index p, std::uint32_t n_folds, un
   return problem;
 }
 
-/// The plain way: the rows of the other folds copied together and fitted.
-Result<fit::Fit> refit_without(const Problem& problem, const Eigen::VectorXd& weights, std::uint32_t fold) {
+/// The plain way: the rows of the other folds copied together and fitted. `beside`: a second fold to leave out.
+Result<fit::Fit> refit_without(const Problem& problem, const Eigen::VectorXd& weights, std::uint32_t fold,
+                               std::uint32_t beside) {
   std::vector<Eigen::Index> rows;
   for (std::size_t i = 0; i < problem.fold_of.size(); ++i) {
-    if (problem.fold_of[i] != fold) rows.push_back(static_cast<Eigen::Index>(i));
+    if (problem.fold_of[i] != fold && problem.fold_of[i] != beside) rows.push_back(static_cast<Eigen::Index>(i));
   }
   Eigen::VectorXd w;
   if (weights.size() != 0) w = weights(rows);
   return fit::least_squares(problem.x(rows, Eigen::all), problem.y(rows), w);
+}
+
+Result<fit::Fit> refit_without(const Problem& problem, const Eigen::VectorXd& weights, std::uint32_t fold) {
+  return refit_without(problem, weights, fold, fold);
 }
 
 double difference(const Eigen::VectorXd& a, const Eigen::VectorXd& b) { return (a - b).norm() / b.norm(); }
@@ -64,6 +69,46 @@ TEST_CASE("fit: every fit without one fold equals the refit on the rows left", "
       REQUIRE(all.ok());
       CHECK(difference(all->coefficients, plain->coefficients) < 1e-12);
       CHECK(all->rss == Approx(plain->rss).epsilon(1e-12));
+    }
+  }
+}
+
+TEST_CASE("fit: every fit without two folds equals the refit on the rows left", "[fit][property]") {
+  for (const std::uint32_t n_folds : {3U, 7U}) {
+    const Problem problem = random_problem(500, 5, n_folds, 20 + n_folds);
+    for (const Eigen::VectorXd& weights : {Eigen::VectorXd(), problem.weights}) {
+      const fit::FoldedFit folded(problem.x, problem.y, weights, problem.fold_of, n_folds);
+      for (std::uint32_t fold = 0; fold < n_folds; ++fold) {
+        const auto ours = folded.without_each_beside(fold);
+        REQUIRE(ours.ok());
+        REQUIRE(ours->size() == n_folds);
+        for (std::uint32_t beside = 0; beside < n_folds; ++beside) {
+          const auto plain = refit_without(problem, weights, fold, beside);
+          CHECK(difference((*ours)[beside].coefficients, plain->coefficients) < 1e-12);
+          CHECK((*ours)[beside].rss == Approx(plain->rss).epsilon(1e-12));
+        }
+        CHECK((*ours)[fold].coefficients == folded.without(fold)->coefficients);
+      }
+    }
+  }
+}
+
+TEST_CASE("fit: the inverse root of a training part gives its covariance and leverages", "[fit][property]") {
+  const Problem problem = random_problem(300, 5, 4, 31);
+  for (const Eigen::VectorXd& weights : {Eigen::VectorXd(), problem.weights}) {
+    const fit::FoldedFit folded(problem.x, problem.y, weights, problem.fold_of, 4);
+    for (std::uint32_t fold = 0; fold < 4; ++fold) {
+      const auto plain = refit_without(problem, weights, fold);
+      const Eigen::MatrixXd inverse = plain->covariance / (plain->sigma * plain->sigma);
+      const Eigen::MatrixXd root = *folded.inverse_root_without(fold);
+      CHECK((root * root.transpose() - inverse).norm() < 1e-11 * inverse.norm());
+    }
+    const auto whole = fit::least_squares(problem.x, problem.y, weights);
+    const Eigen::MatrixXd root = *folded.inverse_root_of_all();
+    for (Eigen::Index i = 0; i < 300; ++i) {
+      const double weight = weights.size() == 0 ? 1.0 : weights(i);
+      CHECK(weight * (root.transpose() * problem.x.row(i).transpose()).squaredNorm() ==
+            Approx(whole->leverage(i)).epsilon(1e-11));
     }
   }
 }
