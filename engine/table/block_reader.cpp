@@ -66,6 +66,7 @@ class BlockReader {
     const char* const after = scan_short_decimal(p, decimal_, value);
     if (after == nullptr || *after != follower) return nullptr;
     sink.numbers[row_] = value;
+    if (sink.cells != nullptr) sink.cells[row_] = {p, static_cast<std::size_t>(after - p)};
     return after;
   }
 
@@ -79,6 +80,7 @@ class BlockReader {
       const char* const stop = after == nullptr ? nullptr : end_of_number_cell(after);
       if (stop != nullptr && !(task_.missing.has_numbers() && is_marker(p, after))) {
         sink.numbers[row_] = value;
+        if (sink.cells != nullptr) sink.cells[row_] = {p, static_cast<std::size_t>(after - p)};
         return stop;
       }
     }
@@ -106,11 +108,10 @@ class BlockReader {
     if (content.fault != CellFault::none) {
       note(fault_kind(content.fault), p + content.fault_at);
       store_missing(column);
-    } else if (sink.read_as == ReadAs::written) {
-      if (sink.cells != nullptr) sink.cells[row_] = cell.raw;
-    } else {
-      store(column, content);
+      return cell.stop;
     }
+    if (sink.read_as != ReadAs::written) store(column, content);
+    if (sink.cells != nullptr) sink.cells[row_] = cell.raw;
     return cell.stop;
   }
 

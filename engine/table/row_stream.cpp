@@ -55,7 +55,8 @@ RowStart start_of(const Source& source, const RowBlock& block, std::size_t row) 
   const char* const begin = source.bytes.data();
   const char* p = begin;
   for (std::size_t i = block.first_row; i < row; ++i) p = row_end(p, begin + source.bytes.size());
-  return {static_cast<std::size_t>(p - begin), block.first_line + static_cast<std::uint64_t>(std::count(begin, p, '\n'))};
+  return {static_cast<std::size_t>(p - begin),
+          block.first_line + static_cast<std::uint64_t>(std::count(begin, p, '\n'))};
 }
 
 /// A text found in a column of numbers.

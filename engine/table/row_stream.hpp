@@ -29,10 +29,10 @@ inline constexpr std::size_t kDialectBytes = std::size_t{1} << 20;
 struct RowBlock {
   std::vector<char> bytes;
   std::size_t n_rows = 0;
-  std::size_t first_row = 0;         ///< index of the first row, from 0 after the header
-  std::uint64_t first_line = 1;      ///< its line in the file
-  std::uint64_t bytes_before = 0;    ///< bytes of the file before the block
-  std::optional<ByteFault> fault;    ///< earliest NUL byte or invalid UTF-8
+  std::size_t first_row = 0;       ///< index of the first row, from 0 after the header
+  std::uint64_t first_line = 1;    ///< its line in the file
+  std::uint64_t bytes_before = 0;  ///< bytes of the file before the block
+  std::optional<ByteFault> fault;  ///< earliest NUL byte or invalid UTF-8
 
   std::string_view view() const noexcept { return {bytes.data(), bytes.size()}; }
 };
