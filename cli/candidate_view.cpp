@@ -1,5 +1,6 @@
 #include "candidate_view.hpp"
 
+#include "examination_view.hpp"
 #include "numbers.hpp"
 #include "page.hpp"
 #include "shortlist_view.hpp"
@@ -15,19 +16,6 @@ namespace {
 using judge::Candidate;
 using judge::Shortlist;
 
-constexpr std::size_t kLabelWidth = 24;
-constexpr int kErrorDigits = 4;
-
-std::string optional_figure(const std::optional<double>& value) {
-  return value ? significant(*value) : std::string("undefined");
-}
-
-// A mean error, to the decimals that the RMSE beside it has: the rest is noise.
-std::string mean_error(const std::optional<double>& value, const std::optional<double>& rmse) {
-  if (!value || !rmse) return optional_figure(value);
-  return with_decimals(*value, decimals_for(*rmse, kErrorDigits));
-}
-
 void title(Page& page, const Shortlist& shortlist, const Candidate& candidate) {
   std::string head = "Rank " + std::to_string(candidate.rank);
   if (!candidate.marks.empty()) head += ": " + joined(candidate.marks, ", ");
@@ -38,8 +26,6 @@ void title(Page& page, const Shortlist& shortlist, const Candidate& candidate) {
              ".");
   for (const std::string& mark : candidate.marks) page.note(mark + ": " + mark_words(mark, shortlist));
 }
-
-bool is_identity(const forms::Form& form) { return form.kind == forms::Kind::identity; }
 
 void equation(Page& page, const Candidate& candidate) {
   page.heading("The equation");
@@ -128,48 +114,6 @@ void coefficients(Page& page, const Candidate& candidate) {
       "spread. No p-values are given, since a search makes them far too small.");
 }
 
-std::string check_statistic(const checks::Check& check) {
-  std::string text = check.method;
-  if (check.statistic) text += ": statistic " + significant(*check.statistic);
-  if (check.df && check.df2) {
-    text += " on " + significant(*check.df) + " and " + significant(*check.df2) + " df";
-  } else if (check.df) {
-    text += " on " + significant(*check.df) + " df";
-  }
-  if (check.p) text += ", p " + p_value(*check.p);
-  if (check.p_adjusted) text += ", " + p_value(*check.p_adjusted) + " after Holm's adjustment";
-  return text;
-}
-
-void assumption_checks(Page& page, const Candidate& candidate) {
-  if (candidate.checks.empty()) return;
-  page.heading("What is wrong with it?");
-  constexpr std::size_t kVerdictWidth = 6;
-  for (const checks::Check& check : candidate.checks) {
-    std::string found = check.name + ": " + check.size_words;
-    if (!check.note.empty()) found += "; " + check.note;
-    page.labelled(check.passes ? "passes" : "fails", kVerdictWidth, found, check.passes ? Tone::plain : Tone::alarm);
-    const std::string asked = check.hypothesis.empty() ? "" : "Supposed: " + check.hypothesis + "; ";
-    page.labelled("", kVerdictWidth, asked + check_statistic(check));
-  }
-}
-
-void back_transformation(Page& page, const Candidate& candidate) {
-  const std::vector<backtransform::Correction>& corrections = candidate.back.corrections;
-  if (is_identity(candidate.response) || corrections.empty()) return;
-  page.heading("What does going back to own units cost?");
-  TextTable table(
-      {{"correction"}, {"factor", true, 0, 1}, {"held-out mean error", true, 0, 1}, {"held-out RMSE", true, 0, 1}});
-  for (const backtransform::Correction& one : corrections) {
-    const bool used = one.method == candidate.back.used;
-    table.add_row({{one.method + (used ? " (used)" : ""), used ? Tone::strong : Tone::plain},
-                   {significant(one.factor)},
-                   {mean_error(one.cv_bias, one.cv_rmse)},
-                   {optional_figure(one.cv_rmse)}});
-  }
-  page.table(table);
-}
-
 std::string defined_words(const forms::Interval& interval) {
   const bool below = std::isfinite(interval.lower), above = std::isfinite(interval.upper);
   if (!below && !above) return "defined everywhere";
@@ -223,10 +167,13 @@ std::string candidate_page(const judge::Shortlist& shortlist, const judge::Candi
   title(page, shortlist, candidate);
   equation(page, candidate);
   prediction(page, shortlist, candidate);
+  show_intervals(page, candidate);
   rows_in_use(page, candidate);
   coefficients(page, candidate);
-  assumption_checks(page, candidate);
-  back_transformation(page, candidate);
+  show_effects(page, candidate);
+  show_checks(page, candidate);
+  show_influence(page, candidate);
+  show_corrections(page, candidate);
   ranges(page, candidate);
   cautions(page, shortlist, candidate);
   page.blank();

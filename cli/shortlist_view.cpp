@@ -97,6 +97,30 @@ std::string marked(const Candidate& candidate, const std::string& text) {
   return candidate.marks.empty() ? text : joined(candidate.marks, ", ") + ": " + text;
 }
 
+// The line that shows a candidate as one of its family, where that is another line.
+const Candidate* better_alike(const Shortlist& shortlist, const Candidate& candidate) {
+  for (const Candidate& line : shortlist.candidates) {
+    if (std::find(line.siblings.begin(), line.siblings.end(), candidate.number) != line.siblings.end()) return &line;
+  }
+  return nullptr;
+}
+
+// "+3 alike", "alike to 2", or nothing.
+std::string family_words(const Shortlist& shortlist, const Candidate& candidate) {
+  if (const Candidate* line = better_alike(shortlist, candidate)) return "alike to " + std::to_string(line->rank);
+  return candidate.siblings.empty() ? "" : "+" + grouped(candidate.siblings.size()) + " alike";
+}
+
+std::string with_family(const Shortlist& shortlist, const Candidate& candidate, const std::string& text) {
+  const std::string words = family_words(shortlist, candidate);
+  return words.empty() ? text : text + " (" + words + ")";
+}
+
+// A dot before the rank of what no other line beats.
+std::string rank_label(const Candidate& candidate) {
+  return (candidate.pareto ? "• " : "") + std::to_string(candidate.rank);
+}
+
 TextTable wide_table(const Shortlist& shortlist, const Scale& scale, bool terms_inside) {
   std::vector<TableColumn> columns = {{"rank", true},
                                       {"response", false, 0, 1},
@@ -109,14 +133,15 @@ TextTable wide_table(const Shortlist& shortlist, const Scale& scale, bool terms_
   TextTable table(columns);
   for (const Candidate& candidate : shortlist.candidates) {
     const std::string failing = failing_words(candidate);
-    std::vector<Cell> cells = {{std::to_string(candidate.rank), candidate.marks.empty() ? Tone::plain : Tone::strong},
+    std::vector<Cell> cells = {{rank_label(candidate), candidate.marks.empty() ? Tone::plain : Tone::strong},
                                {response_label(candidate)},
                                {error_with_se(candidate.cv, scale.decimals)},
                                {difference_words(candidate, scale)},
                                {coefficients_words(candidate)},
                                {r2_words(candidate)},
                                {failing, failing == "none" ? Tone::plain : Tone::alarm}};
-    const std::string terms = marked(candidate, terms_text(candidate, shortlist.candidates.front()));
+    const std::string sum = with_family(shortlist, candidate, terms_text(candidate, shortlist.candidates.front()));
+    const std::string terms = marked(candidate, sum);
     const Tone tone = candidate.marks.empty() ? Tone::plain : Tone::strong;
     if (terms_inside) {
       cells.push_back({terms, tone});
@@ -129,7 +154,7 @@ TextTable wide_table(const Shortlist& shortlist, const Scale& scale, bool terms_
 }
 
 void stacked(Page& page, const Candidate& candidate, const Shortlist& shortlist, const Scale& scale) {
-  std::string head = std::to_string(candidate.rank);
+  std::string head = rank_label(candidate);
   if (!candidate.marks.empty()) head += ": " + joined(candidate.marks, ", ");
   page.heading(head);
   page.prose(response_label(candidate) + "; CV RMSE " + error_with_se(candidate.cv, scale.decimals));
@@ -137,7 +162,20 @@ void stacked(Page& page, const Candidate& candidate, const Shortlist& shortlist,
              r2_words(candidate) + ", " + counted(candidate.terms.size(), "term") + ", " +
              counted(candidate.coefficients.size(), "coefficient"));
   page.prose("checks failing: " + failing_words(candidate));
-  page.equation(terms_text(candidate, shortlist.candidates.front()));
+  page.equation(with_family(shortlist, candidate, terms_text(candidate, shortlist.candidates.front())));
+}
+
+// What the dots and the brackets mean, where there are any.
+void family_legend(Page& page, const Shortlist& shortlist) {
+  const auto any = [&](auto&& holds) {
+    return std::any_of(shortlist.candidates.begin(), shortlist.candidates.end(), holds);
+  };
+  if (any([](const Candidate& one) { return one.pareto; })) {
+    page.prose("• no other line is as good by CV RMSE, number of terms and failing checks, and better by one of them.");
+  }
+  if (any([](const Candidate& one) { return !one.siblings.empty(); })) {
+    page.prose("+ alike: so many candidates further down that predict nearly the same are shown by this line.");
+  }
 }
 
 void ranking(Page& page, const Shortlist& shortlist) {
@@ -157,6 +195,7 @@ void ranking(Page& page, const Shortlist& shortlist) {
              "; CV RMSE and R² in its own units, held-out rows for the first, rows "
              "in use for the second; Δ" +
              name + " is the distance from the lowest " + name + " listed, comparable across response forms.");
+  family_legend(page, shortlist);
 }
 
 void named_lines(Page& page, const Shortlist& shortlist) {
@@ -236,6 +275,7 @@ std::vector<std::string> extent(const Shortlist& shortlist) {
   };
   aside(space.set_aside_direction, "a fitted effect contradicts its declared direction.");
   aside(space.set_aside_require, "a required check fails.");
+  if (!space.family_rule.empty()) said.push_back("Lines: " + space.family_rule + ".");
   return said;
 }
 

@@ -30,16 +30,9 @@ struct Subject {
 
 /// Significance level of a check, on the p-value adjusted over the checks of its candidate. Common practice.
 inline constexpr double kLevel = 0.05;
-/// Largest variance inflation that passes: 10 is common practice, a standard error √10 ≈ 3 times that of a term
-/// unrelated to the others.
-inline constexpr double kMostInflation = 10.0;
-/// Largest Cook distance that passes: at 1, leaving the row out moves the coefficients to the edge of about a 50 %
-/// confidence region (Cook 1977; common practice).
-inline constexpr double kMostCookDistance = 1.0;
-
-/// All checks of issue order: normal-residuals, equal-spread, equal-spread-by-term, straightness, separable-terms,
-/// no-single-row, independence (only with an order), with Holm-adjusted p-values. A check that the rows cannot support
-/// is listed with a note and passes.
+/// All checks in the order of names(), those of independence only with an order, with Holm-adjusted p-values and
+/// verdicts (checks/verdict.hpp). A check that the rows cannot support is listed with a note, passes and has no
+/// verdict. Cost O(n k²), and O(n k⁴) within a bound for equal-spread-any-shape.
 std::vector<Check> run_all(const Subject& subject);
 
 /// Names that `rank.require` may hold.

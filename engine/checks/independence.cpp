@@ -16,13 +16,6 @@ constexpr double kSmallestP = 1e-9;
 /// With one residual degree of freedom d can take one value only.
 constexpr Eigen::Index kFewestDegreesOfFreedom = 2;
 
-Eigen::VectorXd in_order(const Eigen::VectorXd& x, const std::vector<std::size_t>& order) {
-  Eigen::VectorXd result(static_cast<Eigen::Index>(order.size()));
-  for (std::size_t i = 0; i < order.size(); ++i)
-    result[static_cast<Eigen::Index>(i)] = x[static_cast<Eigen::Index>(order[i])];
-  return result;
-}
-
 /// Two-sided: neighbours may be alike (d below 2) or alternate (d above 2).
 double two_sided_p(const Workings& workings, double d) {
   const auto& order = workings.subject.order;
@@ -36,11 +29,18 @@ double two_sided_p(const Workings& workings, double d) {
   return std::clamp(2.0 * std::min(below, 1.0 - below), kSmallestP, 1.0);
 }
 
-bool covers_all_rows(const Subject& subject) {
-  return static_cast<Eigen::Index>(subject.order.size()) == subject.residuals.size();
+}  // namespace
+
+Eigen::VectorXd in_order(const Eigen::VectorXd& x, const std::vector<std::size_t>& order) {
+  Eigen::VectorXd result(static_cast<Eigen::Index>(order.size()));
+  for (std::size_t i = 0; i < order.size(); ++i)
+    result[static_cast<Eigen::Index>(i)] = x[static_cast<Eigen::Index>(order[i])];
+  return result;
 }
 
-}  // namespace
+bool order_covers_all_rows(const Subject& subject) {
+  return static_cast<Eigen::Index>(subject.order.size()) == subject.residuals.size();
+}
 
 Check independence(const Workings& workings) {
   Check check = named("independence",
@@ -48,7 +48,7 @@ Check independence(const Workings& workings) {
                                                    : "Durbin–Watson, by its mean and variance, two-sided",
                       "neighbouring residuals in the order given are not correlated");
   check.size_words = "no residuals to judge";
-  if (!workings.untestable.empty() || !covers_all_rows(workings.subject)) {
+  if (!workings.untestable.empty() || !order_covers_all_rows(workings.subject)) {
     check.note = workings.untestable.empty() ? "the order does not cover every row" : workings.untestable;
     return check;
   }

@@ -1,7 +1,5 @@
-#include "checks/no_single_row.hpp"
-
+#include "checks/leave_out.hpp"
 #include "checks/words.hpp"
-#include "checks/workings.hpp"
 
 #include <cmath>
 
@@ -9,39 +7,36 @@ namespace formsieve::checks {
 
 namespace {
 
-/// Largest change, over all rows j, of the fitted value of row j when `row` is left out, in the standard deviation
-/// σ/√w_j of a measurement at row j: |q_j·q_row|·√w|e|/((1 − h)·σ) with q the rows of an orthonormal basis of the
-/// whitened design. DFFITS (Belsley, Kuh & Welsch 1980) is the same at j = row, but for its own scale.
-double largest_prediction_change(const Workings& workings, Eigen::Index row) {
-  const Subject& subject = workings.subject;
-  if (subject.leverage[row] >= kFullLeverage) return 0.0;
-  const Eigen::MatrixXd& q = workings.of_the_fit().q;
-  const Eigen::VectorXd hat = q * q.row(row).transpose();
-  const double pull = std::abs(workings.residuals[row]) / subject.sigma / (1.0 - subject.leverage[row]);
-  return hat.lpNorm<Eigen::Infinity>() * pull;
-}
-
 void note_full_leverage(const Workings& workings, Check& check) {
   Eigen::Index row = 0;
   if (workings.subject.leverage.maxCoeff(&row) < kFullLeverage) return;
-  check.passes = false;
+  check.verdict = Verdict::broken;
   check.note = row_words(static_cast<long>(row)) + " has leverage 1: a coefficient rests on it alone";
+}
+
+/// The row farthest from the others' fit, with its Bonferroni p-value.
+void test_outlier(const Workings& workings, Check& check) {
+  const Subject& subject = workings.subject;
+  if (!outlier_p(subject, 0.0)) {
+    check.note = "too few rows for a p-value";
+    return;
+  }
+  Eigen::Index row = 0;
+  const Eigen::VectorXd studentised = externally_studentised(subject);
+  studentised.cwiseAbs().maxCoeff(&row);
+  check.statistic = std::abs(studentised[row]);
+  check.df = static_cast<double>(workings.n - workings.p - 1);
+  check.p = outlier_p(subject, studentised[row]);
+  check.size_words += "; the farthest from the others is " + row_words(static_cast<long>(row));
 }
 
 }  // namespace
 
-Eigen::VectorXd cook_distances(const Subject& subject) {
-  const Eigen::ArrayXd h = subject.leverage.array();
-  Eigen::ArrayXd scaled = subject.residuals.array() / subject.sigma;
-  if (subject.weights.size() > 0) scaled *= subject.weights.array().sqrt();
-  const double p = static_cast<double>(subject.x.cols());
-  return (h < kFullLeverage).select(scaled.square() * h / (p * (1.0 - h).square()), 0.0);
-}
-
 Check no_single_row(const Workings& workings) {
-  Check check =
-      named("no-single-row", "largest distance of Cook", "no single row decides the equation (a limit of 1, no test)");
+  Check check = named("no-single-row", "largest externally studentised residual, Bonferroni; distance of Cook",
+                      "no single row lies off the equation of the others or decides it");
   check.size_words = "no residuals to judge";
+  check.size2 = 0.0;
   const Subject& subject = workings.subject;
   if (!workings.untestable.empty()) {
     check.note = workings.untestable;
@@ -52,12 +47,12 @@ Check no_single_row(const Workings& workings) {
     return check;
   }
   Eigen::Index row = 0;
-  const double largest = cook_distances(subject).maxCoeff(&row);
-  check.statistic = largest;
+  check.size2 = cook_distances(subject).maxCoeff(&row);
   check.size = largest_prediction_change(workings, row);
   check.size_words = "leaving out " + row_words(static_cast<long>(row)) + " moves a prediction by up to " +
-                     number_words(check.size) + " residual standard deviations";
-  check.passes = largest <= kMostCookDistance;
+                     number_words(check.size) + " residual standard deviations (distance of Cook " +
+                     number_words(*check.size2) + ")";
+  test_outlier(workings, check);
   note_full_leverage(workings, check);
   return check;
 }

@@ -1,5 +1,6 @@
 #include "checks/separable_terms.hpp"
 
+#include "checks/condition.hpp"
 #include "checks/words.hpp"
 
 #include <Eigen/Cholesky>
@@ -25,10 +26,21 @@ double inflation(const Basis& basis, const Eigen::MatrixXd& inverse_r, Eigen::In
   return std::exp(log_gvif / static_cast<double>(columns));
 }
 
-std::string size_sentence(const Workings& workings, double largest, std::size_t term) {
-  const auto& names = workings.subject.term_names;
-  const std::string name = term < names.size() ? names[term] : "term " + std::to_string(term + 1);
-  return "the other terms inflate the variance of " + name + " " + number_words(largest) + " times";
+std::string size_sentence(const Workings& workings, double largest, std::size_t term, double condition_number) {
+  return "the other terms inflate the variance of " + term_name(workings, term) + " " + number_words(largest) +
+         " times; condition number with the intercept " + number_words(condition_number);
+}
+
+/// "ln(area), volume": the terms of the columns, each once.
+std::string terms_of(const Workings& workings, const std::vector<Eigen::Index>& columns) {
+  std::string names;
+  for (std::size_t term = 0; term < n_terms(workings); ++term) {
+    const TermColumns range = columns_of(workings, term);
+    if (std::none_of(columns.begin(), columns.end(), [&](auto j) { return j >= range.first && j < range.end; }))
+      continue;
+    names += (names.empty() ? "" : ", ") + term_name(workings, term);
+  }
+  return names;
 }
 
 }  // namespace
@@ -50,24 +62,30 @@ Check separable_terms(const Workings& workings) {
   Check check = named("separable-terms",
                       workings.weighted() ? "largest variance inflation of a term, weighted (Fox & Monette)"
                                           : "largest variance inflation of a term (Fox & Monette)",
-                      "no term is nearly a combination of the others (a limit of 10, no test)");
+                      "no term is nearly a combination of the others (limits, no test)");
   check.size = 1.0;
+  check.size2 = 1.0;
   check.size_words = "fewer than two terms, so nothing to tell apart";
-  const Subject& subject = workings.subject;
-  if (subject.term_first.size() < 2) {
+  if (n_terms(workings) < 2) {
     check.statistic = 1.0;
     return check;
   }
-  if (!workings.of_the_fit().full_rank) {
+  const Basis& basis = workings.of_the_fit();
+  if (!basis.full_rank) {
     check.note = "too few rows, or columns that are combinations of others";
     return check;
   }
-  const auto all = inflations(workings.of_the_fit(), subject.term_first);
+  const auto all = inflations(basis, workings.subject.term_first);
+  for (std::size_t term = 0; term < all.size(); ++term)
+    check.parts.push_back({term_name(workings, term), all[term], std::nullopt, all[term]});
   const auto largest = std::max_element(all.begin(), all.end());
+  const Condition found = condition(basis);
   check.statistic = *largest;
   check.size = *largest;
-  check.size_words = size_sentence(workings, *largest, static_cast<std::size_t>(largest - all.begin()));
-  check.passes = *largest <= kMostInflation;
+  check.size2 = found.index[workings.p - 1];
+  check.size_words = size_sentence(workings, *largest, static_cast<std::size_t>(largest - all.begin()), *check.size2);
+  if (const auto columns = entangled_columns(found); !columns.empty())
+    check.note = "nearly dependent together (Belsley, Kuh & Welsch): " + terms_of(workings, columns);
   return check;
 }
 

@@ -1,63 +1,39 @@
+#include "checks/bend.hpp"
 #include "checks/words.hpp"
-#include "checks/workings.hpp"
-
-#include <boost/math/distributions/fisher_f.hpp>
 
 #include <algorithm>
-#include <cmath>
-#include <limits>
+#include <optional>
 
 namespace formsieve::checks {
 
 namespace {
 
-/// A power of the fitted value of which less than this share of its length lies outside the design adds nothing but
-/// rounding: with indicator columns only, powers lie within the design by algebra.
-constexpr double kInsideDesign = 1e-8;
-
-/// What of `x` lies outside `q`; projected twice, since once leaves ε·(length ratio) behind.
-Eigen::VectorXd outside(const Eigen::Ref<const Eigen::MatrixXd>& q, Eigen::VectorXd x) {
-  for (int pass = 0; pass < 2; ++pass) x -= q * (q.transpose() * x);
-  return x;
+/// Why there is nothing to test; empty when there may be.
+std::string why_not(const Workings& workings) {
+  if (!workings.untestable.empty()) return workings.untestable;
+  if (workings.p < 2) return "no term, so one fitted value";
+  if (!workings.of_the_fit().full_rank) return "the design columns are not separable";
+  return {};
 }
 
-/// Orthonormal directions that the square and cube of the fitted value add to the (whitened) design: [n × 0, 1 or 2].
-/// The fitted value is standardised first: it lies in the design, so the space is the same and the powers stay apart.
-Eigen::MatrixXd added_directions(const Workings& workings) {
-  const Eigen::VectorXd deviation = centred(workings.subject.fitted);
-  const double sd = deviation.stableNorm() / std::sqrt(static_cast<double>(workings.n));
-  Eigen::MatrixXd found(workings.n, 0);
-  if (!(sd > kRoundingShare * workings.subject.fitted.lpNorm<Eigen::Infinity>())) return found;
-  const Eigen::ArrayXd standardised = deviation.array() / sd;
-  for (const int exponent : {2, 3}) {
-    const Eigen::VectorXd power = standardised.pow(exponent) * workings.root_weights.array();
-    Eigen::MatrixXd taken(workings.n, workings.p + found.cols());
-    taken << workings.of_the_fit().q, found;
-    const Eigen::VectorXd rest = outside(taken, power);
-    if (rest.norm() <= kInsideDesign * power.norm()) continue;
-    found.conservativeResize(Eigen::NoChange, found.cols() + 1);
-    found.rightCols(1) = rest.normalized();
-  }
-  return found;
+std::string gain_words(const Bend& bend) {
+  return "would raise R² by " + number_words(bend.gain_r2) + " and lower the residual variance by " +
+         number_words(100.0 * bend.gain_variance) + " %";
 }
 
-void test_directions(const Workings& workings, const Eigen::MatrixXd& added, Check& check) {
-  const double df1 = static_cast<double>(added.cols());
-  const double df2 = static_cast<double>(workings.n - workings.p) - df1;
-  const Eigen::VectorXd response =
-      workings.root_weights.cwiseProduct(workings.subject.fitted + workings.subject.residuals);
-  const Eigen::VectorXd along = added.transpose() * workings.residuals;
-  const double gained = along.squaredNorm();
-  const double floor = static_cast<double>(workings.n) *
-                       std::pow(std::numeric_limits<double>::epsilon() * response.lpNorm<Eigen::Infinity>(), 2);
-  const double rss =
-      std::max((workings.residuals - added * along).squaredNorm(), floor);  // keeps F finite for an exact curve
-  check.statistic = (gained / df1) / (rss / df2);
-  check.df = df1;
-  check.df2 = df2;
-  check.p = boost::math::cdf(boost::math::complement(boost::math::fisher_f(df1, df2), *check.statistic));
-  check.size = gained / outside(workings.of_the_fit().q.leftCols(1), response).squaredNorm();
-  check.size_words = "letting the curve bend further would raise R² by " + number_words(check.size);
+void set_sizes(const Bend& bend, Check& check) {
+  check.size = bend.gain_r2;
+  check.size2 = bend.gain_variance;
+}
+
+CheckPart part_of(const Bend& bend, std::string subject) {
+  CheckPart part;
+  part.subject = std::move(subject);
+  if (!bend.tested()) return part;
+  part.statistic = bend.f;
+  part.p = bend.p;
+  part.size = bend.gain_r2;
+  return part;
 }
 
 }  // namespace
@@ -66,21 +42,52 @@ Check straightness(const Workings& workings) {
   Check check = named("straightness", "RESET (Ramsey), squares and cubes of the fitted value",
                       "the square and cube of the fitted value add nothing to the equation");
   check.size_words = "no bend to judge";
-  if (!workings.untestable.empty()) {
-    check.note = workings.untestable;
-  } else if (workings.p < 2) {
-    check.note = "no term, so one fitted value";
-  } else if (!workings.of_the_fit().full_rank) {
-    check.note = "the design columns are not separable";
-  } else {
-    const Eigen::MatrixXd added = added_directions(workings);
-    if (added.cols() == 0)
-      check.note = "the design already holds every power of the fitted value";
-    else if (workings.n - workings.p - added.cols() < 1)
-      check.note = "too few rows for two more columns";
-    else
-      test_directions(workings, added, check);
+  check.size2 = 0.0;
+  check.note = why_not(workings);
+  if (!check.note.empty()) return check;
+  const Bend bend = bend_along(workings, workings.subject.fitted);
+  if (!bend.tested()) {
+    check.note = bend.df1 == 0.0 ? "the design already holds every power of the fitted value"
+                                 : "too few rows for two more columns";
+    return check;
   }
+  check.statistic = bend.f;
+  check.df = bend.df1;
+  check.df2 = bend.df2;
+  check.p = bend.p;
+  set_sizes(bend, check);
+  check.size_words = "letting the curve bend further " + gain_words(bend);
+  return check;
+}
+
+Check straightness_by_term(const Workings& workings) {
+  Check check = named("straightness-by-term", "RESET term by term, smallest p times their number (Bonferroni)",
+                      "the square and cube of no term add to the equation");
+  check.size_words = "no bend to judge";
+  check.size2 = 0.0;
+  check.note = why_not(workings);
+  if (!check.note.empty()) return check;
+  const Eigen::VectorXd slopes = slopes_of(workings);
+  std::optional<Bend> worst;
+  double n_tested = 0.0;
+  for (std::size_t term = 0; term < n_terms(workings); ++term) {
+    const Bend bend = bend_along(workings, term_curve(workings, slopes, term));
+    check.parts.push_back(part_of(bend, term_name(workings, term)));
+    if (!bend.tested()) continue;
+    ++n_tested;
+    if (worst && worst->p <= bend.p) continue;
+    worst = bend;
+    check.size_words = "letting " + term_name(workings, term) + " bend further " + gain_words(bend);
+  }
+  if (!worst) {
+    check.note = "too few rows, or terms that hold their own squares and cubes";
+    return check;
+  }
+  check.statistic = worst->f;
+  check.df = worst->df1;
+  check.df2 = worst->df2;
+  check.p = std::min(1.0, n_tested * worst->p);
+  set_sizes(*worst, check);
   return check;
 }
 

@@ -17,16 +17,20 @@ std::span<const double> as_span(const Eigen::Ref<const Eigen::VectorXd>& x) {
 }
 
 /// Columns of x but the intercept, centred by their weighted means, times √w, to unit length (a constant stays zero).
+/// Fills centre and length of `basis`.
 Eigen::MatrixXd standardised_columns(const Eigen::Ref<const Eigen::MatrixXd>& x,
-                                     const Eigen::Ref<const Eigen::VectorXd>& weights) {
+                                     const Eigen::Ref<const Eigen::VectorXd>& weights, Basis& basis) {
   const Eigen::Index k = x.cols() - 1;
   Eigen::MatrixXd columns = x.rightCols(k);
+  basis.centre.resize(k);
+  basis.length = Eigen::VectorXd::Ones(k);
   for (Eigen::Index j = 0; j < k; ++j) {
     auto column = columns.col(j);
-    column.array() -= base::weighted_mean(as_span(column), as_span(weights));
+    basis.centre[j] = base::weighted_mean(as_span(column), as_span(weights));
+    column.array() -= basis.centre[j];
     if (weights.size() > 0) column.array() *= weights.array().sqrt();
     const double length = column.stableNorm();
-    if (length > 0.0) column /= length;
+    if (length > 0.0) column /= basis.length[j] = length;
   }
   return columns;
 }
@@ -52,10 +56,11 @@ Basis centred_basis(const Eigen::Ref<const Eigen::MatrixXd>& x, const Eigen::Ref
   basis.q.resize(n, k + 1);
   basis.q.col(0).setOnes();
   if (weights.size() > 0) basis.q.col(0) = weights.cwiseSqrt();
-  basis.q.col(0).normalize();
+  basis.intercept_length = basis.q.col(0).norm();
+  basis.q.col(0) /= basis.intercept_length;
   basis.full_rank = true;
   if (k == 0) return basis;
-  const Eigen::HouseholderQR<Eigen::MatrixXd> qr(standardised_columns(x, weights));
+  const Eigen::HouseholderQR<Eigen::MatrixXd> qr(standardised_columns(x, weights, basis));
   basis.q.rightCols(k) = qr.householderQ() * Eigen::MatrixXd::Identity(n, k);
   basis.r = qr.matrixQR().topRows(k).triangularView<Eigen::Upper>();
   const Eigen::VectorXd pivots = basis.r.diagonal().cwiseAbs();
@@ -73,6 +78,37 @@ Workings prepare(const Subject& subject) {
   workings.plain = centred_basis(subject.x, none);
   if (workings.weighted()) workings.whitened = centred_basis(subject.x, subject.weights);
   return workings;
+}
+
+Eigen::VectorXd slopes_of(const Workings& workings) {
+  const Basis& basis = workings.of_the_fit();
+  const Eigen::Index k = workings.p - 1;
+  const Eigen::VectorXd whitened = workings.root_weights.cwiseProduct(centred(workings.subject.fitted));
+  const Eigen::VectorXd along = basis.q.rightCols(k).transpose() * whitened;
+  return basis.r.triangularView<Eigen::Upper>().solve(along).cwiseQuotient(basis.length);
+}
+
+TermColumns columns_of(const Workings& workings, std::size_t term) {
+  const auto& first = workings.subject.term_first;
+  const auto end = term + 1 < first.size() ? static_cast<Eigen::Index>(first[term + 1]) : workings.p;
+  return {static_cast<Eigen::Index>(first[term]), end};
+}
+
+std::size_t n_terms(const Workings& workings) { return workings.subject.term_first.size(); }
+
+std::string term_name(const Workings& workings, std::size_t term) {
+  const auto& names = workings.subject.term_names;
+  return term < names.size() ? names[term] : "term " + std::to_string(term + 1);
+}
+
+Eigen::VectorXd term_curve(const Workings& workings, const Eigen::VectorXd& slopes, std::size_t term) {
+  const TermColumns columns = columns_of(workings, term);
+  const auto& x = workings.subject.x;
+  if (columns.count() == 1) return x.col(columns.first);
+  Eigen::VectorXd curve = Eigen::VectorXd::Zero(workings.n);
+  for (Eigen::Index j = columns.first; j < columns.end; ++j)
+    curve += slopes[j - 1] * (x.col(j).array() - workings.of_the_fit().centre[j - 1]).matrix();
+  return curve;
 }
 
 Check named(const char* name, const char* method, const char* hypothesis) {

@@ -7,6 +7,7 @@
 #include <Eigen/Core>
 
 #include <string>
+#include <vector>
 
 namespace formsieve::checks {
 
@@ -19,7 +20,10 @@ inline constexpr double kRoundingShare = 1e-13;
 struct Basis {
   Eigen::MatrixXd q;  ///< [n × p] orthonormal; column 0 is the intercept's direction, √w/‖√w‖
   Eigen::MatrixXd r;  ///< [p−1 × p−1] upper triangular; r'r is the (weighted) correlation matrix of the columns
-  bool full_rank = false;  ///< no column is a combination of others, by n·ε·max|r_jj|
+  Eigen::VectorXd centre;         ///< [p−1] the (weighted) means
+  Eigen::VectorXd length;         ///< [p−1] what the centred, whitened columns were divided by; 1 for a constant
+  double intercept_length = 0.0;  ///< ‖√w‖
+  bool full_rank = false;         ///< no column is a combination of others, by n·ε·max|r_jj|
 };
 
 /// `weights` may have size 0. Cost O(n k²).
@@ -41,22 +45,52 @@ struct Workings {
 
 Workings prepare(const Subject& subject);
 
+/// [p − 1] least-squares coefficients of the columns but the intercept, recovered from the fitted values. Requires a
+/// full rank. Cost O(n k).
+Eigen::VectorXd slopes_of(const Workings& workings);
+
+/// What one term adds to the fitted value: [n] its column where it has one, otherwise the combination of its columns
+/// that the fit has found, less a constant. Depends on the fitted values alone, so that powers of it are independent of
+/// normal residuals (Milliken & Graybill 1970).
+Eigen::VectorXd term_curve(const Workings& workings, const Eigen::VectorXd& slopes, std::size_t term);
+
+/// First design column of a term and one past its last.
+struct TermColumns {
+  Eigen::Index first = 0, end = 0;
+  Eigen::Index count() const { return end - first; }
+};
+TermColumns columns_of(const Workings& workings, std::size_t term);
+std::size_t n_terms(const Workings& workings);
+/// "ln(area)", or "term 2" where there is no name.
+std::string term_name(const Workings& workings, std::size_t term);
+
 /// A check with its names filled in that passes until shown otherwise.
 Check named(const char* name, const char* method, const char* hypothesis);
 
 /// Adds to the note of a residual check of a weighted fit what was tested.
 void note_weights(const Workings& workings, Check& check);
 
+/// `x` with its rows in the order given.
+Eigen::VectorXd in_order(const Eigen::VectorXd& x, const std::vector<std::size_t>& order);
+bool order_covers_all_rows(const Subject& subject);
+
 /// x − mean(x).
 Eigen::VectorXd centred(const Eigen::Ref<const Eigen::VectorXd>& x);
+
+/// checks::run_all on workings that are made already.
+std::vector<Check> run_all(const Workings& workings);
 
 // One function a check, each in the file of its name.
 Check normal_residuals(const Workings& workings);
 Check equal_spread(const Workings& workings);
 Check equal_spread_by_term(const Workings& workings);
+Check equal_spread_by_thirds(const Workings& workings);
+Check equal_spread_any_shape(const Workings& workings);
 Check straightness(const Workings& workings);
+Check straightness_by_term(const Workings& workings);
 Check separable_terms(const Workings& workings);
 Check no_single_row(const Workings& workings);
 Check independence(const Workings& workings);
+Check independence_at_lags(const Workings& workings);
 
 }  // namespace formsieve::checks

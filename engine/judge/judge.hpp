@@ -6,6 +6,7 @@
 
 #include <cstddef>
 #include <cstdint>
+#include <functional>
 #include <span>
 #include <string>
 #include <vector>
@@ -35,13 +36,26 @@ double criterion_value(const Candidate& candidate, Criterion criterion);
 /// with another response form than the best by CV, …).
 std::vector<std::string> rank(std::vector<Candidate>& candidates, Criterion criterion, double near_tie);
 
-/// The first `n` by rank and every marked line further down.
-std::vector<Candidate> select(const std::vector<Candidate>& ranked, std::size_t n);
+/// Whether the candidate at this place of a ranked list may carry a name; asked of as few as the names need.
+using Admits = std::function<bool(std::size_t)>;
+
+/// The two halves of `rank`: order and ranks, without marks …
+void put_in_order(std::vector<Candidate>& candidates, Criterion criterion);
+/// … then marks, given only to candidates that `admits` says yes to (empty: to all), and the sentences.
+std::vector<std::string> name_lines(std::vector<Candidate>& ranked, Criterion criterion, double near_tie,
+                                    const Admits& admits);
 
 /// The cautions printed once per result.
 std::vector<std::string> general_cautions(const Shortlist& shortlist);
 /// Cautions of one candidate: failed checks, poor R², smearing factor far from 1, undefined predictions, few rows for a
 /// search …
 std::vector<std::string> candidate_cautions(const Candidate& candidate);
+
+/// What may mend a check of `candidate` that is strained or broken: the best-ranked of `listed` [by rank, examined in
+/// full] for which it holds with another response form or another form of the term in question, and what that costs in
+/// cross-validated error; where there is none, what is usually done. Empty where the check holds or was not made. Cost
+/// O(listed).
+std::vector<std::string> mends(const Candidate& candidate, const checks::Check& check,
+                               std::span<const Candidate> listed);
 
 }  // namespace formsieve::judge

@@ -1,8 +1,8 @@
 #include "judge/picks.hpp"
 
-#include <cmath>
+#include <algorithm>
 #include <limits>
-#include <tuple>
+#include <vector>
 
 namespace formsieve::judge {
 
@@ -17,13 +17,17 @@ double cv_or_infinity(const Candidate& candidate) { return criterion_value(candi
 
 double aic_of(const Candidate& candidate) { return criterion_value(candidate, Criterion::aic); }
 
-/// Index of the first candidate in the order of `below` among those that `qualify`.
+/// Index of the first candidate in the order of `below` among those that `qualify` and are admitted.
 template <class Qualifies, class Below>
-std::optional<std::size_t> first_by(std::span<const Candidate> ranked, Qualifies qualifies, Below below) {
-  std::optional<std::size_t> found;
+std::optional<std::size_t> first_by(std::span<const Candidate> ranked, const Admits& admits, Qualifies qualifies,
+                                    Below below) {
+  std::vector<std::size_t> order;
   for (std::size_t i = 0; i < ranked.size(); ++i)
-    if (qualifies(ranked[i]) && (!found || below(ranked[i], ranked[*found]))) found = i;
-  return found;
+    if (qualifies(ranked[i])) order.push_back(i);
+  std::stable_sort(order.begin(), order.end(),
+                   [&](std::size_t a, std::size_t b) { return below(ranked[a], ranked[b]); });
+  const auto found = std::find_if(order.begin(), order.end(), [&](std::size_t i) { return !admits || admits(i); });
+  return found == order.end() ? std::nullopt : std::optional(*found);
 }
 
 bool below_by_cv(const Candidate& a, const Candidate& b) {
@@ -51,25 +55,25 @@ std::size_t n_coefficients(const Candidate& candidate) {
   return candidate.likelihood.n_parameters > 0 ? candidate.likelihood.n_parameters - 1 : candidate.coefficients.size();
 }
 
-Picks find_picks(std::span<const Candidate> ranked, Criterion criterion, double near_tie) {
+Picks find_picks(std::span<const Candidate> ranked, Criterion criterion, double near_tie, const Admits& admits) {
+  constexpr double kNone = std::numeric_limits<double>::infinity();
   Picks picks;
-  const auto any_with_aic = [](const Candidate& candidate) {
-    return aic_of(candidate) < std::numeric_limits<double>::infinity();
-  };
-  picks.lowest_aic = first_by(ranked, any_with_aic, below_by_aic);
-  if (!ranked.empty() && criterion_value(ranked[0], criterion) < std::numeric_limits<double>::infinity())
-    picks.best = 0;
+  const auto by_rank = [](const Candidate&, const Candidate&) { return false; };
+  picks.best = first_by(
+      ranked, admits, [&](const Candidate& one) { return criterion_value(one, criterion) < kNone; }, by_rank);
+  picks.lowest_aic = first_by(
+      ranked, admits, [](const Candidate& one) { return aic_of(one) < kNone; }, below_by_aic);
   picks.lowest_cv = first_by(
-      ranked, [](const Candidate& candidate) { return candidate.cv.rmse.has_value(); }, below_by_cv);
+      ranked, admits, [](const Candidate& one) { return one.cv.rmse.has_value(); }, below_by_cv);
   if (!picks.lowest_cv) return picks;
 
   const Candidate& lowest = ranked[*picks.lowest_cv];
   const double near = *lowest.cv.rmse * (1.0 + near_tie);
   const double within_error = *lowest.cv.rmse + lowest.cv.rmse_se.value_or(0.0);
   picks.recommended = first_by(
-      ranked, [&](const Candidate& candidate) { return cv_or_infinity(candidate) <= near; }, below_by_aic);
+      ranked, admits, [&](const Candidate& one) { return cv_or_infinity(one) <= near; }, below_by_aic);
   picks.simplest = first_by(
-      ranked, [&](const Candidate& candidate) { return cv_or_infinity(candidate) <= within_error; }, below_by_size);
+      ranked, admits, [&](const Candidate& one) { return cv_or_infinity(one) <= within_error; }, below_by_size);
   return picks;
 }
 

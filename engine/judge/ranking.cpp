@@ -52,25 +52,27 @@ double criterion_value(const Candidate& candidate, Criterion criterion) {
   return std::isnan(value) ? std::numeric_limits<double>::infinity() : value;
 }
 
-std::vector<std::string> rank(std::vector<Candidate>& candidates, Criterion criterion, double near_tie) {
+void put_in_order(std::vector<Candidate>& candidates, Criterion criterion) {
   candidates = sorted(std::move(candidates), criterion);
   for (std::size_t i = 0; i < candidates.size(); ++i) {
     candidates[i].rank = i + 1;
     candidates[i].marks.clear();
   }
-  const Picks picks = find_picks(candidates, criterion, near_tie);
-  mark(candidates, picks.best, "best");
-  mark(candidates, picks.recommended, "recommended");
-  mark(candidates, picks.simplest, "simplest");
-  mark(candidates, picks.lowest_aic, "lowest AIC");
-  return remarks(candidates, picks, near_tie);
 }
 
-std::vector<Candidate> select(const std::vector<Candidate>& ranked, std::size_t n) {
-  std::vector<Candidate> selected;
-  for (std::size_t i = 0; i < ranked.size(); ++i)
-    if (i < n || !ranked[i].marks.empty()) selected.push_back(ranked[i]);
-  return selected;
+std::vector<std::string> name_lines(std::vector<Candidate>& ranked, Criterion criterion, double near_tie,
+                                    const Admits& admits) {
+  const Picks picks = find_picks(ranked, criterion, near_tie, admits);
+  mark(ranked, picks.best, "best");
+  mark(ranked, picks.recommended, "recommended");
+  mark(ranked, picks.simplest, "simplest");
+  mark(ranked, picks.lowest_aic, "lowest AIC");
+  return remarks(ranked, picks, near_tie);
+}
+
+std::vector<std::string> rank(std::vector<Candidate>& candidates, Criterion criterion, double near_tie) {
+  put_in_order(candidates, criterion);
+  return name_lines(candidates, criterion, near_tie, {});
 }
 
 }  // namespace formsieve::judge

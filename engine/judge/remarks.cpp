@@ -67,8 +67,14 @@ void say_simplest(std::span<const Candidate> ranked, const Picks& picks, std::ve
 void say_near_ties(std::span<const Candidate> ranked, const Picks& picks, double near_tie,
                    std::vector<std::string>& said) {
   if (!picks.lowest_cv || !picks.lowest_aic || ranked.size() < 2) return;
-  const double near = *ranked[*picks.lowest_cv].cv.rmse * (1.0 + near_tie);
-  const double lowest_aic = ranked[*picks.lowest_aic].likelihood.aic;
+  // of all examined, also where gates keep the lowest from being named
+  double lowest_cv = *ranked[*picks.lowest_cv].cv.rmse;
+  double lowest_aic = ranked[*picks.lowest_aic].likelihood.aic;
+  for (const Candidate& one : ranked) {
+    lowest_cv = std::min(lowest_cv, one.cv.rmse.value_or(lowest_cv));
+    lowest_aic = std::min(lowest_aic, one.likelihood.aic);
+  }
+  const double near = lowest_cv * (1.0 + near_tie);
   const auto count = [&](auto within) { return std::count_if(ranked.begin(), ranked.end(), within); };
   const auto by_cv = count([&](const Candidate& one) { return one.cv.rmse && *one.cv.rmse <= near; });
   const auto close = count([&](const Candidate& one) { return one.likelihood.aic <= lowest_aic + kCloseAic; });

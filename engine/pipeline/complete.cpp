@@ -8,6 +8,7 @@
 #include "report/equation.hpp"
 
 #include <cmath>
+#include <limits>
 
 namespace formsieve::pipeline {
 
@@ -86,6 +87,28 @@ std::vector<judge::ValidRange> Examiner::ranges(const search::Choice& choice) co
     ranges.push_back(std::move(range));
   }
   return ranges;
+}
+
+Status Examiner::check(const search::Choice& choice, judge::Candidate& candidate) const {
+  const Eigen::MatrixXd x = design_of(choice);
+  const auto fit = fit::least_squares(x, response_[choice.response], weights_);
+  if (!fit) return fit.error();
+  candidate.checks = checks::run_all(subject_of(candidate, x, *fit, weights_, prepared_.order));
+  return {};
+}
+
+std::vector<double> Examiner::predictions(const search::Choice& choice, std::size_t step) const {
+  const std::size_t n = prepared_.data.n_rows;
+  std::vector<double> means((n + step - 1) / step, std::numeric_limits<double>::quiet_NaN());
+  const auto fit = fit::quick_fit(design_of(choice), response_[choice.response], weights_);
+  if (!fit) return means;
+  const backtransform::Smearing smearing(prepared_.data.response_forms[choice.response], fit->residuals, weights_);
+  for (std::size_t k = 0; k < means.size(); ++k) {
+    const auto row = static_cast<Index>(k * step);
+    const double fitted = response_[choice.response][row] - fit->residuals[row];
+    means[k] = smearing.mean(fitted, weights_.size() > 0 ? weights_[row] : 1.0);
+  }
+  return means;
 }
 
 Status Examiner::complete(const search::Choice& choice, judge::Candidate& candidate) const {

@@ -257,6 +257,8 @@ void write_rank(PlanText& text, const run::Plan& plan) {
   text.set("by", toml_string(rank.by),
            "cv_rmse, the cross-validated error in the response's own units; or aic, aicc, bic");
   text.set("shortlist", std::to_string(rank.shortlist), "candidates listed");
+  text.set("families", rank.families ? "true" : "false",
+           "candidates with nearly the same predictions are shown as one line; false lists each by itself");
   text.set("near_tie", run::number_text(rank.near_tie),
            "within this share of the best error, the lowest AIC is recommended");
   const std::string remark = "checks that a listed candidate must pass";

@@ -43,6 +43,13 @@ class Examiner {
   /// ranges, equation, cautions.
   Status complete(const search::Choice& choice, judge::Candidate& candidate) const;
 
+  /// Fills in the checks alone: what a gate needs to know. Cost of one full fit and its checks.
+  Status check(const search::Choice& choice, judge::Candidate& candidate) const;
+
+  /// Smeared own-units predictions of the fit on all rows, at the rows in use number 0, step, 2·step, …; NaN where
+  /// undefined, all NaN where it cannot be fitted. Cost O(n k²).
+  std::vector<double> predictions(const search::Choice& choice, std::size_t step) const;
+
   /// What scores new rows by a completed candidate. Cost that of a FoldedFit, O(n k (k + folds)).
   Result<model::Model> model(const search::Choice& choice, const judge::Candidate& candidate) const;
 

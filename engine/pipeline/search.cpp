@@ -10,6 +10,7 @@
 #include "pipeline/examine.hpp"
 #include "pipeline/guarded.hpp"
 #include "pipeline/inseparable.hpp"
+#include "pipeline/listing.hpp"
 #include "pipeline/memory.hpp"
 #include "pipeline/meter.hpp"
 #include "pipeline/outputs.hpp"
@@ -27,7 +28,6 @@
 #include <spdlog/spdlog.h>
 
 #include <algorithm>
-#include <map>
 
 namespace formsieve::pipeline {
 
@@ -71,8 +71,6 @@ class Search {
   void visit_bounded();
   Beyond beyond() const;
   void examine();
-  void keep_only_required();
-  Status complete(std::vector<judge::Candidate>& candidates) const;
   Status rank_and_complete();
   void describe();
   void describe_walk();
@@ -81,9 +79,6 @@ class Search {
   Result<SearchOutcome> write();
 
   search::WalkOptions walk_options() const;
-  const search::Choice& choice_of(const judge::Candidate& candidate) const {
-    return choice_by_number_.at(candidate.number);
-  }
 
   const run::Plan& plan_;
   const SearchOptions& options_;
@@ -102,7 +97,7 @@ class Search {
   search::WalkResult walked_;
   std::vector<PoolList> lists_;
   std::vector<search::Scored> pool_;
-  std::map<std::string, search::Choice> choice_by_number_;
+  ChoiceByNumber choice_by_number_;
   std::vector<judge::Candidate> candidates_;
   judge::Shortlist shortlist_;
   bool examined_all_ = true;
@@ -327,37 +322,17 @@ void Search::examine() {
   shortlist_.space.examined = examined;
 }
 
-Status Search::complete(std::vector<judge::Candidate>& candidates) const {
-  std::vector<Status> status(candidates.size());
-  base::parallel_for(candidates.size(), options_.threads,
-                     [&](std::size_t i) { status[i] = examiner_->complete(choice_of(candidates[i]), candidates[i]); });
-  for (const auto& one : status)
-    if (!one) return one;
-  return {};
-}
-
-/// Candidates that fail a required check are set aside and counted; the others keep their record.
-void Search::keep_only_required() {
-  const auto fails = [this](const judge::Candidate& candidate) {
-    return std::any_of(candidate.checks.begin(), candidate.checks.end(), [this](const checks::Check& check) {
-      return !check.passes &&
-             std::find(plan_.rank.require.begin(), plan_.rank.require.end(), check.name) != plan_.rank.require.end();
-    });
-  };
-  shortlist_.space.set_aside_require = std::erase_if(candidates_, fails);
-}
-
 Status Search::rank_and_complete() {
-  const bool checks_first = !plan_.rank.require.empty();
-  if (checks_first) {
-    if (auto status = complete(candidates_); !status) return status;
-    keep_only_required();
-  }
   shortlist_.criterion = criterion_of(plan_.rank.by);
   shortlist_.near_tie = plan_.rank.near_tie;
-  shortlist_.remarks = judge::rank(candidates_, shortlist_.criterion, plan_.rank.near_tie);
-  shortlist_.candidates = judge::select(candidates_, plan_.rank.shortlist);
-  return checks_first ? Status() : complete(shortlist_.candidates);
+  auto listing =
+      list_candidates(*prepared_, *examiner_, plan_, std::move(candidates_), choice_by_number_, options_.threads);
+  if (!listing) return listing.error();
+  shortlist_.candidates = std::move(listing->candidates);
+  shortlist_.remarks = std::move(listing->remarks);
+  shortlist_.space.set_aside_require = listing->n_set_aside;
+  shortlist_.space.family_rule = listing->family_rule;
+  return {};
 }
 
 void Search::describe_walk() {

@@ -94,6 +94,13 @@ std::vector<Column> score_columns() {
           {"cautions", [](const Candidate& c) { return joined(c.cautions, "; ", as_is); }}};
 }
 
+/// After the predictors' terms, whose number changes: what came later goes last.
+std::vector<Column> family_columns() {
+  return {{"pareto", [](const Candidate& c) { return std::string(c.pareto ? "yes" : "no"); }},
+          {"n_siblings", [](const Candidate& c) { return std::to_string(c.siblings.size()); }},
+          {"siblings", [](const Candidate& c) { return joined(c.siblings, "; ", as_is); }}};
+}
+
 /// One column a predictor, holding its term: what a spreadsheet needs to filter by form.
 Column predictor_column(const std::string& predictor) {
   return {"term of " + predictor, [predictor](const Candidate& candidate) {
@@ -109,6 +116,7 @@ std::string shortlist_csv(const judge::Shortlist& shortlist) {
   std::vector<Column> columns = identity_columns();
   for (Column& column : score_columns()) columns.push_back(std::move(column));
   for (const judge::PredictorMenu& menu : shortlist.menus) columns.push_back(predictor_column(menu.column));
+  for (Column& column : family_columns()) columns.push_back(std::move(column));
   std::string text;
   const auto line = [&](auto&& cell) {
     for (std::size_t i = 0; i < columns.size(); ++i) {

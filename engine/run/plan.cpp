@@ -155,6 +155,7 @@ void read_rank(const toml::table& table, Plan::Rank& out, Findings& findings) {
   rank.number(
       "near_tie", [](double x) { return x >= 0.0 && x < 1.0; }, "from 0 to below 1", out.near_tie);
   rank.texts("require", false, out.require);
+  rank.yes_or_no("families", out.families);
 }
 
 void read_tables(const toml::table& root, Plan& plan, Findings& findings) {

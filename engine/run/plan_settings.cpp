@@ -40,6 +40,7 @@ constexpr Setting kSettings[] = {
     {"rank", "shortlist", R"(shortlist = 25)"},
     {"rank", "near_tie", R"(near_tie = 0.02)"},
     {"rank", "require", R"(require = ["equal-spread"])"},
+    {"rank", "families", R"(families = true)"},
 };
 
 /// The tables other than `table` that have this very key, "[data] or [forms]".

@@ -141,6 +141,15 @@ void TableReader::choice(const std::string& key, const std::vector<std::string>&
   if (auto word = choice_in(key, words)) out = std::move(*word);
 }
 
+void TableReader::yes_or_no(const std::string& key, bool& out) {
+  const toml::node* node = find(key);
+  if (node == nullptr) return;
+  if (const auto answer = node->value_exact<bool>())
+    out = *answer;
+  else
+    refuse_value(key, *node, "true or false");
+}
+
 void TableReader::texts(const std::string& key, bool empty_allowed, std::vector<std::string>& out) {
   const toml::node* node = find(key);
   if (node == nullptr) return;

@@ -42,6 +42,8 @@ class TableReader {
   void choice(const std::string& key, const std::vector<std::string>& words, std::optional<std::string>& out);
   /// A list of different texts; empty ones only where they mean something.
   void texts(const std::string& key, bool empty_allowed, std::vector<std::string>& out);
+  /// true or false.
+  void yes_or_no(const std::string& key, bool& out);
   /// A whole number from `lowest`.
   void count(const std::string& key, std::size_t lowest, std::size_t& out);
   void count(const std::string& key, std::size_t lowest, std::optional<std::size_t>& out);

@@ -136,6 +136,7 @@ void write_rank(const Plan::Rank& rank, Lines& lines) {
   lines.set("shortlist", std::to_string(rank.shortlist));
   lines.set("near_tie", number_text(rank.near_tie));
   lines.set("require", list_text(rank.require));
+  lines.set("families", rank.families ? "true" : "false");
 }
 
 std::string parameters_text(const FormEntry& entry) {

@@ -2,14 +2,19 @@
 // (NumPy 1.24.2, SciPy 1.10.1, statsmodels 0.13.5, mpmath); its `mp` entries are preferred where there are any.
 
 #include "checks/anderson_darling.hpp"
+#include "checks/condition.hpp"
+#include "checks/deletion.hpp"
 #include "checks/durbin_watson.hpp"
+#include "checks/ljung_box.hpp"
 #include "checks/moments.hpp"
-#include "checks/no_single_row.hpp"
 #include "checks/separable_terms.hpp"
 #include "checks/shapiro_wilk.hpp"
+#include "checks/spread.hpp"
+#include "checks/white.hpp"
 #include "checks/workings.hpp"
 #include "support.hpp"
 
+#include <boost/math/distributions/students_t.hpp>
 #include <catch2/catch.hpp>
 #include <nlohmann/json.hpp>
 
@@ -129,13 +134,19 @@ TEST_CASE("checks: reference figures are reproduced in every worked case", "[che
     same_or_absent(worked, "tests.reset.p", straight.p, kMarginOfP);
 
     const Check& row = check_named(checks, "no-single-row");
-    same(worked, "influence.cooks_max", row.statistic.value());
+    same(worked, "influence.cooks_max", row.size2.value());
+    same_or_absent(worked, "influence.max_abs_externally_studentised", row.statistic);
+    same_or_absent(worked, "influence.p_bonferroni", row.p);
     const auto cooks_row = worked.at("output").at("influence").at("cooks_max_row").get<int>();
     CHECK_THAT(row.size_words, Catch::Contains("row " + std::to_string(cooks_row + 1) + " of"));
 
     const Check& independent = check_named(checks, "independence");
     same(worked, "tests.durbin_watson", independent.statistic.value());
     same(worked, "tests.ljung_box_1.r1", independent.size, 1e-12);
+    for (const Check& check : checks) {
+      INFO(worked.at("id").get<std::string>() << " " << check.name);
+      CHECK(check.passes == (check.verdict != Verdict::broken));
+    }
   }
 }
 
@@ -159,6 +170,85 @@ TEST_CASE("checks: single statistics are reproduced in every worked case", "[che
       for (Eigen::Index i = 0; i < cooks.size(); ++i)
         CHECK(cooks[i] == Approx(theirs[static_cast<std::size_t>(i)].get<double>()).margin(1e-8 * cooks.maxCoeff()));
     same(worked, "influence.leverage_max", fit.leverage.maxCoeff());
+
+    const auto ljung = ljung_box(residuals, 1);
+    same(worked, "tests.ljung_box_1.r1", ljung.value().autocorrelation[0], 1e-12);
+    same(worked, "tests.ljung_box_1.Q", ljung.value().q, 1e-12);
+    same(worked, "tests.ljung_box_1.p", ljung.value().p, kMarginOfP);
+  }
+}
+
+TEST_CASE("checks: White's test is reproduced in every worked case, and skipped where it is saturated",
+          "[checks][reference]") {
+  int saturated = 0;
+  for (const json& worked : all_cases()) {
+    const Fitted fit = fit_of(worked);
+    const Subject subject = fit.subject();
+    const Workings workings = prepare(subject);
+    const auto test = white(workings.plain.q, centred_squares(workings));
+    INFO(worked.at("id").get<std::string>());
+    same_or_absent(worked, "tests.white.LM", test ? std::optional(test->lm) : std::nullopt);
+    if (!test) {
+      ++saturated;
+      continue;
+    }
+    same(worked, "tests.white.df", test->df);
+    same(worked, "tests.white.p", test->p, kMarginOfP);
+    same(worked, "tests.white.F", test->f);
+    same(worked, "tests.white.p_F", test->p_f, kMarginOfP);
+    const Check listed = check_named(run_all(subject), "equal-spread-any-shape");
+    const bool enough = fit.x.rows() >= 3 * white_columns(fit.x.cols());
+    CHECK(listed.statistic.has_value() == enough);
+    CHECK(listed.verdict.has_value() == enough);
+    if (enough) CHECK(listed.p.value() == test->p);
+  }
+  CHECK(saturated == 4);
+}
+
+TEST_CASE("checks: leverage, Cook and studentised residual of every row are reproduced in every worked case",
+          "[checks][reference]") {
+  int compared = 0;
+  const auto compare = [&](const json& worked, const char* name, const Eigen::VectorXd& ours) {
+    const json theirs = worked.at("output").at("influence").value(name, json());
+    if (!theirs.is_array()) return;
+    INFO(worked.at("id").get<std::string>() << " " << name);
+    REQUIRE(theirs.size() == static_cast<std::size_t>(ours.size()));
+    const double margin = 1e-8 * ours.cwiseAbs().maxCoeff();  // to a share of the largest
+    for (std::size_t i = 0; i < theirs.size(); ++i)
+      CHECK(ours[static_cast<Eigen::Index>(i)] == Approx(theirs[i].get<double>()).margin(margin));
+    ++compared;
+  };
+  for (const json& worked : all_cases()) {
+    const Fitted fit = fit_of(worked);
+    compare(worked, "leverage", fit.leverage);
+    compare(worked, "cooks", cook_distances(fit.subject()));
+    if (fit.x.rows() - fit.x.cols() < 2) continue;
+    const Eigen::VectorXd studentised = externally_studentised(fit.subject());
+    compare(worked, "externally_studentised", studentised);
+    const double largest = studentised.cwiseAbs().maxCoeff();
+    same(worked, "influence.max_abs_externally_studentised", largest);
+    Eigen::Index row = 0;
+    studentised.cwiseAbs().maxCoeff(&row);
+    CHECK(row == worked.at("output").at("influence").at("max_row").get<int>());
+    const double one =
+        2.0 * boost::math::cdf(boost::math::complement(
+                  boost::math::students_t(static_cast<double>(fit.x.rows() - fit.x.cols() - 1)), largest));
+    same(worked, "influence.p_raw", one, kMarginOfP);
+    same(worked, "influence.p_bonferroni", outlier_p(fit.subject(), largest).value(), kMarginOfP);
+  }
+  CHECK(compared > 60);
+}
+
+TEST_CASE("checks: the condition number of Belsley, Kuh and Welsch is reproduced in every worked case",
+          "[checks][reference]") {
+  for (const json& worked : all_cases()) {
+    const Fitted fit = fit_of(worked);
+    const Condition ours = condition(centred_basis(fit.x, fit.weights));  // of the √w-whitened design
+    const double theirs = worked.at("output").at("condition_belsley").get<double>();
+    INFO(worked.at("id").get<std::string>());
+    // a condition number κ carries a rounding of κ·ε, here of the file's own singular value decomposition
+    CHECK(ours.index[fit.x.cols() - 1] == Approx(theirs).epsilon(std::max(1e-10, theirs * 1e-14)));
+    CHECK(ours.proportion.rowwise().sum().isOnes(1e-12));
   }
 }
 

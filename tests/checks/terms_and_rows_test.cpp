@@ -1,4 +1,4 @@
-#include "checks/no_single_row.hpp"
+#include "checks/deletion.hpp"
 #include "checks/separable_terms.hpp"
 #include "checks/workings.hpp"
 #include "support.hpp"
@@ -115,7 +115,7 @@ TEST_CASE("checks: Cook distance and prediction change equal refits without the 
       CHECK(cooks[row] == Approx(change.squaredNorm() / 3.0).epsilon(1e-9));
       if (row == worst) CHECK(check.size == Approx(change.lpNorm<Eigen::Infinity>()).epsilon(1e-9));
     }
-    CHECK(check.statistic.value() == cooks.maxCoeff());
+    CHECK(check.size2.value() == cooks.maxCoeff());
   }
 }
 

@@ -97,6 +97,35 @@ TEST_CASE("cli: a narrow screen gets paragraphs", "[cli][unit]") {
   }
 }
 
+TEST_CASE("cli: compare sets ranks and named lines side by side, on any screen", "[cli][unit]") {
+  REQUIRE(searched().exit_code == 0);
+  const std::string run = stores().file("stores.run");
+  for (const char* columns : {"44", "80", "120"}) {
+    Setting screen;
+    screen.environment = {std::string("COLUMNS=") + columns};
+    const Outcome outcome = run_formsieve({"compare", run, "1", "2", "3"}, screen);
+    CHECK(outcome.exit_code == 0);
+    CHECK(outcome.err.empty());
+    CHECK(has(outcome.out, "Is one more accurate than fold noise?"));
+    CHECK(has(outcome.out, "Where do their predictions part?"));
+    for (const std::string& line : lines_of(outcome.out))
+      if (!has(line, "formsieve show ")) CHECK(formsieve::cli::display_width(line) <= std::stoul(columns));
+  }
+  const json parsed = json::parse(run_formsieve({"compare", run, "best", "2", "--json"}).out);
+  CHECK(parsed.at("candidates").size() == 2);
+  CHECK(parsed.at("pairs")[0].at("likelihood").at("words").is_string());
+}
+
+TEST_CASE("cli: compare refuses what it cannot set side by side", "[cli][unit]") {
+  REQUIRE(searched().exit_code == 0);
+  const std::string run = stores().file("stores.run");
+  check_error(run_formsieve({"compare", run, "1", "1"}), 2, "'1' is rank 1, which is named twice", "different");
+  check_error(run_formsieve({"compare", run, "1"}), 2, "two to five candidates can be compared, not 1", "two to five");
+  check_error(run_formsieve({"compare", run, "1", "best1"}), 2, "no rank 'best1'", "recommended");
+  check_error(run_formsieve({"compare", run}), 2, "needs RANK", "write formsieve compare RUN RANK RANK");
+  check_error(run_formsieve({"compare", "none.run", "1", "2"}), 2, "none.run", "");
+}
+
 TEST_CASE("cli: a table that is not there is bad data, a plan that is not there bad usage", "[cli][unit]") {
   check_error(run_formsieve({"survey", "none.csv"}), 3, "none.csv", "");
   check_error(run_formsieve({"search", "none.toml"}), 2, "none.toml", "");

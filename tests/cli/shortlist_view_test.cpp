@@ -32,6 +32,25 @@ TEST_CASE("cli: the table in 80 columns puts the terms under the figures", "[cli
             "      simplest: no predictor, the mean alone\n"));
 }
 
+TEST_CASE("cli: lines on the front carry a dot, and families say how many they stand for", "[cli][unit]") {
+  judge::Shortlist shortlist = samples::shortlist();
+  shortlist.candidates[0].pareto = shortlist.candidates[3].pareto = true;
+  shortlist.candidates[0].siblings = {"5", "6", shortlist.candidates[1].number};
+  const std::string page = shortlist_page(shortlist, "coldstores.run", plain_terminal(80));
+  CHECK(has(page,
+            " • 1  ln(y)     12,343 ± 613   4.3          2 / 3  0.934  none\n"
+            "      best: ln(floor_area) + √(101 − fill_percent) (+3 alike)\n"
+            "   2  ln(y)     12,352 ± 613   0.0          1 / 3  0.934  spread\n"
+            "      recommended, lowest AIC: √(floor_area) (alike to 1)\n"));
+  CHECK(has(page, "• 41  y "));
+  CHECK(has(unwrapped(page), "• no other line is as good by CV RMSE, number of terms and failing checks"));
+  CHECK(has(unwrapped(page), "+ alike: so many candidates further down"));
+  CHECK_FALSE(has(shortlist_page(samples::shortlist(), "a.run", plain_terminal(80)), "alike"));
+  CHECK_FALSE(has(shortlist_page(samples::shortlist(), "a.run", plain_terminal(80)), "•"));
+  for (const std::size_t width : {40U, 80U, 170U})
+    CHECK(widest_line(shortlist_page(shortlist, "coldstores.run", plain_terminal(width))) <= width);
+}
+
 TEST_CASE("cli: a wide shortlist has one line a candidate", "[cli][unit]") {
   const std::string page = shortlist_page(samples::shortlist(), "coldstores.run", plain_terminal(170));
   CHECK(

@@ -170,7 +170,6 @@ TEST_CASE("judge: without any CV error there is no best by it, and no recommenda
 TEST_CASE("judge: ranking nothing says so", "[judge][unit]") {
   std::vector<Candidate> none;
   CHECK(any_contains(rank(none, Criterion::cv_rmse, 0.02), "No candidate"));
-  CHECK(select(none, 5).empty());
 }
 
 TEST_CASE("judge: ranking twice leaves each mark once", "[judge][unit]") {
@@ -182,14 +181,23 @@ TEST_CASE("judge: ranking twice leaves each mark once", "[judge][unit]") {
   CHECK(all[1].marks == std::vector<std::string>{"recommended", "simplest", "lowest AIC"});
 }
 
-TEST_CASE("judge: select keeps the first by rank and every marked line further down", "[judge][unit]") {
+TEST_CASE("judge: names go to the first of each order that is admitted, and no more than needed is asked",
+          "[judge][unit]") {
   std::vector<Candidate> all{candidate("1", 10.0, 50.0, 6, 2.0), candidate("2", 10.5, 49.0, 6),
-                             candidate("3", 11.0, 48.0, 6), candidate("4", 11.5, 47.0, 2),
+                             candidate("3", 10.6, 48.0, 6), candidate("4", 11.5, 47.0, 2),
                              candidate("5", 99.0, 10.0, 6)};
-  rank(all, Criterion::cv_rmse, 0.02);
-  CHECK(numbers(select(all, 1)) == std::vector<std::string>{"1", "4", "5"});
-  CHECK(numbers(select(all, 2)) == std::vector<std::string>{"1", "2", "4", "5"});
-  CHECK(numbers(select(all, 25)).size() == 5);
+  put_in_order(all, Criterion::cv_rmse);
+  std::vector<std::size_t> asked;
+  (void)name_lines(all, Criterion::cv_rmse, 0.02, [&](std::size_t i) {
+    asked.push_back(i);
+    return i != 0 && i != 4;
+  });
+  CHECK(all[0].marks.empty());
+  CHECK(all[4].marks.empty());
+  CHECK(all[1].marks == std::vector<std::string>{"best"});
+  CHECK(all[2].marks == std::vector<std::string>{"recommended"});  // within 2 % of 10.5
+  CHECK(all[3].marks == std::vector<std::string>{"simplest", "lowest AIC"});
+  CHECK(std::count(asked.begin(), asked.end(), 2U) == 1);
 }
 
 TEST_CASE("judge: numbers are written for reading", "[judge][unit]") {

@@ -62,6 +62,17 @@ TEST_CASE("report: CSV has one line a candidate with its scores and terms", "[re
   CHECK(cell(rows, 2, "term of fill, percent").empty());
 }
 
+TEST_CASE("report: CSV ends with the front and the family of each line", "[report][unit]") {
+  judge::Shortlist s = test::plain_shortlist();
+  s.candidates[0].pareto = true;
+  s.candidates[0].siblings = {"12", "7"};
+  const auto rows = read_csv(report::shortlist_csv(s));
+  CHECK(std::vector<std::string>(rows[0].end() - 3, rows[0].end()) ==
+        std::vector<std::string>{"pareto", "n_siblings", "siblings"});
+  CHECK(std::vector<std::string>(rows[1].end() - 3, rows[1].end()) == std::vector<std::string>{"yes", "2", "12; 7"});
+  CHECK(std::vector<std::string>(rows[2].end() - 3, rows[2].end()) == std::vector<std::string>{"no", "0", ""});
+}
+
 TEST_CASE("report: CSV quotes what needs quoting and nothing else", "[report][unit]") {
   judge::Shortlist s = test::plain_shortlist();
   s.candidates.resize(1);

@@ -60,7 +60,8 @@ inline bool same_search(const Plan::Search& a, const Plan::Search& b) {
 }
 
 inline bool same_rank(const Plan::Rank& a, const Plan::Rank& b) {
-  return std::tie(a.by, a.shortlist, a.near_tie, a.require) == std::tie(b.by, b.shortlist, b.near_tie, b.require);
+  return std::tie(a.by, a.shortlist, a.near_tie, a.require, a.families) ==
+         std::tie(b.by, b.shortlist, b.near_tie, b.require, b.families);
 }
 
 inline bool same_plan(const Plan& a, const Plan& b) {

@@ -68,6 +68,7 @@ TEST_CASE("run: plan keeps every key of search and rank when read", "[run][unit]
   CHECK(plan.rank.shortlist == 10);
   CHECK(plan.rank.near_tie == 0.05);
   CHECK(plan.rank.require == std::vector<std::string>{"equal-spread", "straightness"});
+  CHECK_FALSE(plan.rank.families);
 }
 
 TEST_CASE("run: plan spreads lists of parameters and shifts into all combinations", "[run][unit]") {
@@ -132,6 +133,7 @@ TEST_CASE("run: plan has the defaults of the design when it names only file and 
   CHECK(plan.rank.by == "cv_rmse");
   CHECK(plan.rank.shortlist == 25);
   CHECK(plan.rank.near_tie == 0.02);
+  CHECK(plan.rank.families);
   CHECK(plan.data.rare_levels == 5);
   CHECK_FALSE(plan.data.missing);
 }

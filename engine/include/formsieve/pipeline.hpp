@@ -3,6 +3,7 @@
 #pragma once
 
 #include <formsieve/base.hpp>
+#include <formsieve/comparison.hpp>
 #include <formsieve/judge.hpp>
 #include <formsieve/model.hpp>
 #include <formsieve/run.hpp>
@@ -63,6 +64,13 @@ Result<std::string> draft(const run::Plan& plan, unsigned threads = 0);
 
 /// Reads the shortlist of a run folder.
 Result<judge::Shortlist> open_run(const std::string& run_folder);
+
+/// Two to five listed candidates of a run folder side by side, by rank. The plan and the table of the run are read
+/// again and the candidates refitted; where the table has changed or cannot be read, the comparison holds what the
+/// shortlist alone gives, and says what is missing. Errors: the run folder cannot be read; kind usage for ranks that
+/// are not listed, are named twice, or are fewer than two or more than five.
+Result<judge::Comparison> compare(const std::string& run_folder, const std::vector<std::size_t>& ranks,
+                                  unsigned threads = 0);
 
 /// Reads the models of a run folder, each checked. Errors: no run folder, no models in it (io), a broken file (data).
 Result<model::ModelSet> open_models(const std::string& run_folder);

@@ -2,6 +2,7 @@
 #pragma once
 
 #include <formsieve/base.hpp>
+#include <formsieve/comparison.hpp>
 #include <formsieve/judge.hpp>
 #include <formsieve/model.hpp>
 #include <formsieve/survey.hpp>
@@ -21,6 +22,9 @@ Result<model::ModelSet> read_models_json(const std::string& text, const std::str
 
 /// One line a candidate, RFC 4180, decimal point.
 std::string shortlist_csv(const judge::Shortlist& shortlist);
+
+/// Candidates side by side: `compare --json`.
+std::string comparison_json(const judge::Comparison& comparison);
 
 /// survey.json
 std::string survey_json(const survey::Survey& survey);

@@ -65,6 +65,7 @@ struct Plan {
     std::size_t shortlist = 25;
     double near_tie = 0.02;
     std::vector<std::string> require;  ///< names of checks
+    bool families = true;              ///< candidates with nearly the same predictions are shown as one line
   } rank;
 
   std::map<std::string, std::string>
