@@ -1,5 +1,5 @@
 // The mean in own units as a reader would write it.
-#include "backtransform/backtransform.hpp"
+#include "backtransform/corrections.hpp"
 
 #include <algorithm>
 #include <cmath>
@@ -101,11 +101,12 @@ std::string in_own_units(const forms::Form& response, const Piece& piece) {
   return response.shift == 0.0 ? piece.text : piece.text + added(-response.shift, kAllDigits);
 }
 
-std::string averaged_text(const Smearing& smearing) {
+std::string averaged_text(const Smearing& smearing, const std::string& which = "") {
   std::string of = smearing.n_residuals() > kMostResiduals ? "mean over 1,001 quantiles e of the " : "mean over the ";
   if (smearing.weighted()) of += "standardised ";
   of += "training residuals";
   if (smearing.n_residuals() <= kMostResiduals) of += " e";
+  of += which;
   return of + " of " + forms::inverse_label(smearing.response(), smearing.weighted() ? "η + e/√w" : "η + e");
 }
 
@@ -128,6 +129,31 @@ std::string formula(const Smearing& smearing, const std::string& response_column
   if (!closed || piece.names_eta) text += ", where η = " + right_hand_side;
   if (closed && smearing.weighted()) text += ", for a row of weight 1";
   return text;
+}
+
+std::string formula(const ThirdsSmearing& thirds, const std::string& response_column,
+                    const std::string& right_hand_side, int digits) {
+  const auto by_third = [&](const std::string& first, const std::string& second, const std::string& third) {
+    return first + " up to a form-scale prediction of " + signed_figure(thirds.cuts()[0], digits) + ", " + second +
+           " up to " + signed_figure(thirds.cuts()[1], digits) + " and " + third + " above";
+  };
+  const Smearing& first = thirds.of_third(0);
+  const std::string start = response_column + " = ", where = ", where η = " + right_hand_side;
+  const std::string weight = first.weighted() ? ", for a row of weight 1" : "";
+  if (first.kind() == Kind::ln || first.kind() == Kind::log10) {
+    const Piece piece{(first.kind() == Kind::ln ? "f · exp(" : "f · 10^(") + right_hand_side + ")"};
+    const auto factor = [&](std::size_t k) { return figure(thirds.of_third(k).mean_exp(), digits); };
+    return start + in_own_units(first.response(), piece) + ", where f is " + by_third(factor(0), factor(1), factor(2)) +
+           weight;
+  }
+  const auto piece = [&](std::size_t k) { return closed_piece(thirds.of_third(k), "η", digits); };
+  if (!piece(0).text.empty()) {
+    const auto text = [&](std::size_t k) { return in_own_units(first.response(), piece(k)); };
+    return start + by_third(text(0), text(1), text(2)) + where + weight;
+  }
+  return start + averaged_text(first, " of the row's third of the predictions") + where +
+         ", and the thirds end at η = " + signed_figure(thirds.cuts()[0], digits) + " and " +
+         signed_figure(thirds.cuts()[1], digits);
 }
 
 std::string formula_validity(const Smearing& smearing, int digits) {

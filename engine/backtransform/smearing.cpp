@@ -1,5 +1,6 @@
 #include "backtransform/backtransform.hpp"
 
+#include "backtransform/plain_kind.hpp"
 #include "backtransform/slices.hpp"
 #include "backtransform/vector_mean.hpp"
 #include "base/sums.hpp"
@@ -24,17 +25,6 @@ constexpr double kSmallArgument = 0.1;
 using Array = Eigen::Map<const Eigen::ArrayXd>;
 
 Array as_array(const std::vector<double>& values) { return {values.data(), static_cast<Eigen::Index>(values.size())}; }
-
-/// The plain form whose inverse is the same function of z.
-Kind plain_kind(const forms::Form& form) {
-  const double parameter = form.parameters.empty() ? 0.0 : form.parameters.front();
-  if (form.kind == Kind::box_cox && parameter == 0.0) return Kind::ln;
-  if (form.kind != Kind::power) return form.kind;
-  if (parameter == 1.0) return Kind::identity;
-  if (parameter == 0.5) return Kind::sqrt;
-  if (parameter == -1.0) return Kind::reciprocal;
-  return form.kind;
-}
 
 bool is_yeo_johnson_0(const forms::Form& form) {
   return form.kind == Kind::yeo_johnson && form.parameters.front() == 0.0;

@@ -11,7 +11,9 @@ namespace formsieve::backtransform {
 Correction judged(std::string method, double factor, std::span<const double> predicted,
                   std::span<const double> measured) {
   assert(!measured.empty() && predicted.size() % measured.size() == 0);
-  Correction correction{std::move(method), factor, std::nullopt, std::nullopt};
+  Correction correction;
+  correction.method = std::move(method);
+  correction.factor = factor;
   std::vector<double> error(predicted.size());
   for (std::size_t i = 0; i < predicted.size(); ++i) {
     error[i] = predicted[i] - measured[i % measured.size()];
@@ -39,8 +41,10 @@ Summary summarise(const Smearing& smearing, const Eigen::Ref<const Eigen::Vector
   const auto constant = smearing.constant_factor();
   summary.smearing_factor = constant ? *constant : mean_ratio(smearing, eta, weights);
   summary.formula = formula(smearing, response_column, right_hand_side);
-  summary.corrections = {{"none", 1.0, std::nullopt, std::nullopt},
-                         {"smearing", summary.smearing_factor, std::nullopt, std::nullopt}};
+  summary.corrections.resize(2);
+  summary.corrections[0].method = "none";
+  summary.corrections[1].method = "smearing";
+  summary.corrections[1].factor = summary.smearing_factor;
   return summary;
 }
 

@@ -16,21 +16,10 @@ double power_of_base(Kind kind, double z) { return kind == Kind::log10 ? std::po
 
 }  // namespace
 
-Kind plain_kind(const forms::Form& form) {
-  const double parameter = form.parameters.empty() ? 0.0 : form.parameters.front();
-  if (form.kind == Kind::box_cox && parameter == 0.0) return Kind::ln;
-  if (form.kind != Kind::power) return form.kind;
-  if (parameter == 1.0) return Kind::identity;
-  if (parameter == 0.5) return Kind::sqrt;
-  if (parameter == -1.0) return Kind::reciprocal;
-  return form.kind;
-}
-
 Mean::Mean(const forms::Form& response, const MeanRule& rule)
-    : plain_{response.kind, response.parameters},
-      kind_(plain_kind(response)),
-      sign_(response.reflect ? -1.0 : 1.0),
-      offset_(response.reflect ? *response.reflect + response.shift : -response.shift),
+    : plain_(backtransform::plain_form(response)),
+      kind_(backtransform::plain_kind(response)),
+      back_(response),
       rule_(rule) {}
 
 void Mean::of(std::span<const double> eta, std::span<const double> weights, std::span<const double> naive,
@@ -38,7 +27,7 @@ void Mean::of(std::span<const double> eta, std::span<const double> weights, std:
   for (std::size_t i = 0; i < eta.size(); ++i) {
     const double root = weights.empty() ? 1.0 : 1.0 / std::sqrt(weights[i]);
     std::size_t part = 0;
-    while (part < rule_.cuts.size() && eta[i] >= rule_.cuts[part]) ++part;
+    while (part < rule_.cuts.size() && eta[i] > rule_.cuts[part]) ++part;
     const double mean = one(rule_.parts[part], eta[i], root, naive[i], work);
     out[i] = std::isfinite(mean) ? mean : kNaN;
   }
@@ -47,8 +36,8 @@ void Mean::of(std::span<const double> eta, std::span<const double> weights, std:
 double Mean::one(const MeanPart& part, double eta, double root, double naive, MeanWorkspace& work) const {
   if (part.factor) return *part.factor * naive;
   // exp(η) has been worked out already.
-  if (root == 1.0 && kind_ == Kind::ln) return offset_ + part.mean_exp * (naive - offset_);
-  return offset_ + sign_ * argument_mean(part, eta, root, work);
+  if (root == 1.0 && kind_ == Kind::ln) return back_.offset + part.mean_exp * (naive - back_.offset);
+  return back_(argument_mean(part, eta, root, work));
 }
 
 /// The mean of u = h(η + e·root), before reflection and shift.

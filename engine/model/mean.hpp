@@ -1,6 +1,8 @@
 // The mean in own units by the rule of a kept model.
 #pragma once
 
+#include "backtransform/plain_kind.hpp"
+
 #include <formsieve/model.hpp>
 
 #include <cstddef>
@@ -34,11 +36,8 @@ class Mean {
 
   forms::Form plain_;  ///< the response form without reflection and shift
   forms::Kind kind_;   ///< the plain form that it equals
-  double sign_ = 1.0, offset_ = 0.0;
+  backtransform::WayBack back_;
   MeanRule rule_;
 };
-
-/// The plain form whose inverse is the same function: Box–Cox 0 is ln, power ½ the square root.
-forms::Kind plain_kind(const forms::Form& form);
 
 }  // namespace formsieve::model

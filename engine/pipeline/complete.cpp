@@ -1,12 +1,14 @@
 #include "pipeline/examine.hpp"
 
-#include "base/sums.hpp"
-#include "backtransform/backtransform.hpp"
+#include "backtransform/effects.hpp"
 #include "checks/checks.hpp"
 #include "fit/least_squares.hpp"
 #include "judge/judge.hpp"
+#include "pipeline/held_out_intervals.hpp"
+#include "pipeline/own_units.hpp"
 #include "report/equation.hpp"
 
+#include <algorithm>
 #include <cmath>
 #include <limits>
 
@@ -39,35 +41,12 @@ checks::Subject subject_of(const judge::Candidate& candidate, const Eigen::Matri
   return subject;
 }
 
-/// R² in own units of the smeared predictions, and the mean smeared over the mean uncorrected prediction, on the rows
-/// in use.
-struct OwnUnits {
-  std::optional<double> r2;
-  double factor = 1.0;
-};
-
-OwnUnits own_units(const backtransform::Smearing& smearing, const fit::Fit& fit, const std::vector<double>& measured,
-                   const Eigen::VectorXd& weights) {
-  const std::size_t n = measured.size();
-  std::vector<double> error(n);
-  std::vector<double> mean(n);
-  std::vector<double> naive(n);
-  for (std::size_t i = 0; i < n; ++i) {
-    const auto row = static_cast<Index>(i);
-    mean[i] = smearing.mean(fit.fitted[row], weights.size() > 0 ? weights[row] : 1.0);
-    naive[i] = smearing.naive(fit.fitted[row]);
-    error[i] = measured[i] - mean[i];
-  }
-  OwnUnits result;
-  const double sse = base::sum_of_squares(error, 0.0);
-  const double tss = base::sum_of_squares(measured, base::mean(measured));
-  if (std::isfinite(sse)) result.r2 = 1.0 - sse / tss;
-  const double ratio = base::sum(mean) / base::sum(naive);
-  if (const auto constant = smearing.constant_factor())
-    result.factor = *constant;
-  else if (std::isfinite(ratio))
-    result.factor = ratio;
-  return result;
+/// Whether a check that looks at spread against the fitted value is broken.
+bool is_spread_broken(const std::vector<checks::Check>& checks) {
+  return std::any_of(checks.begin(), checks.end(), [](const checks::Check& check) {
+    if (check.name != "equal-spread" && check.name != "equal-spread-by-thirds") return false;
+    return check.verdict ? *check.verdict == checks::Verdict::broken : !check.passes;
+  });
 }
 
 }  // namespace
@@ -122,20 +101,54 @@ Status Examiner::complete(const search::Choice& choice, judge::Candidate& candid
                                                    log_jacobian_[choice.response], half_log_weights_);
   candidate.r2_form_scale = 1.0 - fit->rss / fit->tss;
 
-  const backtransform::Smearing smearing(candidate.response, fit->residuals, weights_);
-  const OwnUnits own = own_units(smearing, *fit, prepared_.data.response, weights_);
-  candidate.r2_own_units = own.r2;
-  candidate.back.smearing_factor = own.factor;
-  for (auto& correction : candidate.back.corrections)
-    if (correction.method == "smearing") correction.factor = own.factor;
-
   candidate.checks = checks::run_all(subject_of(candidate, x, *fit, weights_, prepared_.order));
   candidate.ranges = ranges(choice);
   candidate.equation = report::equation(candidate);
-  candidate.back.formula =
-      backtransform::formula(smearing, candidate.response_column, report::linear_predictor(candidate));
+  if (auto status = back_to_own_units(choice, x, *fit, candidate); !status) return status;
   candidate.cautions = judge::candidate_cautions(candidate);
   return {};
+}
+
+Status Examiner::back_to_own_units(const search::Choice& choice, const Eigen::MatrixXd& x, const fit::Fit& fit,
+                                   judge::Candidate& candidate) const {
+  const Eigen::VectorXd& z = response_[choice.response];
+  const FittedRows rows{candidate.response, x, z, weights_, prepared_.data.response, prepared_.folds};
+  auto own = own_units(rows, fit, is_spread_broken(candidate.checks), candidate.response_column,
+                       report::linear_predictor(candidate));
+  if (!own) return own.error();
+  candidate.r2_own_units = own->r2_own_units;
+  auto& back = candidate.back;
+  back.smearing_factor = own->smearing_factor;
+  back.corrections = std::move(own->corrections);
+  back.used = own->used_name;
+  back.why_used = own->why_used;
+  back.mean_median_words = own->mean_median_words;
+  back.formula = own->formula;
+  const fit::FoldedFit folded(x, z, weights_, prepared_.folds.fold_of.front(), prepared_.folds.count);
+  back.intervals = {own->normal, judged_cross_interval(rows, folded)};
+
+  const std::vector<backtransform::EffectTerm> terms = effect_terms(choice);
+  candidate.effects = backtransform::effects({candidate.response, candidate.response_column, terms, fit.coefficients,
+                                              fit.covariance, static_cast<double>(x.rows() - x.cols()), *own->used});
+  return {};
+}
+
+std::vector<backtransform::EffectTerm> Examiner::effect_terms(const search::Choice& choice) const {
+  std::vector<backtransform::EffectTerm> terms;
+  for (std::size_t j = 0; j < choice.choice.size(); ++j) {
+    if (choice.choice[j] == 0) continue;
+    const design::Predictor& predictor = prepared_.data.predictors[j];
+    const survey::ColumnProfile& profile = profile_of(prepared_.survey, predictor.column);
+    backtransform::EffectTerm term{predictor.column, predictor.menu[choice.choice[j] - 1], prepared_.direction[j]};
+    term.min = profile.facts.min;
+    term.q1 = profile.q1;
+    term.median = profile.median;
+    term.q3 = profile.q3;
+    term.max = profile.facts.max;
+    if (predictor.text) term.most_frequent = profile.facts.levels.front();
+    terms.push_back(std::move(term));
+  }
+  return terms;
 }
 
 }  // namespace formsieve::pipeline

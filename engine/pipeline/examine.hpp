@@ -5,7 +5,9 @@
 #include <formsieve/judge.hpp>
 #include <formsieve/model.hpp>
 
+#include "backtransform/effects.hpp"
 #include "fit/folded_fit.hpp"
+#include "fit/least_squares.hpp"
 #include "pipeline/prepare.hpp"
 #include "search/space.hpp"
 
@@ -68,6 +70,9 @@ class Examiner {
   bool contradicts(const search::Choice& choice, const Eigen::VectorXd& coefficients) const;
   judge::Candidate named(const search::Choice& choice, const search::BigCount& number) const;
   std::vector<judge::ValidRange> ranges(const search::Choice& choice) const;
+  Status back_to_own_units(const search::Choice& choice, const Eigen::MatrixXd& x, const fit::Fit& fit,
+                           judge::Candidate& candidate) const;
+  std::vector<backtransform::EffectTerm> effect_terms(const search::Choice& choice) const;
 
   const Prepared& prepared_;
   std::vector<std::size_t> all_rows_;

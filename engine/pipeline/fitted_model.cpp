@@ -2,6 +2,7 @@
 #include "pipeline/examine.hpp"
 
 #include "backtransform/backtransform.hpp"
+#include "backtransform/corrections.hpp"
 #include "backtransform/slices.hpp"
 #include "model/held_out.hpp"
 
@@ -61,6 +62,36 @@ model::MeanPart mean_part(const forms::Form& response, const Eigen::VectorXd& re
   return part;
 }
 
+/// A row at a cut must stay in its third in whatever order its prediction is summed up.
+constexpr double kCutRounding = 1e-11;
+
+/// The rule that the candidate uses: smearing, or smearing within thirds.
+model::MeanRule mean_rule(const judge::Candidate& candidate, const Eigen::VectorXd& fitted, const Eigen::VectorXd& z,
+                          const Eigen::VectorXd& weights, const std::vector<double>& measured) {
+  const Eigen::VectorXd residuals = z - fitted;
+  model::MeanRule rule;
+  rule.method = candidate.back.used;
+  if (rule.method != backtransform::method_name(backtransform::Method::thirds)) {
+    rule.parts = {mean_part(candidate.response, residuals, weights)};
+    return rule;
+  }
+  const Eigen::Map<const Eigen::VectorXd> own(measured.data(), fitted.size());
+  const auto df = static_cast<double>(candidate.n) - static_cast<double>(candidate.coefficients.size());
+  const backtransform::ThirdsSmearing thirds(
+      {candidate.response, fitted, residuals, weights, own, candidate.sigma, df});
+  for (const double cut : thirds.cuts()) rule.cuts.push_back(cut + kCutRounding * std::max(1.0, std::abs(cut)));
+  for (std::size_t third = 0; third < 3; ++third) {
+    std::vector<Index> rows;
+    for (Index i = 0; i < fitted.size(); ++i)
+      if (thirds.third_of(fitted[i]) == third) rows.push_back(i);
+    const bool has_own = static_cast<Index>(rows.size()) >= backtransform::kSmallestThird;
+    const Eigen::VectorXd of_third = has_own ? residuals(rows).eval() : residuals;
+    const Eigen::VectorXd weights_of = has_own && weights.size() > 0 ? weights(rows).eval() : weights;
+    rule.parts.push_back(mean_part(candidate.response, of_third, weights_of));
+  }
+  return rule;
+}
+
 std::vector<model::Term> terms_of(const judge::Candidate& candidate) {
   std::vector<model::Term> terms;
   for (std::size_t i = 0; i < candidate.terms.size(); ++i) {
@@ -115,8 +146,7 @@ Result<model::Model> Examiner::model(const search::Choice& choice, const judge::
   model.n = candidate.n;
   model.largest_leverage = largest_leverage(x, triangle);
   const Eigen::Map<const Eigen::VectorXd> beta(model.coefficients.data(), x.cols());
-  model.mean.method = "smearing";
-  model.mean.parts = {mean_part(model.response, z - x * beta, weights_)};
+  model.mean = mean_rule(candidate, x * beta, z, weights_, prepared_.data.response);
   if (auto status = keep_folds(x, z, folded, model); !status) return status.error();
   return model;
 }

@@ -1,12 +1,14 @@
 // Own-units figures of the worked cases, in the sample and over the given folds. Values: tests/reference/cases, NumPy
 // 1.24.2 and, where the case has 25 digits, mpmath.
 #include "backtransform/backtransform.hpp"
+#include "backtransform/normal_theory.hpp"
 #include "fit/least_squares.hpp"
 #include "reference/comparison.hpp"
 #include "reference/worked_case.hpp"
 
 #include <catch2/catch.hpp>
 
+#include <limits>
 #include <map>
 #include <set>
 
@@ -64,15 +66,24 @@ void compare_figures(Comparison& compare, const WorkedCase& worked, const std::s
 }
 
 struct Predictions {
-  Eigen::VectorXd mean_own, naive_own, eta;
+  Eigen::VectorXd mean_own, naive_own, normal_own, eta;
+  double nearest_edge_sd = std::numeric_limits<double>::infinity();  ///< smallest η over its residual sd
 };
+
+/// √rss/df of a training part; a case of as many rows as coefficients has none.
+double sigma_of(const Eigen::VectorXd& residuals, const Eigen::VectorXd& weights, Eigen::Index p) {
+  double rss = 0.0;
+  for (Eigen::Index i = 0; i < residuals.size(); ++i) rss += weight_of(weights, i) * residuals(i) * residuals(i);
+  return std::sqrt(rss / static_cast<double>(residuals.size() - p));
+}
 
 /// Held-out predictions over the given folds: coefficients and smearing from the training rows alone.
 Predictions held_out(const WorkedCase& worked) {
   const Eigen::MatrixXd x = worked.design();
   const Eigen::VectorXd z = worked.response(), w = worked.weights();
   const std::vector<int> folds = worked.folds();
-  Predictions out{Eigen::VectorXd(z.size()), Eigen::VectorXd(z.size()), Eigen::VectorXd(z.size())};
+  Predictions out{Eigen::VectorXd(z.size()), Eigen::VectorXd(z.size()), Eigen::VectorXd(z.size()),
+                  Eigen::VectorXd(z.size())};
   for (const int fold : std::set<int>(folds.begin(), folds.end())) {
     std::vector<Eigen::Index> training;
     for (std::size_t i = 0; i < folds.size(); ++i) {
@@ -83,11 +94,15 @@ Predictions held_out(const WorkedCase& worked) {
     const auto fitted = fit::quick_fit(x(training, Eigen::all), z(training), w_training);
     REQUIRE(fitted.ok());
     const backtransform::Smearing smearing(response_form(worked), fitted->residuals, w_training);
+    const double sigma = sigma_of(fitted->residuals, w_training, x.cols());
+    const backtransform::NormalMean normal(response_form(worked), sigma);
     for (Eigen::Index i = 0; i < z.size(); ++i) {
       if (folds[static_cast<std::size_t>(i)] != fold) continue;
       out.eta(i) = x.row(i).dot(fitted->coefficients);
       out.mean_own(i) = smearing.mean(out.eta(i), weight_of(w, i));
       out.naive_own(i) = smearing.naive(out.eta(i));
+      out.normal_own(i) = normal(out.eta(i), weight_of(w, i));
+      out.nearest_edge_sd = std::min(out.nearest_edge_sd, out.eta(i) / sigma * std::sqrt(weight_of(w, i)));
     }
   }
   return out;
@@ -130,6 +145,42 @@ TEST_CASE("backtransform: worked cases give the cross-validated own-units figure
     compare_figures(compare, worked, "cv.natural.smearing_clamped", out.mean_own);
     compare_figures(compare, worked, "cv.natural.naive_clamped", out.naive_own);
   }
+  compare.report();
+}
+
+/// The cases take the normal mean of sqrt as η² + s², without an edge at 0: the same where η is well above it.
+bool has_the_same_normal_mean(const WorkedCase& worked, double nearest_edge_sd) {
+  return response_form(worked).kind != forms::Kind::sqrt || nearest_edge_sd > 8.0;
+}
+
+TEST_CASE("backtransform: worked cases give the normal-theory figures", "[backtransform][reference]") {
+  Comparison compare(kTolerated);
+  std::size_t in_sample = 0, held = 0;
+  for (const WorkedCase& worked : reference::worked_cases()) {
+    const Eigen::VectorXd w = worked.weights();
+    const auto fitted = fit::least_squares(worked.design(), worked.response(), w);
+    REQUIRE(fitted.ok());
+    const backtransform::NormalMean normal(response_form(worked), fitted->sigma);
+    Eigen::VectorXd mean(fitted->fitted.size());
+    double nearest_edge_sd = std::numeric_limits<double>::infinity();
+    for (Eigen::Index i = 0; i < mean.size(); ++i) {
+      mean(i) = normal(fitted->fitted(i), weight_of(w, i));
+      nearest_edge_sd = std::min(nearest_edge_sd, fitted->fitted(i) / fitted->sigma * std::sqrt(weight_of(w, i)));
+    }
+    if (worked.figure("natural_in_sample.normal.rmse") && has_the_same_normal_mean(worked, nearest_edge_sd)) {
+      compare_figures(compare, worked, "natural_in_sample.normal", mean);
+      ++in_sample;
+    }
+    if (const auto factor = worked.figure("normal_factor"))
+      compare.check(worked, "normal_factor", std::exp(0.5 * fitted->sigma * fitted->sigma), *factor);
+    if (worked.folds().empty() || !worked.figure("cv.natural.normal.rmse")) continue;
+    const Predictions out = held_out(worked);
+    if (!has_the_same_normal_mean(worked, out.nearest_edge_sd)) continue;
+    compare_figures(compare, worked, "cv.natural.normal", out.normal_own);
+    ++held;
+  }
+  CHECK(in_sample >= 19);
+  CHECK(held >= 18);
   compare.report();
 }
 

@@ -142,7 +142,7 @@ TEST_CASE("model: a rule in parts takes the part of the fitted value", "[model][
   Scores scores;
   const std::vector<double> x = {0.5, 1.0, 1.5, 2.0, 2.5};
   scorer.score(std::vector<std::span<const double>>{x}, {}, x.size(), work, scores);
-  const double factors[] = {1.5, 2.0, 2.0, 3.0, 3.0};
+  const double factors[] = {1.5, 1.5, 2.0, 2.0, 3.0};
   for (std::size_t i = 0; i < x.size(); ++i) CHECK(scores.mean[i] == Approx(factors[i] * std::exp(x[i])));
   CHECK(std::isnan(scores.low_cross[0]));  // no folds, no CV+
 }

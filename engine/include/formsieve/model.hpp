@@ -38,7 +38,7 @@ struct MeanPart {
 /// How a prediction of the median becomes one of the mean.
 struct MeanRule {
   std::string method = "smearing";  ///< as backtransform::Summary::used
-  std::vector<double> cuts;         ///< rising, fitted values on the form's scale: part i + 1 begins at cuts[i]
+  std::vector<double> cuts;         ///< rising, fitted values on the form's scale: up to cuts[i] part i holds
   std::vector<MeanPart> parts;      ///< cuts.size() + 1
 };
 

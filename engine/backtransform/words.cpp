@@ -1,0 +1,46 @@
+#include "backtransform/words.hpp"
+
+#include <array>
+#include <charconv>
+#include <cmath>
+
+namespace formsieve::backtransform {
+
+namespace {
+
+std::string digits_of(double size, int significant) {
+  constexpr double kWholeFrom = 999.5;  // people read numbers of this size in full; 999.6 is 1,000
+  constexpr double kWholeTo = 1e7;
+  std::array<char, 64> buffer{};
+  char* const end = buffer.data() + buffer.size();
+  const bool whole = size >= kWholeFrom && size < kWholeTo && (significant <= 3 || size == std::floor(size));
+  if (!whole)
+    return {buffer.data(), std::to_chars(buffer.data(), end, size, std::chars_format::general, significant).ptr};
+  std::string digits{buffer.data(), std::to_chars(buffer.data(), end, size, std::chars_format::fixed, 0).ptr};
+  for (std::size_t at = digits.size(); at > 3; at -= 3) digits.insert(at - 3, ",");
+  return digits;
+}
+
+}  // namespace
+
+std::string number_words(double value, int significant) {
+  return (value < 0.0 ? "−" : "") + digits_of(std::abs(value), significant);
+}
+
+NumberPair pair_words(double first, double second) {
+  constexpr int kMostDigits = 15;
+  NumberPair pair;
+  for (int digits = 3; digits <= kMostDigits; ++digits) {
+    pair = {number_words(first, digits), number_words(second, digits)};
+    if (pair.first != pair.second || first == second) break;
+  }
+  return pair;
+}
+
+std::string percent_words(double share) {
+  const double percent = std::abs(share) * 100.0;
+  const int significant = percent >= 99.5 ? 3 : 2;  // 99.7 must not become 1e+02
+  return (share < 0.0 ? "−" : "") + digits_of(percent, significant) + " %";
+}
+
+}  // namespace formsieve::backtransform
