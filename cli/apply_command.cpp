@@ -74,7 +74,6 @@ void say_what_happened(const pipeline::ApplySummary& summary) {
   page.prose(text + ".");
   if (!summary.has_normal) page.prose("The fit has no degrees of freedom left: there are no normal-theory intervals.");
   if (!summary.has_cross) page.prose("The fit has too few rows for CV+ intervals of this level.");
-  if (summary.stopped_early) page.prose("Stopped early: the rows that follow were not scored.");
   (void)write_all(kStandardError, page.text());
 }
 
@@ -99,8 +98,13 @@ pipeline::TextSink sink_for(OutputFile* file) {
   };
 }
 
-Result<pipeline::ApplySummary> score(const ApplyArguments& arguments, const run::Plan& plan, const model::ModelSet& set,
-                                     const model::Model& model) {
+struct Scored {
+  pipeline::ApplySummary summary;
+  bool by_signal = false;  ///< ended by one, before the last row
+};
+
+Result<Scored> score(const ApplyArguments& arguments, const run::Plan& plan, const model::ModelSet& set,
+                     const model::Model& model) {
   const Result<table::ByteStream> text = table::open_stream(arguments.data);
   if (!text) return text.error();
   std::optional<OutputFile> file;
@@ -114,9 +118,12 @@ Result<pipeline::ApplySummary> score(const ApplyArguments& arguments, const run:
   pipeline::ApplyOptions options = options_for(arguments, plan);
   options.progress = [&line](const Progress& progress) { line.update(progress); };
   auto summary = pipeline::apply(set, model, *text, options, sink_for(file ? &*file : nullptr), signals.token());
-  if (!summary || !file) return summary;
+  if (!summary) return summary.error();
+  const Scored scored{*summary, summary->stopped_early && signals.token().stop_requested()};
+  // A file is complete or not there at all.
+  if (!file || scored.by_signal) return scored;
   if (const Status status = file->finish(""); !status) return status.error();
-  return summary;
+  return scored;
 }
 
 int run_apply(const ApplyArguments& arguments) {
@@ -126,10 +133,13 @@ int run_apply(const ApplyArguments& arguments) {
   if (!model) return refused(model.error(), {}, true);
   const Result<run::Plan> plan = reading_plan(arguments);
   if (!plan) return refused(plan.error(), {}, true);
-  const Result<pipeline::ApplySummary> summary = score(arguments, *plan, *set, **model);
-  if (!summary) return refused(summary.error(), *plan);
-  say_what_happened(*summary);
-  return summary->stopped_early && arguments.out ? kStoppedEarly : kDone;
+  const Result<Scored> scored = score(arguments, *plan, *set, **model);
+  if (!scored) return refused(scored.error(), *plan);
+  say_what_happened(scored->summary);
+  if (!scored->by_signal) return kDone;
+  (void)write_all(kStandardError, arguments.out ? "Stopped early: no file was written.\n"
+                                                : "Stopped early: the rows that follow were not scored.\n");
+  return kStoppedEarly;
 }
 
 }  // namespace

@@ -39,28 +39,29 @@ class Applying {
 
   Result<ApplySummary> run() {
     while (!summary_.stopped_early) {
-      const Result<bool> more = read_blocks();
-      if (!more) return more.error();
+      const bool more = read_blocks();
       std::vector<Status> status(blocks_.size());
       base::parallel_for(blocks_.size(), threads_, [&](std::size_t i) { status[i] = scorers_[i]->run(blocks_[i]); });
       for (std::size_t i = 0; i < blocks_.size() && !summary_.stopped_early; ++i) {
         if (!status[i]) return status[i].error();
         if (auto written = write(i); !written) return written.error();
       }
-      if (!*more) break;
+      if (failure_) return *failure_;
+      if (!more) break;
       if (meter_.stopped()) summary_.stopped_early = true;
     }
     return summary_;
   }
 
  private:
-  /// One block a thread; false when these are the last.
-  Result<bool> read_blocks() {
+  /// One block a thread; false when these are the last. A failure waits until what came before it has been written, so
+  /// that the output up to it is the same for any number of threads.
+  bool read_blocks() {
     blocks_.clear();
     while (blocks_.size() < threads_) {
       Result<std::optional<table::RowBlock>> block = stream_.next();
-      if (!block) return block.error();
-      if (!*block) return false;
+      if (!block) failure_ = block.error();
+      if (failure_ || !*block) return false;
       blocks_.push_back(**std::move(block));
     }
     return true;
@@ -82,6 +83,7 @@ class Applying {
   unsigned threads_;
   std::vector<std::unique_ptr<BlockScorer>> scorers_;
   std::vector<table::RowBlock> blocks_;
+  std::optional<Error> failure_;  ///< of reading
   ApplySummary summary_;
 };
 

@@ -391,8 +391,9 @@ void Search::describe() {
 model::ModelSet Search::models() const {
   const auto& listed = shortlist_.candidates;
   std::vector<std::optional<Result<model::Model>>> models(listed.size());
-  base::parallel_for(listed.size(), options_.threads,
-                     [&](std::size_t i) { models[i].emplace(examiner_->model(choice_of(listed[i]), listed[i])); });
+  base::parallel_for(listed.size(), options_.threads, [&](std::size_t i) {
+    models[i].emplace(examiner_->model(choice_by_number_.at(listed[i].number), listed[i]));
+  });
   model::ModelSet set{version(), prepared_->summary.response, prepared_->summary.weight, {}};
   for (auto& model : models) {
     if (*model)
