@@ -42,7 +42,7 @@ bool is_far(double leverage, double average);
 /// The largest rows by Cook's distance, those whose studentised residual is significant by Bonferroni at kLevel, and
 /// the one of largest leverage when is_far says so; most influential (by Cook, full leverage before all)
 /// first. All leave-one-out figures are exact (checks/deletion.hpp). `coefficients` [p] name the columns, intercept
-/// first; `lines` gives each row its data row in the table, or is empty (line 0). leader_without is left unset. Empty
+/// first; `lines` gives each row its line in the file, or is empty (line 0). leader_without is left unset. Empty
 /// where there are no residuals to judge (exact fit, no degrees of freedom, rank). Cost O(n k²), most of it one QR.
 Influence influence(const Subject& subject, std::span<const fit::Coefficient> coefficients,
                     const std::optional<Insensitive>& robust = std::nullopt, std::span<const std::size_t> lines = {});
