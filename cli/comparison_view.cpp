@@ -19,6 +19,8 @@ using judge::PairComparison;
 constexpr int kErrorDigits = 4;
 // A term longer than this is wrapped in its cell.
 constexpr std::size_t kLeastTerm = 10;
+// On narrower screens the key of a table is too narrow for the name of a check.
+constexpr std::size_t kNarrow = 70;
 
 std::string rank_of(const Comparison& comparison, std::size_t index) {
   return std::to_string(comparison.candidates[index].rank);
@@ -209,14 +211,18 @@ const checks::Check* check_of(const Candidate& candidate, const std::string& nam
   return found == candidate.checks.end() ? nullptr : &*found;
 }
 
+// A check's name in words that a narrow cell can break.
+std::string spaced(std::string name) {
+  std::replace(name.begin(), name.end(), '-', ' ');
+  return name;
+}
+
+// A verdict and its size; a check that the rows cannot support has neither.
 Cell check_cell(const checks::Check* check) {
   if (check == nullptr) return {"not run"};
-  std::string verdict = check->passes ? "holds" : "fails";
-  if (check->verdict) {
-    verdict = *check->verdict == checks::Verdict::holds      ? "holds"
-              : *check->verdict == checks::Verdict::strained ? "strained"
-                                                             : "broken";
-  }
+  if (!check->verdict && check->passes && !check->p) return {"untested"};
+  std::string verdict = check->passes ? "passes" : "fails";
+  if (check->verdict) verdict = checks::verdict_word(*check->verdict);
   return {verdict + ", " + significant(check->size, 3), check->passes ? Tone::plain : Tone::alarm};
 }
 
@@ -231,7 +237,7 @@ void assumption_checks(Page& page, const Comparison& comparison) {
   page.heading("Which assumptions fail?");
   TextTable table(columns_by_rank(comparison, "check", 0));
   for (const std::string& name : names) {
-    std::vector<Cell> row = {{name}};
+    std::vector<Cell> row = {{page.width() < kNarrow ? spaced(name) : name}};
     for (const Candidate& candidate : comparison.candidates) row.push_back(check_cell(check_of(candidate, name)));
     table.add_row(std::move(row));
   }
@@ -242,10 +248,14 @@ void assumption_checks(Page& page, const Comparison& comparison) {
 
 void remaining_bias(Page& page, const Comparison& comparison) {
   page.heading("What does going back to own units leave?");
+  std::size_t width = 0;
+  for (std::size_t i = 0; i < comparison.candidates.size(); ++i) {
+    width = std::max(width, rank_of(comparison, i).size());
+  }
   for (std::size_t i = 0; i < comparison.candidates.size(); ++i) {
     const judge::RemainingBias& bias = comparison.bias[i];
     const bool identity = comparison.candidates[i].response == forms::Form{};
-    page.labelled(rank_of(comparison, i), 2,
+    page.labelled(rank_of(comparison, i), width,
                   (identity ? "no way back: " : "with " + bias.correction + ": ") + bias.words);
   }
 }

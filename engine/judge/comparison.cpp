@@ -96,7 +96,8 @@ LikelihoodDifference vuong(std::span<const double> first, std::span<const double
   set_z(result.log_likelihood, 0.0, root, result.z, result.p);
   set_z(result.log_likelihood, more, root, result.z_aic, result.p_aic);
   set_z(result.log_likelihood, 0.5 * more * std::log(n), root, result.z_bic, result.p_bic);
-  result.beyond_noise = *result.p_bic < kTail;
+  // The penalty is no evidence of the rows: between near-twins ω is small and the penalty alone would look like much.
+  result.beyond_noise = *result.p < kTail && *result.p_bic<kTail&& * result.z* * result.z_bic> 0.0;
   return result;
 }
 

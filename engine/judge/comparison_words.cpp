@@ -34,12 +34,24 @@ std::string nested_words(const LikelihoodDifference& likelihood, const std::stri
          verdict_of(likelihood.beyond_noise, "more than noise in the rows in use.", "no more than noise.");
 }
 
+std::string z_words(double z, double p) { return "z " + number_words(std::abs(z)) + ", " + p_words(p); }
+
 std::string vuong_words(const LikelihoodDifference& likelihood, const std::string& first, const std::string& second) {
   if (!likelihood.z_bic) return "The likelihoods of " + first + " and " + second + " cannot be compared row by row.";
-  const std::string& favoured = *likelihood.z_bic >= 0.0 ? second : first;
-  return "Row by row the likelihood, less the BIC penalty, speaks for " + favoured + " (Vuong z " +
-         number_words(std::abs(*likelihood.z_bic)) + ", " + p_words(*likelihood.p_bic) + "): " +
-         verdict_of(likelihood.beyond_noise, "more than noise between rows.", "no more than noise between rows.");
+  const std::string& by_rows = *likelihood.z >= 0.0 ? second : first;
+  const std::string& by_bic = *likelihood.z_bic >= 0.0 ? second : first;
+  const std::string plain = "Vuong " + z_words(*likelihood.z, *likelihood.p);
+  const std::string corrected = z_words(*likelihood.z_bic, *likelihood.p_bic) + " less the BIC penalty";
+  if (likelihood.beyond_noise)
+    return "Row by row the likelihood speaks for " + by_rows + " (" + plain + "; " + corrected +
+           "): more than noise between rows.";
+  if (rejects(likelihood.p))
+    return "Row by row the likelihood speaks for " + by_rows + " (" + plain +
+           "), but not beyond what its coefficients cost (" + corrected + "): no more than noise between rows.";
+  const std::string within = "Row by row the likelihoods of " + first + " and " + second +
+                             " differ by no more than noise between rows (" + plain + ")";
+  if (!rejects(likelihood.p_bic)) return within + ", with the BIC penalty too (" + corrected + ").";
+  return within + "; what speaks for " + by_bic + " is its smaller number of coefficients alone (" + corrected + ").";
 }
 
 }  // namespace

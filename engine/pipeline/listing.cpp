@@ -144,14 +144,16 @@ void Lister::describe_families(const judge::Selection& selection, Listing& listi
       " of the CV RMSE of the better one; the best of those alike is the line, counted as far down "
       "as the last line, rank " +
       std::to_string(selection.n_looked_at) + "; " + front;
-  std::size_t siblings = 0;
-  for (const judge::Line& line : selection.lines) siblings += line.siblings.size();
+  std::size_t lines = 0, siblings = 0;
+  for (const judge::Line& line : selection.lines) {
+    if (line.index < selection.n_looked_at && !line.is_sibling) ++lines;
+    for (const std::size_t sibling : line.siblings) siblings += sibling < selection.n_looked_at ? 1 : 0;
+  }
   if (siblings > 0)
-    listing.remarks.push_back("The first " + judge::counted(selection.n_looked_at, "candidate") + " by rank " +
-                              (selection.n_looked_at == 1 ? "is" : "are") + " shown as " +
-                              judge::counted(selection.lines.size(), "line") + ": " +
-                              judge::counted(siblings, "other") +
-                              " nearly the same predictions as a better line, hence the gaps in the ranks.");
+    listing.remarks.push_back("The first " + judge::counted(selection.n_looked_at, "candidate") +
+                              " by rank are shown as " + judge::counted(lines, "line") + ": " +
+                              judge::counted(siblings, "other") + (siblings == 1 ? " predicts" : " predict") +
+                              " nearly the same as a better line, which is why ranks are missing.");
 }
 
 void Lister::describe_gates(const judge::Selection& selection, Listing& listing) const {

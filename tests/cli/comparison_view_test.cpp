@@ -76,7 +76,7 @@ TEST_CASE("cli: a comparison lists only what differs and names the rest in one l
   const std::string page = page_of(made, 80);
   CHECK(has(page,
             "column      1      2      3\n"
-            "────────────────────────────────\n"
+            "───────────────────────────────\n"
             "response y  ln(y)  ln(y)  √(y)\n"
             "floor_area  ln(x)  √(x)   ln(x)\n"
             "Shared: √(101 − fill_percent).\n"));

@@ -97,13 +97,22 @@ TEST_CASE("cli: a narrow screen gets paragraphs", "[cli][unit]") {
   }
 }
 
+// The first ranks that are listed; others may be shown by one of them.
+std::vector<std::string> listed_ranks(std::size_t n) {
+  const json shown = json::parse(run_formsieve({"show", stores().file("stores.run"), "--json"}).out);
+  std::vector<std::string> ranks;
+  for (std::size_t i = 0; i < n; ++i) ranks.push_back(std::to_string(shown.at("shortlist")[i].at("rank").get<int>()));
+  return ranks;
+}
+
 TEST_CASE("cli: compare sets ranks and named lines side by side, on any screen", "[cli][unit]") {
   REQUIRE(searched().exit_code == 0);
   const std::string run = stores().file("stores.run");
+  const std::vector<std::string> ranks = listed_ranks(3);
   for (const char* columns : {"44", "80", "120"}) {
     Setting screen;
     screen.environment = {std::string("COLUMNS=") + columns};
-    const Outcome outcome = run_formsieve({"compare", run, "1", "2", "3"}, screen);
+    const Outcome outcome = run_formsieve({"compare", run, ranks[0], ranks[1], ranks[2]}, screen);
     CHECK(outcome.exit_code == 0);
     CHECK(outcome.err.empty());
     CHECK(has(outcome.out, "Is one more accurate than fold noise?"));
@@ -111,7 +120,7 @@ TEST_CASE("cli: compare sets ranks and named lines side by side, on any screen",
     for (const std::string& line : lines_of(outcome.out))
       if (!has(line, "formsieve show ")) CHECK(formsieve::cli::display_width(line) <= std::stoul(columns));
   }
-  const json parsed = json::parse(run_formsieve({"compare", run, "best", "2", "--json"}).out);
+  const json parsed = json::parse(run_formsieve({"compare", run, "best", ranks[1], "--json"}).out);
   CHECK(parsed.at("candidates").size() == 2);
   CHECK(parsed.at("pairs")[0].at("likelihood").at("words").is_string());
 }

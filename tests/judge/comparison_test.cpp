@@ -111,6 +111,24 @@ TEST_CASE("judge: the Vuong statistic has no value where a density has none", "[
   CHECK_FALSE(vuong(left, right, 3, 3).z);
 }
 
+TEST_CASE("judge: a penalty without a difference between rows is not more than noise", "[judge][unit]") {
+  const auto left = densities(5, 400);
+  auto twin = left, better = left;
+  for (std::size_t i = 0; i < left.size(); ++i) {
+    twin[i] += i % 2 == 0 ? 0.001 : -0.001;
+    better[i] += i % 2 == 0 ? 0.5 : 0.1;
+  }
+  LikelihoodDifference found = vuong(left, twin, 7, 4);
+  CHECK(*found.p_bic < 0.001);
+  CHECK_FALSE(found.beyond_noise);
+  put_in_words(found, "rank 1", "rank 2");
+  CHECK(has(found.words, "what speaks for rank 2 is its smaller number of coefficients alone"));
+  found = vuong(left, better, 4, 4);
+  CHECK(found.beyond_noise);
+  put_in_words(found, "rank 1", "rank 2");
+  CHECK(has(found.words, "speaks for rank 2 (Vuong z 30, p below 0.001"));
+}
+
 TEST_CASE("judge: pointwise densities of a weighted fit are those of normal errors with variance over weight",
           "[judge][unit]") {
   const std::vector<double> residuals{0.5, -1.0, 0.25, 0.75}, weights{1.0, 2.0, 4.0, 0.5}, slopes{0.1, 0.2, 0.3, 0.4};

@@ -36,7 +36,7 @@ struct LikelihoodDifference {
   std::optional<double> z, z_aic, z_bic;  ///< Vuong: plain, less the AIC or BIC penalty; positive favours the second
   std::optional<double> p, p_aic, p_bic;  ///< two-sided
   std::optional<double> f, df, df2, p_f;  ///< nested
-  bool beyond_noise = false;              ///< by z_bic or by p_f
+  bool beyond_noise = false;              ///< by z and z_bic alike, or by p_f
   std::string words;
 };
 
