@@ -29,18 +29,22 @@ std::string p_words(double p) {
   return p < kSmallest ? "p below 0.0001" : "p " + number_words(p);
 }
 
+std::string coefficient_words(const std::string& term) {
+  return term == "intercept" ? "the intercept" : "the coefficient of " + term;
+}
+
 /// What leaving the row out does.
 std::string effect_sentence(const InfluentialRow& row) {
   std::string sentence = capitalised("leaving out " + name_of(row)) + " moves a prediction by up to " +
                          number_words(row.prediction_sd) + " residual standard deviations";
   if (!row.moved_term.empty())
-    sentence += " and the coefficient of " + row.moved_term + " by " + se_words(row.moved_se);
+    sentence += " and " + coefficient_words(row.moved_term) + " by " + se_words(row.moved_se);
   return sentence + " (leverage " + number_words(row.leverage) + ", distance of Cook " + number_words(row.cook) + ").";
 }
 
 void say_row(const InfluentialRow& row, double average, std::vector<std::string>& said) {
   if (row.leverage >= kFullLeverage) {
-    std::string rests = row.moved_term.empty() ? "a coefficient" : "the coefficient of " + row.moved_term;
+    std::string rests = row.moved_term.empty() ? "a coefficient" : coefficient_words(row.moved_term);
     said.push_back(capitalised(name_of(row)) + " has leverage 1: " + rests + " rests on it alone.");
     return;
   }

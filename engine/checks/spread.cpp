@@ -18,18 +18,25 @@ double standard_deviation(const Eigen::VectorXd& residuals, const std::vector<Ei
 Thirds thirds_of(const Eigen::Ref<const Eigen::VectorXd>& value) {
   const Eigen::Index n = value.size();
   const Eigen::Index third = n / 3;
-  std::vector<Eigen::Index> rows(static_cast<std::size_t>(n));
-  std::iota(rows.begin(), rows.end(), Eigen::Index{0});
-  const auto before = [&](Eigen::Index a, Eigen::Index b) {
-    return value[a] < value[b] || (value[a] == value[b] && a < b);
-  };
-  const auto bottom_end = rows.begin() + third;
-  const auto top_begin = rows.end() - third;
-  std::nth_element(rows.begin(), bottom_end, rows.end(), before);
-  std::nth_element(bottom_end, top_begin, rows.end(), before);
-  Thirds thirds{{rows.begin(), bottom_end}, {bottom_end, top_begin}, {top_begin, rows.end()}};
-  // row order, so that sums do not depend on how a library partitions
-  for (auto* part : {&thirds.bottom, &thirds.middle, &thirds.top}) std::sort(part->begin(), part->end());
+  Thirds thirds;
+  if (third == 0) {
+    thirds.middle.resize(static_cast<std::size_t>(n));
+    std::iota(thirds.middle.begin(), thirds.middle.end(), Eigen::Index{0});
+    return thirds;
+  }
+  Eigen::VectorXd sorted = value;
+  std::nth_element(sorted.begin(), sorted.begin() + (third - 1), sorted.end());
+  const double bottom_edge = sorted[third - 1];
+  std::nth_element(sorted.begin() + third, sorted.begin() + (n - third), sorted.end());
+  const double top_edge = sorted[n - third];
+  // of the rows at an edge the first belong to the bottom, the last to the top
+  Eigen::Index at_bottom = third - (value.array() < bottom_edge).count();
+  Eigen::Index not_at_top = (value.array() >= top_edge).count() - third;
+  for (Eigen::Index row = 0; row < n; ++row) {
+    const bool bottom = value[row] < bottom_edge || (value[row] == bottom_edge && at_bottom-- > 0);
+    const bool top = value[row] > top_edge || (value[row] == top_edge && not_at_top-- <= 0);
+    (bottom ? thirds.bottom : top ? thirds.top : thirds.middle).push_back(row);
+  }
   return thirds;
 }
 

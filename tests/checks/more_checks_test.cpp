@@ -39,7 +39,8 @@ TEST_CASE("checks: Brown and Forsythe's test equals SciPy", "[checks][reference]
       brown_forsythe(vector_of({1, -1, 2, -2, 3, -3}), std::vector<std::vector<Eigen::Index>>{{0, 1}, {2, 3}, {4, 5}}));
 }
 
-TEST_CASE("checks: tails of the distributions behind the p-values are 5 % at handbook quantiles", "[checks][reference]") {
+TEST_CASE("checks: tails of the distributions behind the p-values are 5 % at handbook quantiles",
+          "[checks][reference]") {
   // handbook tables, four or five digits, from memory: χ²(.95), t(.975), F(.95)
   namespace bm = boost::math;
   const auto tail = [](const auto& distribution, double x) { return bm::cdf(bm::complement(distribution, x)); };
@@ -57,6 +58,26 @@ TEST_CASE("checks: thirds go by value, then by row, and are listed in row order"
   CHECK(thirds.bottom == std::vector<Eigen::Index>{1, 3});
   CHECK(thirds.middle == std::vector<Eigen::Index>{0, 2, 5});
   CHECK(thirds.top == std::vector<Eigen::Index>{4, 6});
+  // beside a sort by value and row, with many ties
+  Normals normals(80);
+  for (const Eigen::Index n : {1, 2, 3, 4, 10, 31, 60}) {
+    const Eigen::VectorXd value = (1.5 * normals.vector(n)).array().round();
+    auto rows = row_order(n);
+    std::stable_sort(rows.begin(), rows.end(), [&](auto a, auto b) {
+      return value[static_cast<Eigen::Index>(a)] < value[static_cast<Eigen::Index>(b)];
+    });
+    const Thirds ours = thirds_of(value);
+    const auto third = static_cast<std::size_t>(n / 3);
+    const auto sorted_part = [&](std::size_t first, std::size_t end) {
+      std::vector<Eigen::Index> part(rows.begin() + static_cast<std::ptrdiff_t>(first),
+                                     rows.begin() + static_cast<std::ptrdiff_t>(end));
+      std::sort(part.begin(), part.end());
+      return part;
+    };
+    CHECK(ours.bottom == sorted_part(0, third));
+    CHECK(ours.middle == sorted_part(third, rows.size() - third));
+    CHECK(ours.top == sorted_part(rows.size() - third, rows.size()));
+  }
 }
 
 TEST_CASE("checks: Ljung and Box's test equals statsmodels", "[checks][reference]") {
