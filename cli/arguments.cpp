@@ -44,6 +44,14 @@ std::string is_duration(const std::string& text) {
   return seconds ? std::string() : seconds.error().message + "\nfor example --budget 8h, 90m or 45s";
 }
 
+std::string is_level(const std::string& text) {
+  double value = 0.0;
+  const auto [end, error] = std::from_chars(text.data(), text.data() + text.size(), value);
+  const bool number = error == std::errc() && end == text.data() + text.size();
+  if (number && value > 0.0 && value < 1.0) return {};
+  return "'" + text + "' is not a number between 0 and 1\nfor example --level 0.9";
+}
+
 // The last of several wins, as when an alias is overridden.
 template <class T>
 CLI::Option* add_single(CLI::App& command, const std::string& name, const std::string& type, T& value,
@@ -83,6 +91,10 @@ void add_common_options(CLI::App& command, CommonArguments& arguments) {
   add_single(command, "--threads", "N", arguments.threads, "threads to use; default all that are allowed")
       ->check(whole_number(1, kMostThreads, "--threads 2"));
   command.add_flag("--json", arguments.json, "the result as JSON on standard output");
+}
+
+void add_level_option(CLI::App& command, double& level) {
+  add_single(command, "--level", "SHARE", level, "of the intervals; default 0.95")->check(is_level);
 }
 
 void add_table_options(CLI::App& command, TableArguments& arguments) {

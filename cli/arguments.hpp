@@ -34,6 +34,8 @@ struct PlanArguments {
 };
 
 void add_common_options(CLI::App& command, CommonArguments& arguments);
+/// --level SHARE: the nominal level of intervals.
+void add_level_option(CLI::App& command, double& level);
 void add_table_options(CLI::App& command, TableArguments& arguments);
 void add_plan_options(CLI::App& command, PlanArguments& arguments);
 void add_response_option(CLI::App& command, std::optional<std::string>& response, const std::string& description);

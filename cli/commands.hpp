@@ -14,6 +14,7 @@ void add_survey_command(CLI::App& program, Action& chosen);
 void add_draft_command(CLI::App& program, Action& chosen);
 void add_search_command(CLI::App& program, Action& chosen);
 void add_show_command(CLI::App& program, Action& chosen);
+void add_apply_command(CLI::App& program, Action& chosen);
 void add_compare_command(CLI::App& program, Action& chosen);
 
 }  // namespace formsieve::cli

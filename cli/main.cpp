@@ -54,6 +54,7 @@ int run(int argc, char** argv) {
   add_draft_command(program, chosen);
   add_search_command(program, chosen);
   add_show_command(program, chosen);
+  add_apply_command(program, chosen);
   add_compare_command(program, chosen);
 
   const std::vector<std::string> arguments(argv + 1, argv + argc);

@@ -58,8 +58,13 @@ void OutputFile::discard() {
   unlink(temporary_.c_str());
 }
 
+Status OutputFile::write(std::string_view piece) {
+  if (const int failure = write_all(descriptor_, piece); failure != 0) return cannot_write(path_, failure);
+  return {};
+}
+
 Status OutputFile::finish(std::string_view content) {
-  if (const int failure = write_all(descriptor_, content); failure != 0) return cannot_write(path_, failure);
+  if (Status status = write(content); !status) return status;
   const int closed = close(std::exchange(descriptor_, -1));
   if (closed == 0 && rename(temporary_.c_str(), path_.c_str()) == 0) return {};
   const int failure = errno;

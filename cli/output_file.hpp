@@ -20,7 +20,9 @@ class OutputFile {
   OutputFile& operator=(OutputFile&& other) noexcept;
   ~OutputFile();  ///< an unfinished file is removed
 
-  /// Writes the whole content and gives the file its name. Errors: io.
+  /// Writes a piece of the content. Errors: io.
+  Status write(std::string_view piece);
+  /// Writes the rest of the content and gives the file its name. Errors: io.
   Status finish(std::string_view content);
 
  private:

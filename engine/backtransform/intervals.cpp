@@ -27,13 +27,12 @@ double carried_end(const forms::Form& response, double z) {
   return below == (forms::monotone_sign(response) > 0) ? own.lower : own.upper;
 }
 
-/// ⌈(1 − α)(n + 1)⌉ = n + 1 − ⌊α(n + 1)⌋.
+}  // namespace
+
 std::size_t upper_rank(std::size_t n, double level) {
   const double spare = (1.0 - level) * static_cast<double>(n + 1);
   return n + 1 - static_cast<std::size_t>(std::floor(spare * (1.0 + kWholeRel) + kWholeRel));
 }
-
-}  // namespace
 
 double leverage_at(const Eigen::Ref<const Eigen::MatrixXd>& inverse_root, const Eigen::Ref<const Eigen::VectorXd>& x) {
   assert(inverse_root.rows() == x.size());

@@ -58,6 +58,9 @@ class NormalInterval {
   double sigma_, quantile_;
 };
 
+/// ⌈(1 − α)(n + 1)⌉ = n + 1 − ⌊α(n + 1)⌋: which of n values ends a CV+ interval of this level; above n for none.
+std::size_t upper_rank(std::size_t n, double level);
+
 /// Distribution-free CV+ interval (Barber, Candès, Ramdas & Tibshirani 2021, section on CV+). With η_g the prediction
 /// of the new row by the fit without fold g, R_i the absolute held-out residual of training row i of fold g(i), n the
 /// number of them and α = 1 − level:

@@ -3,6 +3,7 @@
 #pragma once
 
 #include <formsieve/judge.hpp>
+#include <formsieve/model.hpp>
 
 #include "backtransform/effects.hpp"
 #include "fit/folded_fit.hpp"
@@ -51,6 +52,9 @@ class Examiner {
   /// undefined, all NaN where it cannot be fitted. Cost O(n k²).
   std::vector<double> predictions(const search::Choice& choice, std::size_t step) const;
 
+  /// What scores new rows by a completed candidate. Cost that of a FoldedFit, O(n k (k + folds)).
+  Result<model::Model> model(const search::Choice& choice, const judge::Candidate& candidate) const;
+
   /// What turns residual sums of squares into own-scale likelihoods.
   LikelihoodConstants likelihood_constants() const { return {log_jacobian_, half_log_weights_}; }
 
@@ -61,6 +65,8 @@ class Examiner {
                               const fit::FoldedFit& first_repeat) const;
   Status predict_repeat(const search::Choice& choice, const Eigen::MatrixXd& x, const Eigen::VectorXd& z,
                         std::size_t repeat, const fit::FoldedFit& folded, Prediction& prediction) const;
+  Status keep_folds(const Eigen::MatrixXd& x, const Eigen::VectorXd& z, const fit::FoldedFit& folded,
+                    model::Model& model) const;
   bool contradicts(const search::Choice& choice, const Eigen::VectorXd& coefficients) const;
   judge::Candidate named(const search::Choice& choice, const search::BigCount& number) const;
   std::vector<judge::ValidRange> ranges(const search::Choice& choice) const;

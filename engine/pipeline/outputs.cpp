@@ -70,4 +70,8 @@ Status Outputs::write_shortlist(const judge::Shortlist& shortlist) {
   return folder_.write(run::kShortlistCsvFile, report::shortlist_csv(shortlist));
 }
 
+Status Outputs::write_models(const model::ModelSet& models) {
+  return folder_.write(run::kModelsFile, report::models_json(models));
+}
+
 }  // namespace formsieve::pipeline

@@ -2,6 +2,7 @@
 #pragma once
 
 #include <formsieve/judge.hpp>
+#include <formsieve/model.hpp>
 #include <formsieve/run.hpp>
 
 #include "pipeline/prepare.hpp"
@@ -33,6 +34,8 @@ class Outputs {
   Status write_inputs(const Prepared& prepared, const run::Plan& plan);
   /// shortlist.json and shortlist.csv.
   Status write_shortlist(const judge::Shortlist& shortlist);
+  /// models.json.
+  Status write_models(const model::ModelSet& models);
 
  private:
   Outputs(run::RunFolder folder, std::shared_ptr<spdlog::logger> log);

@@ -75,6 +75,7 @@ class Search {
   void describe();
   void describe_walk();
   void describe_beyond();
+  model::ModelSet models() const;
   Result<SearchOutcome> write();
 
   search::WalkOptions walk_options() const;
@@ -386,7 +387,25 @@ void Search::describe() {
   shortlist_.cautions = judge::general_cautions(shortlist_);
 }
 
+/// What scores new rows by each of the listed candidates.
+model::ModelSet Search::models() const {
+  const auto& listed = shortlist_.candidates;
+  std::vector<std::optional<Result<model::Model>>> models(listed.size());
+  base::parallel_for(listed.size(), options_.threads, [&](std::size_t i) {
+    models[i].emplace(examiner_->model(choice_by_number_.at(listed[i].number), listed[i]));
+  });
+  model::ModelSet set{version(), prepared_->summary.response, prepared_->summary.weight, {}};
+  for (auto& model : models) {
+    if (*model)
+      set.models.push_back(*std::move(*model));
+    else
+      outputs_->log().warn("a listed candidate cannot score new rows: {}", model->error().message);
+  }
+  return set;
+}
+
 Result<SearchOutcome> Search::write() {
+  if (auto status = outputs_->write_models(models()); !status) return status.error();
   if (auto status = outputs_->write_shortlist(shortlist_); !status) return status.error();
   outputs_->log().info("{} in {:.2f} s", shortlist_.space.complete ? "finished" : "stopped early", meter_.seconds());
   SearchOutcome outcome;

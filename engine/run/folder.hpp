@@ -19,6 +19,7 @@ inline constexpr std::string_view kPlanFile = "plan.toml";
 inline constexpr std::string_view kSurveyFile = "survey.json";
 inline constexpr std::string_view kShortlistJsonFile = "shortlist.json";
 inline constexpr std::string_view kShortlistCsvFile = "shortlist.csv";
+inline constexpr std::string_view kModelsFile = "models.json";
 inline constexpr std::string_view kShortlistWorkbookFile = "shortlist.xlsx";
 inline constexpr std::string_view kPageFile = "report.html";
 inline constexpr std::string_view kLogFile = "log.txt";

@@ -66,6 +66,7 @@ class BlockReader {
     const char* const after = scan_short_decimal(p, decimal_, value);
     if (after == nullptr || *after != follower) return nullptr;
     sink.numbers[row_] = value;
+    if (sink.cells != nullptr) sink.cells[row_] = {p, static_cast<std::size_t>(after - p)};
     return after;
   }
 
@@ -79,6 +80,7 @@ class BlockReader {
       const char* const stop = after == nullptr ? nullptr : end_of_number_cell(after);
       if (stop != nullptr && !(task_.missing.has_numbers() && is_marker(p, after))) {
         sink.numbers[row_] = value;
+        if (sink.cells != nullptr) sink.cells[row_] = {p, static_cast<std::size_t>(after - p)};
         return stop;
       }
     }
@@ -106,9 +108,10 @@ class BlockReader {
     if (content.fault != CellFault::none) {
       note(fault_kind(content.fault), p + content.fault_at);
       store_missing(column);
-    } else {
-      store(column, content);
+      return cell.stop;
     }
+    if (sink.read_as != ReadAs::written) store(column, content);
+    if (sink.cells != nullptr) sink.cells[row_] = cell.raw;
     return cell.stop;
   }
 
@@ -133,6 +136,7 @@ class BlockReader {
     const ColumnSink& sink = task_.sinks[column];
     if (sink.read_as == ReadAs::number) sink.numbers[row_] = std::numeric_limits<double>::quiet_NaN();
     if (sink.read_as == ReadAs::text) sink.codes[row_] = kMissingLevel;
+    if (sink.cells != nullptr) sink.cells[row_] = {};
     ++reading_.columns[column].n_missing;
   }
 

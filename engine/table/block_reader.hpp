@@ -8,6 +8,7 @@
 #include <optional>
 #include <span>
 #include <string>
+#include <string_view>
 #include <vector>
 
 namespace formsieve::table {
@@ -17,6 +18,7 @@ struct ColumnSink {
   ReadAs read_as;
   double* numbers;
   std::uint32_t* codes;
+  std::string_view* cells = nullptr;  ///< as written: may stay null, then only the quotes are looked at
 };
 
 /// What a block keeps of a column by itself.

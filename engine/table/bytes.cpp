@@ -1,5 +1,7 @@
 #include "table/bytes.hpp"
 
+#include <formsieve/table.hpp>
+
 #include "base/parallel.hpp"
 
 #include <fcntl.h>
@@ -10,6 +12,8 @@
 #include <atomic>
 #include <cerrno>
 #include <cstring>
+#include <memory>
+#include <span>
 
 namespace formsieve::table {
 
@@ -112,6 +116,32 @@ Result<FileBytes> read_file(const std::string& path, unsigned threads) {
     return io_error(path, std::string("the file cannot be read: ") + std::strerror(failure),
                     "Check the disk or network folder that holds it");
   return bytes;
+}
+
+namespace {
+
+Result<std::size_t> read_some(const std::string& name, int descriptor, std::span<char> into) {
+  for (;;) {
+    const ssize_t n = ::read(descriptor, into.data(), into.size());
+    if (n >= 0) return static_cast<std::size_t>(n);
+    if (errno != EINTR)
+      return io_error(name, std::string("the file cannot be read: ") + std::strerror(errno),
+                      "Check the disk, network folder or program that it comes from");
+  }
+}
+
+}  // namespace
+
+Result<ByteStream> open_stream(const std::string& path) {
+  if (path == "-")
+    return ByteStream{[](std::span<char> into) { return read_some("standard input", STDIN_FILENO, into); }, 0};
+  const auto file = std::make_shared<Descriptor>(::open(path.c_str(), O_RDONLY | O_CLOEXEC));
+  if (file->number() < 0) return open_error(path, errno);
+  struct stat status = {};
+  if (::fstat(file->number(), &status) != 0) return open_error(path, errno);
+  if (S_ISDIR(status.st_mode)) return io_error(path, "this is a folder, not a file", "Name a file inside the folder");
+  const std::uint64_t size = S_ISREG(status.st_mode) ? static_cast<std::uint64_t>(status.st_size) : 0;
+  return ByteStream{[path, file](std::span<char> into) { return read_some(path, file->number(), into); }, size};
 }
 
 }  // namespace formsieve::table

@@ -19,8 +19,9 @@ namespace formsieve::table {
 
 /// What the cells of a column are read as.
 enum class ReadAs : std::uint8_t {
-  number,  ///< numbers go to their rows; texts are only counted
-  text,    ///< every value becomes a level
+  number,   ///< numbers go to their rows; texts are only counted
+  text,     ///< every value becomes a level
+  written,  ///< kept as it stands in the file, without a look at what it means
   nothing,
 };
 

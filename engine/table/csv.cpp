@@ -2,10 +2,10 @@
 #include "table/columns.hpp"
 #include "table/csv_parser.hpp"
 #include "table/dialect.hpp"
-#include "table/encoding.hpp"
 #include "table/hash.hpp"
 #include "table/header.hpp"
 #include "table/number.hpp"
+#include "table/opening.hpp"
 #include "table/quoting.hpp"
 #include "table/typing.hpp"
 
@@ -18,32 +18,6 @@
 namespace formsieve::table {
 
 namespace {
-
-Status check_options(const CsvOptions& options) {
-  const auto refuse = [](std::string message, std::string hint) {
-    return Error{ErrorKind::usage, std::move(message), {}, std::move(hint)};
-  };
-  if (options.separator && *options.separator != ',' && *options.separator != ';' && *options.separator != '\t')
-    return refuse(show(std::string(1, *options.separator)) + " cannot be the separator",
-                  "data.separator is \"comma\", \"semicolon\" or \"tab\"");
-  if (options.decimal && *options.decimal != '.' && *options.decimal != ',')
-    return refuse(show(std::string(1, *options.decimal)) + " cannot be the decimal mark",
-                  "data.decimal is \"point\" or \"comma\"");
-  return {};
-}
-
-/// Where the table ends: lines without content at the end of the file are not part of it.
-std::size_t find_table_end(std::string_view bytes, char separator) {
-  const std::string_view empty = separator == '\t' ? " \r\n" : " \t\r\n";
-  std::size_t end = bytes.size();
-  while (end > 0) {
-    const std::size_t feed = end < 2 ? bytes.npos : bytes.rfind('\n', end - 2);
-    const std::size_t begin = feed == bytes.npos ? 0 : feed + 1;
-    if (begin == 0 || bytes.substr(begin, end - begin).find_first_not_of(empty) != bytes.npos) break;
-    end = begin;
-  }
-  return end;
-}
 
 /// The reading of one file: the steps of parse_csv share what this holds.
 class CsvParse {
@@ -78,12 +52,10 @@ class CsvParse {
  private:
   /// A file must hold text; takes note of a byte order mark.
   Status check_content() {
-    if (const auto foreign = recognise_foreign_format(bytes_))
-      return data_error("this is " + foreign->what + ", not a table in UTF-8 text", foreign->hint);
-    table_.dialect.byte_order_mark = bytes_.starts_with(kUtf8Mark);
-    begin_ = table_.dialect.byte_order_mark ? kUtf8Mark.size() : 0;
-    if (bytes_.find_first_not_of(" \t\r\n", begin_) == bytes_.npos)
-      return data_error("the file is empty", "A table has a line with the names of its columns, then its rows");
+    const Result<std::size_t> mark = table::check_content(bytes_, source_.name);
+    if (!mark) return mark.error();
+    begin_ = *mark;
+    table_.dialect.byte_order_mark = begin_ > 0;
     return {};
   }
 

@@ -165,6 +165,7 @@ void find_decimal(FoundDialect& found, std::string_view text, const Rows& rows, 
 
   const MarkCounts& point = evidence.point;
   const MarkCounts& comma = evidence.comma;
+  found.decimal_is_sure = point.sure > 0 || comma.sure > 0;
   if (point.sure > 0 && comma.sure > 0) {
     const std::size_t with_point = count_numeric_columns(cells, '.', options);
     const std::size_t with_comma = count_numeric_columns(cells, ',', options);
@@ -192,6 +193,7 @@ Result<FoundDialect> find_dialect(std::string_view text, const std::string& sour
   }
   if (options.decimal) {
     found.dialect.decimal = *options.decimal;
+    found.decimal_is_sure = true;
   } else {
     find_decimal(found, text, rows, options);
   }

@@ -15,6 +15,7 @@ namespace formsieve::table {
 struct FoundDialect {
   Dialect dialect;
   bool decimal_is_open = false;
+  bool decimal_is_sure = false;  ///< given, or shown by a number that can be read in no other way
 };
 
 /// Settles on the dialect of `text` (after the byte order mark), taking given options as they are.

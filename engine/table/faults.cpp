@@ -18,7 +18,9 @@ std::string separator_in_words(char separator) {
   return separator == ',' ? "comma" : separator == ';' ? "semicolon" : "tab";
 }
 
-std::string byte_in_words(std::size_t offset) { return "byte " + std::to_string(offset + 1) + " of the file"; }
+std::string byte_in_words(const Source& source, std::size_t offset) {
+  return "byte " + std::to_string(source.bytes_before + offset + 1) + " of the file";
+}
 
 RawCell cell_at(const Source& source, std::size_t offset) {
   const char* begin = source.bytes.data();
@@ -29,20 +31,20 @@ Error data_error(std::string message, std::string hint) {
   return {ErrorKind::data, std::move(message), {}, std::move(hint)};
 }
 
-Error describe_nul(const Fault& fault) {
-  return data_error("a NUL byte, " + byte_in_words(fault.offset) + ", has no place in text",
+Error describe_nul(const Source& source, const Fault& fault) {
+  return data_error("a NUL byte, " + byte_in_words(source, fault.offset) + ", has no place in text",
                     "The file is probably no text, damaged, or saved as UTF-16; save it again as UTF-8");
 }
 
 Error describe_invalid_utf8(const Source& source, const Fault& fault) {
   return data_error(
-      byte_in_words(fault.offset) + " (" + show(source.bytes.substr(fault.offset, 1)) + ") is not valid UTF-8",
+      byte_in_words(source, fault.offset) + " (" + show(source.bytes.substr(fault.offset, 1)) + ") is not valid UTF-8",
       "Save the file as UTF-8; if it is in an old one-byte encoding: iconv -f WINDOWS-1252 -t UTF-8 "
       "old.csv > new.csv");
 }
 
-Error describe_carriage_return(const Fault& fault) {
-  return data_error("a carriage return without a line feed after it, " + byte_in_words(fault.offset),
+Error describe_carriage_return(const Source& source, const Fault& fault) {
+  return data_error("a carriage return without a line feed after it, " + byte_in_words(source, fault.offset),
                     "Rows end in LF or CR LF; convert the file: tr '\\r' '\\n' < old.csv > new.csv");
 }
 
@@ -122,11 +124,11 @@ Error describe_empty_line(const Source& source) {
 Error describe_kind(const Source& source, const Fault& fault, std::uint64_t line) {
   switch (fault.kind) {
     case FaultKind::nul_byte:
-      return describe_nul(fault);
+      return describe_nul(source, fault);
     case FaultKind::invalid_utf8:
       return describe_invalid_utf8(source, fault);
     case FaultKind::lone_carriage_return:
-      return describe_carriage_return(fault);
+      return describe_carriage_return(source, fault);
     case FaultKind::quote_in_cell:
       return describe_quote_in_cell(source, fault);
     case FaultKind::text_after_quote:

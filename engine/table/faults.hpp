@@ -45,10 +45,11 @@ FaultKind fault_kind(CellFault fault) noexcept;
 /// What a message about a file needs to know of it.
 struct Source {
   std::string name;        ///< as the caller named it
-  std::string_view bytes;  ///< the whole file
+  std::string_view bytes;  ///< the whole file, or a stretch of it that starts with a row
   Syntax syntax;
   bool separator_given = false;     ///< by the caller, rather than found out
   std::vector<std::string> header;  ///< empty until it has been read
+  std::uint64_t bytes_before = 0;   ///< bytes of the file that come before `bytes`
 };
 
 /// A place from which lines can be counted: the first byte of a row, and its line.

@@ -153,4 +153,15 @@ Error describe_odd_cell(const Judgement& judgement, const std::string& where, co
   return {ErrorKind::data, std::move(message), where, std::move(hint)};
 }
 
+Error describe_stray_cell(const std::string& cell, const std::string& where, char decimal,
+                          std::span<const std::string> missing) {
+  const NumberKind kind = classify(cell, decimal);
+  Judgement judgement;
+  judgement.odd_values = {cell};
+  std::string hint = mend_at_source(kind, decimal);
+  if (hint.empty()) hint = "Correct the cell, or treat it as missing: " + proposed_missing(judgement, missing);
+  return {ErrorKind::data, (cell.empty() ? "an empty cell" : show(cell)) + " " + describe_kind(kind, decimal), where,
+          std::move(hint)};
+}
+
 }  // namespace formsieve::table

@@ -44,4 +44,8 @@ Judgement judge_column(const RawColumn& column, char decimal);
 Error describe_odd_cell(const Judgement& judgement, const std::string& where, const std::string& name, char decimal,
                         std::span<const std::string> missing);
 
+/// The error for a cell that is no number in a column that must hold numbers, whatever else it holds.
+Error describe_stray_cell(const std::string& cell, const std::string& where, char decimal,
+                          std::span<const std::string> missing);
+
 }  // namespace formsieve::table

@@ -29,7 +29,7 @@ TEST_CASE("cli: a variable forces an instruction set, and a wrong one is refused
 }
 
 TEST_CASE("cli: every help page fits a screen of 24 lines and 80 columns and shows an example", "[cli][unit]") {
-  for (const char* command : {"", "survey", "draft", "search", "show", "compare"}) {
+  for (const char* command : {"", "survey", "draft", "search", "show", "compare", "apply"}) {
     CAPTURE(command);
     const std::string name(command);
     const Outcome outcome =
@@ -44,10 +44,10 @@ TEST_CASE("cli: every help page fits a screen of 24 lines and 80 columns and sho
 
 TEST_CASE("cli: help lists the commands that exist and no others", "[cli][unit]") {
   const std::string help = run_formsieve({"--help"}).out;
-  for (const char* command : {"survey DATA", "draft DATA", "search PLAN", "show RUN", "compare RUN"})
+  for (const char* command : {"survey DATA", "draft DATA", "search PLAN", "show RUN", "compare RUN", "apply RUN"})
     CHECK(has(help, command));
-  for (const char* command : {"apply", "equation", "audit", "merge", "watch"}) CHECK_FALSE(has(help, command));
-  for (const char* command : {"apply", "equation", "audit", "merge", "watch", "help"}) {
+  for (const char* command : {"equation", "audit", "merge", "watch"}) CHECK_FALSE(has(help, command));
+  for (const char* command : {"equation", "audit", "merge", "watch", "help"}) {
     CHECK(run_formsieve({command, "a.run"}).exit_code == 2);
   }
 }

@@ -6,8 +6,10 @@
 
 #include <cstddef>
 #include <cstdint>
+#include <functional>
 #include <limits>
 #include <optional>
+#include <span>
 #include <string>
 #include <vector>
 
@@ -77,6 +79,19 @@ struct Table {
 /// blocks that start at row ends; memory about that of the file and the columns together. The result does not depend on
 /// the number of threads.
 Result<Table> read_csv(const std::string& path, const CsvOptions& options = {});
+
+/// Fills a part of the span from its start and returns how many bytes; 0 at the end of the text.
+using ByteReader = std::function<Result<std::size_t>(std::span<char>)>;
+
+/// A text to be read from its start to its end, once.
+struct ByteStream {
+  ByteReader read;
+  std::uint64_t n_bytes = 0;  ///< 0 when unknown
+};
+
+/// Opens a file, a pipe or a device for reading; "-" is standard input. Errors (kind io): not found, a folder, no
+/// permission; a read that fails later is an error of the reader.
+Result<ByteStream> open_stream(const std::string& path);
 
 /// Reads the rows of one SELECT (or WITH … SELECT, or VALUES) from an SQLite database opened read-only. NULL is
 /// missing. A column holds numbers or texts as stored; `sha256` is that of the database file, without what a
