@@ -1,5 +1,7 @@
 #include "pipeline/held_out_intervals.hpp"
 
+#include "backtransform/words.hpp"
+
 #include <algorithm>
 #include <cmath>
 #include <limits>
@@ -106,8 +108,8 @@ backtransform::Interval judged_cross_interval(const FittedRows& rows, const fit:
   }
   backtransform::Interval interval = tally.result("CV+");
   if (outer_folds.size() < n_folds || tried < tried_of)
-    interval.note += (interval.note.empty() ? "" : "; ") + std::string("judged on ") + std::to_string(tried) +
-                     " held-out rows, evenly spaced";
+    interval.note += (interval.note.empty() ? "" : "; ") + std::string("judged on ") +
+                     backtransform::number_words(static_cast<double>(tried)) + " held-out rows, evenly spaced";
   return interval;
 }
 
