@@ -177,7 +177,7 @@ Effect Teller::level(const EffectTerm& term, Index first, std::size_t code) cons
 /// " (95 % interval 7.9 to 8.7 %)".
 std::string Teller::interval_words(const Effect& effect, const std::string& unit) const {
   if (!effect.low || !effect.high) return {};
-  const auto [low, high] = pair_words(*effect.low, *effect.high);
+  const auto [low, high] = range_words(*effect.low, *effect.high);
   return " (95 % interval " + low + " to " + high + unit + ")";
 }
 
@@ -188,7 +188,7 @@ std::string Teller::change_words(const Effect& effect) const {
                       (*effect.change < 0.0 ? " less " : " more ") + subject_.response_column + " on average, " + to +
                       " against " + from;
   if (!effect.low || !effect.high) return words;
-  const auto [low, high] = pair_words(*effect.low, *effect.high);
+  const auto [low, high] = range_words(*effect.low, *effect.high);
   return words + " (95 % interval of the difference " + low + " to " + high + ", the correction held fixed)";
 }
 

@@ -1,5 +1,6 @@
 #include "backtransform/words.hpp"
 
+#include <algorithm>
 #include <array>
 #include <charconv>
 #include <cmath>
@@ -35,6 +36,21 @@ NumberPair pair_words(double first, double second) {
     if (pair.first != pair.second || first == second) break;
   }
   return pair;
+}
+
+NumberPair range_words(double low, double high) {
+  const double largest = std::max(std::abs(low), std::abs(high));
+  if (!(largest >= 0.01 && largest < 999.5)) return pair_words(low, high);
+  const int decimals = largest < 0.995 ? 3 : largest < 9.995 ? 2 : largest < 99.95 ? 1 : 0;
+  const auto text = [&](double value) {
+    std::array<char, 32> buffer{};
+    const auto end = std::to_chars(buffer.data(), buffer.data() + buffer.size(), std::abs(value),
+                                   std::chars_format::fixed, decimals);
+    const std::string digits{buffer.data(), end.ptr};
+    const bool zero = digits.find_first_not_of("0.") == std::string::npos;
+    return (value < 0.0 && !zero ? "−" : "") + digits;
+  };
+  return {text(low), text(high)};
 }
 
 std::string percent_words(double share) {

@@ -14,6 +14,9 @@ struct NumberPair {
 };
 NumberPair pair_words(double first, double second);
 
+/// The ends of an interval, with the decimals that give the larger three digits: "2.70", "3.04"; "−14.3", "0.2".
+NumberPair range_words(double low, double high);
+
 /// A share as a percentage with two significant digits, "0.84 %", "12 %".
 std::string percent_words(double share);
 

@@ -134,7 +134,8 @@ Status Examiner::back_to_own_units(const search::Choice& choice, const Eigen::Ma
                                    judge::Candidate& candidate) const {
   const Eigen::VectorXd& z = response_[choice.response];
   const FittedRows rows{candidate.response, x, z, weights_, prepared_.data.response, prepared_.folds};
-  auto own = own_units(rows, fit, is_spread_broken(candidate.checks), candidate.response_column,
+  const fit::FoldedFit folded(x, z, weights_, prepared_.folds.fold_of.front(), prepared_.folds.count);
+  auto own = own_units(rows, fit, folded, is_spread_broken(candidate.checks), candidate.response_column,
                        report::linear_predictor(candidate));
   if (!own) return own.error();
   candidate.r2_own_units = own->r2_own_units;
@@ -145,7 +146,6 @@ Status Examiner::back_to_own_units(const search::Choice& choice, const Eigen::Ma
   back.why_used = own->why_used;
   back.mean_median_words = own->mean_median_words;
   back.formula = own->formula;
-  const fit::FoldedFit folded(x, z, weights_, prepared_.folds.fold_of.front(), prepared_.folds.count);
   back.intervals = {own->normal, judged_cross_interval(rows, folded)};
 
   const std::vector<backtransform::EffectTerm> terms = effect_terms(choice);

@@ -1,5 +1,7 @@
 #include "pipeline/held_out_intervals.hpp"
 
+#include "backtransform/words.hpp"
+
 #include <algorithm>
 #include <cmath>
 #include <limits>
@@ -93,7 +95,8 @@ backtransform::Interval judged_cross_interval(const FittedRows& rows, const fit:
   const std::size_t n_folds = rows.folds.count;
   if (n_folds < 3) return unjudged("judging CV+ takes three folds: one to try it on, two to build it from");
   const Rows of_fold = rows_by_fold(rows.folds.fold_of.front(), n_folds);
-  const auto outer_folds = evenly(n_folds, kMostOuterFolds);
+  const std::size_t affordable = kMostNestedRows / rows.measured_own.size();
+  const auto outer_folds = evenly(n_folds, std::clamp(affordable, kFewestOuterFolds, kMostOuterFolds));
   const std::size_t most_rows = std::max<std::size_t>(1, kMostJudgedRows / outer_folds.size());
   CoverageTally tally;
   std::size_t tried_of = 0, tried = 0;
@@ -105,8 +108,8 @@ backtransform::Interval judged_cross_interval(const FittedRows& rows, const fit:
   }
   backtransform::Interval interval = tally.result("CV+");
   if (outer_folds.size() < n_folds || tried < tried_of)
-    interval.note += (interval.note.empty() ? "" : "; ") + std::string("judged on ") + std::to_string(tried) +
-                     " held-out rows, evenly spaced";
+    interval.note += (interval.note.empty() ? "" : "; ") + std::string("judged on ") +
+                     backtransform::number_words(static_cast<double>(tried)) + " held-out rows, evenly spaced";
   return interval;
 }
 

@@ -16,6 +16,10 @@ namespace formsieve::pipeline {
 /// Outer folds on which CV+ is judged at most, evenly spaced among the folds: each costs as many small solutions as
 /// there are folds.
 inline constexpr std::size_t kMostOuterFolds = 20;
+/// Rows that the outer folds refit from in all, so that judging costs little beside the examination of a large table;
+/// beyond it there are fewer outer folds, but three.
+inline constexpr std::size_t kMostNestedRows = 1000000;
+inline constexpr std::size_t kFewestOuterFolds = 3;
 /// Held-out rows on which CV+ is judged at most, evenly spaced: the standard error of a coverage of 95 % is then 0.3 %.
 inline constexpr std::size_t kMostJudgedRows = 5000;
 

@@ -49,19 +49,26 @@ void predict(const FittedRows& rows, const TrainingPart& part, const std::vector
   }
 }
 
-Result<HeldOut> held_out(const FittedRows& rows, const std::vector<Method>& methods) {
-  const std::size_t n = rows.measured_own.size();
+Status predict_repeat(const FittedRows& rows, std::size_t repeat, const fit::FoldedFit& folded,
+                      const std::vector<Method>& methods, HeldOut& held) {
+  for (std::size_t fold = 0; fold < rows.folds.count; ++fold) {
+    const auto part = training_part(rows, rows.folds.fold_of[repeat], folded, fold);
+    if (!part) return part.error();
+    predict(rows, *part, methods, repeat * rows.measured_own.size(), held);
+  }
+  return {};
+}
+
+Result<HeldOut> held_out(const FittedRows& rows, const std::vector<Method>& methods,
+                         const fit::FoldedFit& first_repeat) {
+  const std::size_t entries = rows.folds.repeats * rows.measured_own.size();
   HeldOut held;
-  held.eta.resize(rows.folds.repeats * n);
-  held.means.assign(methods.size(), std::vector<double>(rows.folds.repeats * n));
-  for (std::size_t repeat = 0; repeat < rows.folds.repeats; ++repeat) {
-    const auto& fold_of = rows.folds.fold_of[repeat];
-    const fit::FoldedFit folded(rows.x, rows.z, rows.weights, fold_of, rows.folds.count);
-    for (std::size_t fold = 0; fold < rows.folds.count; ++fold) {
-      const auto part = training_part(rows, fold_of, folded, fold);
-      if (!part) return part.error();
-      predict(rows, *part, methods, repeat * n, held);
-    }
+  held.eta.resize(entries);
+  held.means.assign(methods.size(), std::vector<double>(entries));
+  if (auto status = predict_repeat(rows, 0, first_repeat, methods, held); !status) return status.error();
+  for (std::size_t repeat = 1; repeat < rows.folds.repeats; ++repeat) {
+    const fit::FoldedFit folded(rows.x, rows.z, rows.weights, rows.folds.fold_of[repeat], rows.folds.count);
+    if (auto status = predict_repeat(rows, repeat, folded, methods, held); !status) return status.error();
   }
   return held;
 }
@@ -78,13 +85,20 @@ std::vector<double> means_in_use(const FittedRows& rows, const fit::Fit& fit,
   return means;
 }
 
+std::size_t place_of(Method method, const std::vector<Method>& methods) {
+  return static_cast<std::size_t>(std::find(methods.begin(), methods.end(), method) - methods.begin());
+}
+
+bool is_among(Method method, const std::vector<Method>& methods) { return place_of(method, methods) < methods.size(); }
+
 std::string note_of(Method method, const FittedRows& rows, const backtransform::ThirdsSmearing& thirds) {
   switch (method) {
     case Method::none:
       return "a median where residuals are symmetric, not a mean";
     case Method::normal_theory:
-      return backtransform::methods_for(rows.response).size() > 5 ? "exp(s²/2), s the residual sd of the logarithm"
-                                                                  : "by Gauss–Hermite quadrature";
+      return is_among(Method::unbiased, backtransform::methods_for(rows.response))
+                 ? "exp(s²/2), s the residual sd of the logarithm"
+                 : "by Gauss–Hermite quadrature";
     case Method::unbiased:
       return "the factor depends on a row's leverage";
     case Method::thirds:
@@ -112,24 +126,20 @@ std::optional<double> r2_of(const std::vector<double>& mean, std::span<const dou
   return 1.0 - sse / base::sum_of_squares(measured, base::mean(measured));
 }
 
-std::size_t place_of(Method method, const std::vector<Method>& methods) {
-  return static_cast<std::size_t>(std::find(methods.begin(), methods.end(), method) - methods.begin());
-}
-
 backtransform::Choice chosen(const FittedRows& rows, bool spread_broken, const std::vector<Method>& methods,
                              const HeldOut& held) {
-  const std::size_t thirds = place_of(Method::thirds, methods);
-  if (thirds == methods.size()) return backtransform::choice_of_identity();
-  return backtransform::choose(spread_broken, {held.eta, rows.measured_own,
-                                               held.means[place_of(Method::smearing, methods)], held.means[thirds]});
+  if (!is_among(Method::thirds, methods)) return backtransform::choice_of_identity();
+  return backtransform::choose(spread_broken,
+                               {held.eta, rows.measured_own, held.means[place_of(Method::smearing, methods)],
+                                held.means[place_of(Method::thirds, methods)]});
 }
 
 }  // namespace
 
-Result<OwnUnits> own_units(const FittedRows& rows, const fit::Fit& fit, bool spread_broken,
-                           const std::string& response_column, const std::string& right_hand_side) {
+Result<OwnUnits> own_units(const FittedRows& rows, const fit::Fit& fit, const fit::FoldedFit& first_repeat,
+                           bool spread_broken, const std::string& response_column, const std::string& right_hand_side) {
   const std::vector<Method> methods = backtransform::methods_for(rows.response);
-  const auto held = held_out(rows, methods);
+  const auto held = held_out(rows, methods, first_repeat);
   if (!held) return held.error();
   const Eigen::Map<const Eigen::VectorXd> measured(rows.measured_own.data(), fit.fitted.size());
   const double df = static_cast<double>(rows.x.rows() - rows.x.cols());

@@ -27,9 +27,9 @@ struct OwnUnits {
   backtransform::Interval normal;      ///< the normal-theory interval on held-out rows
 };
 
-/// `spread_broken`: the check of equal spread is broken. `right_hand_side`: of the equation, for the formula. Errors as
-/// FoldedFit. Cost O(repeats · n · p²) and corrections · repeats · n means.
-Result<OwnUnits> own_units(const FittedRows& rows, const fit::Fit& fit, bool spread_broken,
-                           const std::string& response_column, const std::string& right_hand_side);
+/// `first_repeat`: of the folds. `spread_broken`: the check of equal spread is broken. `right_hand_side`: of the
+/// equation, for the formula. Errors as FoldedFit. Cost O(repeats · n · p²) and corrections · repeats · n means.
+Result<OwnUnits> own_units(const FittedRows& rows, const fit::Fit& fit, const fit::FoldedFit& first_repeat,
+                           bool spread_broken, const std::string& response_column, const std::string& right_hand_side);
 
 }  // namespace formsieve::pipeline

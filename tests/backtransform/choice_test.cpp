@@ -101,4 +101,9 @@ TEST_CASE("backtransform: numbers in sentences", "[backtransform][unit]") {
   CHECK(pair.first == "101.2");
   CHECK(pair.second == "101.4");
   CHECK(backtransform::pair_words(2.0, 2.0).first == "2");
+  CHECK(backtransform::range_words(2.7, 3.041).first == "2.70");
+  CHECK(backtransform::range_words(2.7, 3.041).second == "3.04");
+  CHECK(backtransform::range_words(-14.26, 0.21).first == "−14.3");
+  CHECK(backtransform::range_words(-0.001, 12.0).first == "0.0");
+  CHECK(backtransform::range_words(-14000.4, 21.3).first == "−14,000");
 }

@@ -28,10 +28,9 @@ using forms::Kind;
 
 /// 80 rows of a response with multiplicative errors, in 5 folds and 2 repeats.
 struct Made {
-  Made(forms::Form form, bool weighted, std::uint64_t seed) : response(std::move(form)) {
+  Made(forms::Form form, bool weighted, std::uint64_t seed, Index n = 80) : response(std::move(form)) {
     std::mt19937_64 generator(seed);
     std::normal_distribution<double> normal;
-    const Index n = 80;
     x = Eigen::MatrixXd::Ones(n, 3);
     z.resize(n);
     if (weighted) weights.resize(n);
@@ -105,7 +104,11 @@ double plain_mean(const std::string& method, const Made& made, const PlainFit& p
   return total / count;
 }
 
-fit::Fit whole_fit(const Made& made) { return *fit::least_squares(made.x, made.z, made.weights); }
+Result<pipeline::OwnUnits> own_units_of(const Made& made) {
+  const auto fit = fit::least_squares(made.x, made.z, made.weights);
+  const fit::FoldedFit first_repeat(made.x, made.z, made.weights, made.folds.fold_of[0], made.folds.count);
+  return pipeline::own_units(made.rows(), *fit, first_repeat, false, "y", "1 + x");
+}
 
 }  // namespace
 
@@ -113,7 +116,7 @@ TEST_CASE("pipeline: corrections are judged with everything from the training pa
   for (const forms::Form& response : {forms::Form{Kind::ln}, forms::Form{Kind::sqrt}, forms::Form{Kind::identity}})
     for (const bool weighted : {false, true}) {
       const Made made(response, weighted, 3);
-      const auto own = pipeline::own_units(made.rows(), whole_fit(made), false, "y", "1 + x");
+      const auto own = own_units_of(made);
       REQUIRE(own.ok());
       CHECK(own->corrections.size() == (response.kind == Kind::ln ? 6 : response.kind == Kind::sqrt ? 5 : 2));
       const PlainFit all(made, [](std::size_t) { return true; });
@@ -149,7 +152,7 @@ TEST_CASE("pipeline: corrections are judged with everything from the training pa
 TEST_CASE("pipeline: the normal-theory interval is judged from training parts over all repeats",
           "[pipeline][property]") {
   const Made made({Kind::ln}, true, 5);
-  const auto own = pipeline::own_units(made.rows(), whole_fit(made), false, "y", "1 + x");
+  const auto own = own_units_of(made);
   double inside = 0.0;
   std::vector<double> widths;
   for (std::size_t repeat = 0; repeat < 2; ++repeat)
@@ -224,6 +227,14 @@ TEST_CASE("pipeline: CV+ of two folds cannot be judged and says so", "[pipeline]
   const auto judged = pipeline::judged_cross_interval(made.rows(), folded);
   CHECK_FALSE(judged.coverage);
   CHECK_THAT(judged.note, Contains("three folds"));
+}
+
+TEST_CASE("pipeline: CV+ of many rows is judged on some of them and says on how many", "[pipeline][unit]") {
+  const Made made({Kind::ln}, false, 10, 20000);
+  const fit::FoldedFit folded(made.x, made.z, made.weights, made.folds.fold_of[0], 5);
+  const auto judged = pipeline::judged_cross_interval(made.rows(), folded);
+  CHECK(judged.note == "judged on 5,000 held-out rows, evenly spaced");
+  CHECK(std::abs(*judged.coverage - 0.95) < 0.015);  // normal errors; five standard errors of 5,000 rows
 }
 
 TEST_CASE("pipeline: what new rows need comes from the fit on all rows and those of the folds",
