@@ -61,7 +61,7 @@ std::string row_name(const checks::InfluentialRow& row) {
 }
 
 void influential_rows(Page& page, const std::vector<checks::InfluentialRow>& rows) {
-  TextTable table({{"data row"},
+  TextTable table({{"line"},
                    {"leverage", true, 0, 1},
                    {"Cook", true, 0, 1},
                    {"residual", true, 0, 2},
@@ -83,7 +83,7 @@ void influential_rows(Page& page, const std::vector<checks::InfluentialRow>& row
 void leaders(Page& page, const judge::Candidate& candidate) {
   for (const checks::InfluentialRow& row : candidate.influence.rows)
     if (row.leader_without)
-      page.note("Without data row " + row_name(row) + " rank " + std::to_string(*row.leader_without) +
+      page.note("Without line " + row_name(row) + " rank " + std::to_string(*row.leader_without) +
                 " leads the candidates listed.");
 }
 

@@ -23,10 +23,17 @@ std::string criterion_words(judge::Criterion criterion) {
 }
 
 std::string short_check_name(const std::string& name) {
-  static const std::map<std::string, std::string> kShort = {
-      {"normal-residuals", "normal"},  {"equal-spread", "spread"},       {"equal-spread-by-term", "spread by term"},
-      {"straightness", "straight"},    {"separable-terms", "separable"}, {"no-single-row", "single row"},
-      {"independence", "independence"}};
+  static const std::map<std::string, std::string> kShort = {{"normal-residuals", "normal"},
+                                                            {"equal-spread", "spread"},
+                                                            {"equal-spread-by-term", "spread by term"},
+                                                            {"equal-spread-by-thirds", "spread by thirds"},
+                                                            {"equal-spread-any-shape", "spread of any shape"},
+                                                            {"straightness-by-term", "straight by term"},
+                                                            {"independence-at-lags", "independence at lags"},
+                                                            {"straightness", "straight"},
+                                                            {"separable-terms", "separable"},
+                                                            {"no-single-row", "single row"},
+                                                            {"independence", "independence"}};
   const auto found = kShort.find(name);
   return found == kShort.end() ? name : found->second;
 }

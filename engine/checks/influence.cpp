@@ -40,7 +40,7 @@ std::vector<Index> chosen_rows(const Workings& workings, const RowFigures& figur
   };
   const Index farthest = largest_rows(subject.leverage, 1).front();
   const double average = static_cast<double>(workings.p) / static_cast<double>(workings.n);
-  if (subject.leverage[farthest] > kFarLeverage * average || is_full(subject, farthest)) add(farthest);
+  if (is_far(subject.leverage[farthest], average)) add(farthest);
   for (const Index row : largest_rows(figures.cook, kByCook)) add(row);
   for (const Index row : largest_rows(figures.studentised.cwiseAbs(), kMostInfluential))
     if (outlier_p(subject, figures.studentised[row]).value_or(1.0) < kLevel) add(row);
@@ -81,6 +81,10 @@ std::vector<RobustCoefficient> shifts(const Workings& workings, const Eigen::Mat
 }
 
 }  // namespace
+
+bool is_far(double leverage, double average) {
+  return leverage >= kFullLeverage || (leverage > kRiskyLeverage && leverage > kFarLeverage * average);
+}
 
 Influence influence(const Workings& workings, std::span<const fit::Coefficient> coefficients,
                     const std::optional<Insensitive>& robust, std::span<const std::size_t> lines) {

@@ -20,9 +20,11 @@ struct Workings;
 /// Rows that are listed at most, and how many of them by Cook's distance alone. A reader follows up a handful.
 inline constexpr std::size_t kMostInfluential = 5;
 inline constexpr std::size_t kByCook = 3;
-/// A row is far from the others in the predictors when its leverage exceeds this many times the average p/n: 2 finds a
-/// row in twenty of any sample, 3 is the stricter of the two usual limits (Velleman & Welsch 1981).
+/// A row is far from the others in the predictors when its leverage exceeds this many times the average p/n (Velleman &
+/// Welsch 1981; twice the average would find a row in twenty of any sample) …
 inline constexpr double kFarLeverage = 3.0;
+/// … and this: below 0.2 a row cannot pull a fit far however it lies (Huber 1981, section 7.2).
+inline constexpr double kRiskyLeverage = 0.2;
 /// A coefficient rests on a handful of rows when a fit that few rows cannot move puts it this many standard errors
 /// away.
 inline constexpr double kNotableShift = 1.0;
@@ -34,10 +36,13 @@ struct Insensitive {
   std::string method;  ///< "MM, bisquare"
 };
 
+/// Whether a leverage is beyond both limits. `average`: p/n.
+bool is_far(double leverage, double average);
+
 /// The largest rows by Cook's distance, those whose studentised residual is significant by Bonferroni at kLevel, and
-/// the one of largest leverage when that is beyond kFarLeverage; most influential (by Cook, full leverage before all)
+/// the one of largest leverage when is_far says so; most influential (by Cook, full leverage before all)
 /// first. All leave-one-out figures are exact (checks/deletion.hpp). `coefficients` [p] name the columns, intercept
-/// first; `lines` gives each row its data row in the table, or is empty (line 0). leader_without is left unset. Empty
+/// first; `lines` gives each row its line in the file, or is empty (line 0). leader_without is left unset. Empty
 /// where there are no residuals to judge (exact fit, no degrees of freedom, rank). Cost O(n k²), most of it one QR.
 Influence influence(const Subject& subject, std::span<const fit::Coefficient> coefficients,
                     const std::optional<Insensitive>& robust = std::nullopt, std::span<const std::size_t> lines = {});

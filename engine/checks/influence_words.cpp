@@ -12,7 +12,7 @@ namespace {
 constexpr double kWorthSaying = 0.5;
 
 std::string name_of(const InfluentialRow& row) {
-  return row.line > 0 ? "data row " + std::to_string(row.line) : row_words(static_cast<long>(row.row));
+  return row.line > 0 ? "line " + std::to_string(row.line) : row_words(static_cast<long>(row.row));
 }
 
 std::string capitalised(std::string text) {
@@ -49,7 +49,7 @@ void say_row(const InfluentialRow& row, double average, std::vector<std::string>
     said.push_back(capitalised(name_of(row)) +
                    " lies off the equation of the other rows: " + number_words(std::abs(row.studentised)) +
                    " residual standard deviations (" + p_words(row.p_bonferroni) + " for the largest of all).");
-  if (row.leverage > kFarLeverage * average && row.prediction_sd < kWorthSaying)
+  if (is_far(row.leverage, average) && row.prediction_sd < kWorthSaying)
     said.push_back(capitalised(name_of(row)) + " lies far from the others in the predictors (leverage " +
                    number_words(row.leverage) + ", " + number_words(row.leverage / average) +
                    " times the average) but agrees with them.");

@@ -86,6 +86,9 @@ std::optional<White> white(const Eigen::Ref<const Eigen::MatrixXd>& q,
   if (rank >= q.rows() || rank < 2) return std::nullopt;
   const Eigen::VectorXd target = triangle.col(columns);
   const Eigen::VectorXd along = (qr.householderQ().adjoint() * target).head(rank);
+  Eigen::VectorXd coefficients = Eigen::VectorXd::Zero(columns);  // 0 for what repeats
+  coefficients.head(rank) = qr.matrixQR().topLeftCorner(rank, rank).triangularView<Eigen::Upper>().solve(along);
+  coefficients = (qr.colsPermutation() * coefficients).cwiseQuotient(lengths);
   White result;
   result.r_squared = std::clamp(along.squaredNorm() / target.squaredNorm(), 0.0, 1.0);
   result.lm = n * result.r_squared;
@@ -95,7 +98,7 @@ std::optional<White> white(const Eigen::Ref<const Eigen::MatrixXd>& q,
   constexpr double kLeastUnexplained = 1e-15;  // keeps F a number for squares that the design holds exactly
   result.f = result.r_squared / result.df / (std::max(1.0 - result.r_squared, kLeastUnexplained) / df2);
   result.p_f = boost::math::cdf(boost::math::complement(boost::math::fisher_f(result.df, df2), result.f));
-  result.predicted = predictions(q, squares, qr.solve(target).cwiseQuotient(lengths));
+  result.predicted = predictions(q, squares, coefficients);
   return result;
 }
 

@@ -1,11 +1,14 @@
 #include "pipeline/examine.hpp"
 
+#include "backtransform/backtransform.hpp"
 #include "backtransform/effects.hpp"
-#include "checks/checks.hpp"
+#include "checks/influence.hpp"
 #include "fit/least_squares.hpp"
+#include "fit/robust.hpp"
 #include "judge/judge.hpp"
 #include "pipeline/held_out_intervals.hpp"
 #include "pipeline/own_units.hpp"
+#include "pipeline/refit.hpp"
 #include "report/equation.hpp"
 
 #include <algorithm>
@@ -39,6 +42,21 @@ checks::Subject subject_of(const judge::Candidate& candidate, const Eigen::Matri
     at += forms::n_columns(term.form);
   }
   return subject;
+}
+
+/// The fit that a few rows cannot move; unset where there is none to compare with.
+std::optional<checks::Insensitive> insensitive(const Eigen::MatrixXd& x, const Eigen::VectorXd& weights,
+                                               const fit::Fit& plain) {
+  auto robust = fit::robust_fit(x, weights, plain);
+  if (!robust) return std::nullopt;
+  return checks::Insensitive{std::move(robust->coefficients), robust->n_downweighted, std::move(robust->method)};
+}
+
+/// Line of the file, or row of a table that has no lines, of each row in use.
+std::vector<std::size_t> lines_of(const table::Table& table, std::size_t n_rows) {
+  std::vector<std::size_t> lines(n_rows);
+  for (std::size_t i = 0; i < n_rows; ++i) lines[i] = line_of(table, i);
+  return lines;
 }
 
 /// Whether a check that looks at spread against the fitted value is broken.
@@ -101,7 +119,10 @@ Status Examiner::complete(const search::Choice& choice, judge::Candidate& candid
                                                    log_jacobian_[choice.response], half_log_weights_);
   candidate.r2_form_scale = 1.0 - fit->rss / fit->tss;
 
-  candidate.checks = checks::run_all(subject_of(candidate, x, *fit, weights_, prepared_.order));
+  auto found = checks::examine(subject_of(candidate, x, *fit, weights_, prepared_.order), candidate.coefficients,
+                               insensitive(x, weights_, *fit), lines_of(prepared_.table, candidate.n));
+  candidate.checks = std::move(found.checks);
+  candidate.influence = std::move(found.influence);
   candidate.ranges = ranges(choice);
   candidate.equation = report::equation(candidate);
   if (auto status = back_to_own_units(choice, x, *fit, candidate); !status) return status;

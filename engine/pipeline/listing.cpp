@@ -4,6 +4,7 @@
 #include "judge/judge.hpp"
 #include "judge/selection.hpp"
 #include "judge/words.hpp"
+#include "pipeline/leave_out.hpp"
 #include "pipeline/penalties.hpp"
 
 #include <algorithm>
@@ -39,6 +40,8 @@ class Lister {
   std::vector<std::vector<double>> predictions(std::span<const std::size_t> indices) const;
   judge::Witness witness();
   Status complete(std::vector<judge::Candidate>& listed) const;
+  void find_mends(std::vector<judge::Candidate>& listed) const;
+  void leave_rows_out(Listing& listing) const;
   void take_lines(const judge::Selection& selection, Listing& listing) const;
   void describe_families(const judge::Selection& selection, Listing& listing) const;
   void describe_gates(const judge::Selection& selection, Listing& listing) const;
@@ -104,6 +107,16 @@ Status Lister::complete(std::vector<judge::Candidate>& listed) const {
   for (const auto& one : status)
     if (!one) return one;
   return {};
+}
+
+void Lister::find_mends(std::vector<judge::Candidate>& listed) const {
+  for (judge::Candidate& candidate : listed)
+    for (checks::Check& check : candidate.checks) check.mends = judge::mends(candidate, check, listed);
+}
+
+void Lister::leave_rows_out(Listing& listing) const {
+  for (std::string& words : find_leaders_without_rows(prepared_, plan_, choices_, listing.candidates, threads_))
+    listing.remarks.push_back(std::move(words));
 }
 
 void Lister::take_lines(const judge::Selection& selection, Listing& listing) const {
@@ -174,6 +187,8 @@ Result<Listing> Lister::run() {
   take_lines(selection, listing);
   if (auto status = complete(listing.candidates); !status) return status.error();
   judge::mark_pareto(listing.candidates);
+  find_mends(listing.candidates);
+  leave_rows_out(listing);
   describe_families(selection, listing);
   describe_gates(selection, listing);
   if (listing.candidates.empty())

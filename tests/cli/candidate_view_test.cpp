@@ -44,7 +44,7 @@ TEST_CASE("cli: one candidate in full answers every question with its figures", 
   CHECK(has(page, "CV+: judged on 5 of 10 folds"));
   CHECK(has(page, "10 % more floor_area goes with 8.3 % more energy_kwh"));
   CHECK(has(page, "18 0.0312 0.214 +4.87 0.002 −0.83 se ln(floor_area)"));
-  CHECK(has(page, "Without data row 18 rank 2 leads"));
+  CHECK(has(page, "Without line 18 rank 2 leads"));
   CHECK(has(page, "305 0.0101 0.094 −3.21 1.000 +0.41 se intercept"));
   CHECK(has(page, "a fit that a few rows cannot move has ln(floor_area) at 0.862"));
   CHECK(has(page, "floor_area seen from 120.5 to 48,210; form defined above 0"));

@@ -50,7 +50,7 @@ struct Check {
 /// One row that weighs heavily in a fit.
 struct InfluentialRow {
   std::size_t row = 0;         ///< index among the rows in use
-  std::size_t line = 0;        ///< data row of the table, counted from 1
+  std::size_t line = 0;        ///< of the file, or row of a table without lines, counted from 1
   double leverage = 0.0;       ///< of the whitened problem
   double cook = 0.0;           ///< Cook 1977
   double studentised = 0.0;    ///< externally studentised residual
