@@ -150,7 +150,7 @@ void add_apply_command(CLI::App& program, Action& chosen) {
   const auto help = std::make_shared<HelpPage>();
   help->usage = "apply RUN RANK DATA";
   help->notes = {"Writes mean, median, two intervals and flags for each row; what cannot be said is left empty."};
-  help->example = {"formsieve apply coldstores.run recommended new.csv --keep site_id"};
+  help->example = {"formsieve apply coldstores.run recommended new.csv --keep store"};
   command->formatter(help);
   command->set_help_flag("--help,-h", "this page");
   command->add_option("RUN", arguments->run_folder, "the run folder of a search")->required();

@@ -53,16 +53,16 @@ Rows random_rows(std::mt19937_64& random, const Model& model, bool weighted, std
 void check_row(const Made& made, const Scores& scores, std::size_t i, const std::vector<double>& values,
                double weight) {
   std::uint8_t expected = 0;
+  const auto expect = [&](Flag flag, bool holds) {
+    if (holds) expected |= flag;
+  };
   for (std::size_t t = 0; t < values.size(); ++t) {
     const Term& term = made.model.terms[t];
-    if (std::isnan(values[t])) {
-      expected |= kMissing;
-    } else if (term.form.kind == forms::Kind::levels) {
-      expected |= values[t] < 0.0 ? kUnknown : 0;
-    } else {
-      expected |= values[t] < term.seen_min || values[t] > term.seen_max ? kOutside : 0;
-      expected |= forms::domain(term.form).contains(values[t]) ? 0 : kUndefined;
-    }
+    const bool missing = std::isnan(values[t]), levels = term.form.kind == forms::Kind::levels;
+    expect(kMissing, missing);
+    expect(kUnknown, levels && values[t] < 0.0);
+    expect(kOutside, !levels && (values[t] < term.seen_min || values[t] > term.seen_max));
+    expect(kUndefined, !missing && !levels && !forms::domain(term.form).contains(values[t]));
   }
   CAPTURE(i, values, static_cast<int>(scores.flags[i]));
   const std::uint8_t no_prediction = kMissing | kUnknown | kUndefined;

@@ -1,6 +1,8 @@
 // New rows scored by models of a run folder: against the run itself, against statsmodels, and where it must refuse.
 #include "support.hpp"
 
+#include "backtransform/corrections.hpp"
+
 #include <formsieve/pipeline.hpp>
 #include <formsieve/report.hpp>
 
@@ -8,7 +10,9 @@
 
 #include <algorithm>
 #include <cmath>
+#include <cstdio>
 #include <fstream>
+#include <random>
 #include <sstream>
 
 namespace formsieve::test {
@@ -285,6 +289,45 @@ TEST_CASE("pipeline: a weight column of the new table narrows its intervals", "[
     CHECK(width("x\n5\n", 0, low) == width(with, 0, low));
   }
   CHECK(cells_of(applied_or_fail(set, "1", "x,w\n5,-1\n").text)[0][6] == "undefined w");
+}
+
+TEST_CASE("pipeline: where spread is unequal, apply smears within thirds as the candidate does",
+          "[pipeline][property]") {
+  std::mt19937_64 random(12);
+  std::normal_distribution<double> normal;
+  std::string table = "y,x\n";
+  std::vector<double> x, y;
+  for (int i = 0; i < 900; ++i) {
+    x.push_back(std::round(100.0 * std::exp(4.0 * (i % 100) / 100.0)) / 100.0);
+    y.push_back(std::exp(1.0 + 0.8 * std::log(x.back()) + 0.3 * (0.1 + std::log(x.back())) * normal(random)));
+    char line[64];
+    std::snprintf(line, sizeof line, "%.17g,%.17g\n", y.back(), x.back());
+    table += line;
+  }
+  const TemporaryFolder folder;
+  run::Plan plan = plan_for(folder.write("t.csv", table), "y");
+  plan.forms.response = {form_entry("ln")};
+  plan.forms.of["x"] = {form_entry("ln")};
+  plan.forms.always = {"x"};
+  (void)search_json(plan, folder);
+  const model::ModelSet set = models_of(folder);
+  const model::Model& model = set.models.at(0);
+  REQUIRE(model.mean.method == "smearing by thirds");
+  REQUIRE(model.mean.parts.size() == 3);
+  Eigen::VectorXd fitted(900), residuals(900);
+  for (Eigen::Index i = 0; i < 900; ++i) {
+    const auto row = static_cast<std::size_t>(i);
+    fitted[i] = model.coefficients[0] + model.coefficients[1] * std::log(x[row]);
+    residuals[i] = std::log(y[row]) - fitted[i];
+  }
+  const Eigen::Map<const Eigen::VectorXd> measured(y.data(), 900);
+  const Eigen::VectorXd none;
+  const auto plain = backtransform::make_correction(
+      backtransform::Method::thirds, {model.response, fitted, residuals, none, measured, model.sigma, model.df()});
+  const auto rows = cells_of(applied_or_fail(set, "1", table).text);
+  REQUIRE(rows.size() == 900);
+  for (std::size_t i = 0; i < rows.size(); ++i)
+    CHECK(std::stod(rows[i][0]) == Approx(plain->mean({fitted[static_cast<Eigen::Index>(i)]})).epsilon(1e-8));
 }
 
 TEST_CASE("pipeline: apply refuses tables and wishes that do not fit, with what is near", "[pipeline][unit]") {

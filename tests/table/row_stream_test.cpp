@@ -115,13 +115,14 @@ TEST_CASE("table: a stream gives the error of a whole reading, wherever its bloc
   const std::string folder = std::string(FORMSIEVE_SOURCE_DIR) + "/tests/table/malformed/";
   std::size_t n_same = 0;
   for (const auto& entry : std::filesystem::directory_iterator(folder)) {
-    if (entry.path().filename() == "expected.txt") continue;
+    if (entry.path().extension() != ".csv") continue;
     std::ostringstream bytes;
     bytes << std::ifstream(entry.path(), std::ios::binary).rdbuf();
     const std::string text = bytes.str();
     const Error whole = read_invalid(text);
     CAPTURE(entry.path().filename().string(), whole.message);
     // Types are given to a stream: what a column is, is no question there.
+    if (whole.message.find("values in this column") != std::string::npos) continue;
     for (const std::size_t block_bytes : kBlockSizes) {
       const auto streamed = stream_all(text, {}, {}, block_bytes, 13);
       if (streamed.ok()) continue;
