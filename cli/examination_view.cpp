@@ -81,10 +81,16 @@ void influential_rows(Page& page, const std::vector<checks::InfluentialRow>& row
 
 // What becomes of the ranking when a row is left out.
 void leaders(Page& page, const judge::Candidate& candidate) {
-  for (const checks::InfluentialRow& row : candidate.influence.rows)
-    if (row.leader_without)
-      page.note("Without line " + row_name(row) + " rank " + std::to_string(*row.leader_without) +
-                " leads the candidates listed.");
+  bool asked = false, changed = false;
+  for (const checks::InfluentialRow& row : candidate.influence.rows) {
+    if (!row.leader_without) continue;
+    asked = true;
+    if (*row.leader_without == 1) continue;
+    changed = true;
+    page.note("Without line " + row_name(row) + " rank " + std::to_string(*row.leader_without) +
+              " leads the candidates listed.");
+  }
+  if (asked && !changed) page.note("Leaving out any one of these rows does not change who leads the shortlist.");
 }
 
 std::string share(const std::optional<double>& value) {
@@ -131,6 +137,9 @@ void show_effects(Page& page, const judge::Candidate& candidate) {
   if (candidate.effects.empty()) return;
   page.heading("What goes with a change of each predictor?");
   for (const backtransform::Effect& effect : candidate.effects) page.note(effect.words);
+  page.prose(
+      "Compared are means in own units, the other predictors at their medians or most frequent levels. Intervals hold "
+      "the correction of the bias fixed and do not know of the search; what goes with a change need not come of it.");
 }
 
 void show_checks(Page& page, const judge::Candidate& candidate) {

@@ -73,7 +73,6 @@ class Teller {
   void compare(Effect& effect, const EffectTerm& term, Index first, double from, double to) const;
   std::string interval_words(const Effect& effect, const std::string& unit) const;
   std::string change_words(const Effect& effect) const;
-  std::string others_words() const;
 
   const EffectSubject& subject_;
   Eigen::VectorXd typical_;  ///< [p] the row with every predictor at its median or most frequent level
@@ -159,7 +158,7 @@ Effect Teller::difference(const EffectTerm& term, Index first) const {
   const auto [from, to] = pair_words(effect.from, effect.to);
   effect.words = term.column + " at " + to + " rather than " + from +
                  (quartiles ? " (upper and lower quartile) " : " (largest and smallest value) ") +
-                 change_words(effect) + others_words() + direction_clause(effect) + ".";
+                 change_words(effect) + direction_clause(effect) + ".";
   return effect;
 }
 
@@ -170,7 +169,7 @@ Effect Teller::level(const EffectTerm& term, Index first, std::size_t code) cons
   effect.to_level = term.form.levels[code];
   compare(effect, term, first, static_cast<double>(reference), static_cast<double>(code));
   effect.words = term.column + " = " + effect.to_level + " rather than " + effect.from_level + " (the most frequent) " +
-                 change_words(effect) + others_words() + ".";
+                 change_words(effect) + ".";
   return effect;
 }
 
@@ -185,16 +184,11 @@ std::string Teller::change_words(const Effect& effect) const {
   if (!effect.change) return "cannot be compared, since a mean is undefined there";
   const auto [from, to] = pair_words(*effect.at_from, *effect.at_to);
   std::string words = "goes with " + number_words(std::abs(*effect.change)) +
-                      (*effect.change < 0.0 ? " less " : " more ") + subject_.response_column + " on average, " + to +
+                      (*effect.change < 0.0 ? " less " : " more ") + subject_.response_column + ", " + to +
                       " against " + from;
   if (!effect.low || !effect.high) return words;
   const auto [low, high] = range_words(*effect.low, *effect.high);
-  return words + " (95 % interval of the difference " + low + " to " + high + ", the correction held fixed)";
-}
-
-std::string Teller::others_words() const {
-  if (subject_.terms.size() < 2) return {};
-  return ", the other predictors at their medians or most frequent levels";
+  return words + " (95 % interval of the difference " + low + " to " + high + ")";
 }
 
 }  // namespace

@@ -24,8 +24,9 @@ struct Subject {
   std::vector<std::size_t>
       term_first;  ///< first design column of each term, for inflation by term (Fox & Monette 1992)
   std::vector<std::string> term_names;
-  bool has_order = false;          ///< rows are in a meaningful order: independence is checked
-  std::vector<std::size_t> order;  ///< rows in that order, when has_order
+  bool has_order = false;            ///< rows are in a meaningful order: independence is checked
+  std::vector<std::size_t> order;    ///< rows in that order, when has_order
+  std::vector<std::size_t> lines{};  ///< [n] where the rows stand in their file, for sentences; or empty
 };
 
 /// Significance level of a check, on the p-value adjusted over the checks of its candidate. Common practice.

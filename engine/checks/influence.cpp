@@ -87,7 +87,7 @@ bool is_far(double leverage, double average) {
 }
 
 Influence influence(const Workings& workings, std::span<const fit::Coefficient> coefficients,
-                    const std::optional<Insensitive>& robust, std::span<const std::size_t> lines) {
+                    const std::optional<Insensitive>& robust) {
   Influence result;
   const Subject& subject = workings.subject;
   if (!workings.untestable.empty() || !(subject.sigma > 0.0) || !subject.leverage.allFinite() ||
@@ -99,7 +99,7 @@ Influence influence(const Workings& workings, std::span<const fit::Coefficient> 
   for (const Index row : chosen_rows(workings, figures)) {
     InfluentialRow one;
     one.row = static_cast<std::size_t>(row);
-    one.line = one.row < lines.size() ? lines[one.row] : 0;
+    one.line = one.row < subject.lines.size() ? subject.lines[one.row] : 0;
     one.leverage = subject.leverage[row];
     one.cook = figures.cook[row];
     one.studentised = figures.studentised[row];
@@ -118,14 +118,14 @@ Influence influence(const Workings& workings, std::span<const fit::Coefficient> 
 }
 
 Influence influence(const Subject& subject, std::span<const fit::Coefficient> coefficients,
-                    const std::optional<Insensitive>& robust, std::span<const std::size_t> lines) {
-  return influence(prepare(subject), coefficients, robust, lines);
+                    const std::optional<Insensitive>& robust) {
+  return influence(prepare(subject), coefficients, robust);
 }
 
 Findings examine(const Subject& subject, std::span<const fit::Coefficient> coefficients,
-                 const std::optional<Insensitive>& robust, std::span<const std::size_t> lines) {
+                 const std::optional<Insensitive>& robust) {
   const Workings workings = prepare(subject);
-  return {run_all(workings), influence(workings, coefficients, robust, lines)};
+  return {run_all(workings), influence(workings, coefficients, robust)};
 }
 
 }  // namespace formsieve::checks

@@ -42,12 +42,12 @@ bool is_far(double leverage, double average);
 /// The largest rows by Cook's distance, those whose studentised residual is significant by Bonferroni at kLevel, and
 /// the one of largest leverage when is_far says so; most influential (by Cook, full leverage before all)
 /// first. All leave-one-out figures are exact (checks/deletion.hpp). `coefficients` [p] name the columns, intercept
-/// first; `lines` gives each row its line in the file, or is empty (line 0). leader_without is left unset. Empty
+/// first; A row has line 0 where the subject knows no lines. leader_without is left unset. Empty
 /// where there are no residuals to judge (exact fit, no degrees of freedom, rank). Cost O(n k²), most of it one QR.
 Influence influence(const Subject& subject, std::span<const fit::Coefficient> coefficients,
-                    const std::optional<Insensitive>& robust = std::nullopt, std::span<const std::size_t> lines = {});
+                    const std::optional<Insensitive>& robust = std::nullopt);
 Influence influence(const Workings& workings, std::span<const fit::Coefficient> coefficients,
-                    const std::optional<Insensitive>& robust, std::span<const std::size_t> lines);
+                    const std::optional<Insensitive>& robust);
 
 /// Both run_all and influence, with one QR between them.
 struct Findings {
@@ -55,7 +55,7 @@ struct Findings {
   Influence influence;
 };
 Findings examine(const Subject& subject, std::span<const fit::Coefficient> coefficients,
-                 const std::optional<Insensitive>& robust = std::nullopt, std::span<const std::size_t> lines = {});
+                 const std::optional<Insensitive>& robust = std::nullopt);
 
 /// Sentences for a reader: what the rows listed do, and which coefficients the robust fit puts elsewhere. `method` is
 /// that of the robust fit.

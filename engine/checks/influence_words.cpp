@@ -12,7 +12,7 @@ namespace {
 constexpr double kWorthSaying = 0.5;
 
 std::string name_of(const InfluentialRow& row) {
-  return row.line > 0 ? "line " + std::to_string(row.line) : row_words(static_cast<long>(row.row));
+  return row.line > 0 ? "line " + std::to_string(row.line) : row_words({}, row.row);
 }
 
 std::string capitalised(std::string text) {

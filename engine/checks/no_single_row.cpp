@@ -11,7 +11,8 @@ void note_full_leverage(const Workings& workings, Check& check) {
   Eigen::Index row = 0;
   if (workings.subject.leverage.maxCoeff(&row) < kFullLeverage) return;
   check.verdict = Verdict::broken;
-  check.note = row_words(static_cast<long>(row)) + " has leverage 1: a coefficient rests on it alone";
+  check.note = row_words(workings.subject.lines, static_cast<std::size_t>(row)) +
+               " has leverage 1: a coefficient rests on it alone";
 }
 
 /// The row farthest from the others' fit, with its Bonferroni p-value.
@@ -27,7 +28,7 @@ void test_outlier(const Workings& workings, Check& check) {
   check.statistic = std::abs(studentised[row]);
   check.df = static_cast<double>(workings.n - workings.p - 1);
   check.p = outlier_p(subject, studentised[row]);
-  check.size_words += "; the farthest from the others is " + row_words(static_cast<long>(row));
+  check.size_words += "; the farthest from the others is " + row_words(subject.lines, static_cast<std::size_t>(row));
 }
 
 }  // namespace
@@ -49,9 +50,9 @@ Check no_single_row(const Workings& workings) {
   Eigen::Index row = 0;
   check.size2 = cook_distances(subject).maxCoeff(&row);
   check.size = largest_prediction_change(workings, row);
-  check.size_words = "leaving out " + row_words(static_cast<long>(row)) + " moves a prediction by up to " +
-                     number_words(check.size) + " residual standard deviations (distance of Cook " +
-                     number_words(*check.size2) + ")";
+  check.size_words = "leaving out " + row_words(subject.lines, static_cast<std::size_t>(row)) +
+                     " moves a prediction by up to " + number_words(check.size) +
+                     " residual standard deviations (distance of Cook " + number_words(*check.size2) + ")";
   test_outlier(workings, check);
   note_full_leverage(workings, check);
   return check;

@@ -18,6 +18,9 @@ std::string number_words(double value) {
   return (value < 0.0 ? "−" : "") + std::string(digits.data(), end.ptr);
 }
 
-std::string row_words(long row_index) { return "row " + std::to_string(row_index + 1) + " of the rows in use"; }
+std::string row_words(std::span<const std::size_t> lines, std::size_t row) {
+  if (row < lines.size()) return "line " + std::to_string(lines[row]);
+  return "row " + std::to_string(row + 1) + " of the rows in use";
+}
 
 }  // namespace formsieve::checks

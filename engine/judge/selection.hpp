@@ -14,8 +14,8 @@ namespace formsieve::judge {
 
 /// Two candidates are alike when the root mean squared difference of their predictions is below this share of the
 /// leader's CV RMSE: independent errors of that size would raise a held-out error by 0.1 % (√(1 + 0.05²) − 1), far less
-/// than any fold can tell. On the demonstration table 25 lines then stand for the first 120 ranks; tables of fifty rows,
-/// where forms do differ, keep nearly every candidate apart.
+/// than any fold can tell. On the demonstration table 25 lines then stand for the first 120 ranks; tables of fifty
+/// rows, where forms do differ, keep nearly every candidate apart.
 inline constexpr double kAlikeShare = 0.05;
 
 /// √(mean (a_i − b_i)²); NaN where either has an undefined value, or when there are none. Cost O(n).

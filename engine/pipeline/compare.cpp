@@ -21,10 +21,6 @@ constexpr std::size_t kFewest = 2, kMost = 5;
 
 std::string rank_words(const judge::Candidate& candidate) { return "rank " + std::to_string(candidate.rank); }
 
-std::span<const double> span_of(const Eigen::VectorXd& values) {
-  return {values.data(), static_cast<std::size_t>(values.size())};
-}
-
 Result<std::vector<judge::Candidate>> candidates_of(const judge::Shortlist& shortlist,
                                                     const std::vector<std::size_t>& ranks) {
   if (ranks.size() < kFewest || ranks.size() > kMost)

@@ -31,10 +31,18 @@ std::vector<fit::Coefficient> coefficients_of(const judge::Candidate& candidate,
   return coefficients;
 }
 
+/// Line of the file, or row of a table that has no lines, of each row in use.
+std::vector<std::size_t> lines_of(const table::Table& table, std::size_t n_rows) {
+  std::vector<std::size_t> lines(n_rows);
+  for (std::size_t i = 0; i < n_rows; ++i) lines[i] = line_of(table, i);
+  return lines;
+}
+
 checks::Subject subject_of(const judge::Candidate& candidate, const Eigen::MatrixXd& x, const fit::Fit& fit,
-                           const Eigen::VectorXd& weights, const std::vector<std::size_t>& order) {
-  checks::Subject subject{x,  fit.fitted, fit.residuals,  fit.leverage, weights, fit.sigma,
-                          {}, {},         !order.empty(), order};
+                           const Eigen::VectorXd& weights, const Prepared& prepared) {
+  checks::Subject subject{x,  fit.fitted, fit.residuals,           fit.leverage,  weights, fit.sigma,
+                          {}, {},         !prepared.order.empty(), prepared.order};
+  subject.lines = lines_of(prepared.table, candidate.n);
   std::size_t at = 1;
   for (const auto& term : candidate.terms) {
     subject.term_first.push_back(at);
@@ -50,13 +58,6 @@ std::optional<checks::Insensitive> insensitive(const Eigen::MatrixXd& x, const E
   auto robust = fit::robust_fit(x, weights, plain);
   if (!robust) return std::nullopt;
   return checks::Insensitive{std::move(robust->coefficients), robust->n_downweighted, std::move(robust->method)};
-}
-
-/// Line of the file, or row of a table that has no lines, of each row in use.
-std::vector<std::size_t> lines_of(const table::Table& table, std::size_t n_rows) {
-  std::vector<std::size_t> lines(n_rows);
-  for (std::size_t i = 0; i < n_rows; ++i) lines[i] = line_of(table, i);
-  return lines;
 }
 
 /// Whether a check that looks at spread against the fitted value is broken.
@@ -90,7 +91,7 @@ Status Examiner::check(const search::Choice& choice, judge::Candidate& candidate
   const Eigen::MatrixXd x = design_of(choice);
   const auto fit = fit::least_squares(x, response_[choice.response], weights_);
   if (!fit) return fit.error();
-  candidate.checks = checks::run_all(subject_of(candidate, x, *fit, weights_, prepared_.order));
+  candidate.checks = checks::run_all(subject_of(candidate, x, *fit, weights_, prepared_));
   return {};
 }
 
@@ -119,8 +120,8 @@ Status Examiner::complete(const search::Choice& choice, judge::Candidate& candid
                                                    log_jacobian_[choice.response], half_log_weights_);
   candidate.r2_form_scale = 1.0 - fit->rss / fit->tss;
 
-  auto found = checks::examine(subject_of(candidate, x, *fit, weights_, prepared_.order), candidate.coefficients,
-                               insensitive(x, weights_, *fit), lines_of(prepared_.table, candidate.n));
+  auto found = checks::examine(subject_of(candidate, x, *fit, weights_, prepared_), candidate.coefficients,
+                               insensitive(x, weights_, *fit));
   candidate.checks = std::move(found.checks);
   candidate.influence = std::move(found.influence);
   candidate.ranges = ranges(choice);

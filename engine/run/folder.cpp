@@ -16,7 +16,8 @@ namespace {
 
 // What a run leaves beside its plan. A plan alone is no run: a person may keep one anywhere.
 constexpr std::array kRunFiles{
-    kLogFile, kSurveyFile, kFoldsFile, kShortlistJsonFile, kShortlistCsvFile, kModelsFile, kShortlistWorkbookFile, kPageFile};
+    kLogFile, kSurveyFile, kFoldsFile, kShortlistJsonFile, kShortlistCsvFile, kModelsFile, kShortlistWorkbookFile,
+    kPageFile};
 
 Error folder_error(const std::string& what, const std::string& path, const std::error_code& code) {
   return {ErrorKind::io, what + ": " + code.message(), path, "choose another place with --out FOLDER"};

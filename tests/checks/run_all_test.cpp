@@ -209,7 +209,9 @@ TEST_CASE("checks: numbers are written for reading", "[checks][unit]") {
   CHECK(number_words(-0.012345) == "−0.0123");
   CHECK(number_words(4.5678) == "4.57");
   CHECK(number_words(12345.6) == "12346");
-  CHECK(row_words(0) == "row 1 of the rows in use");
+  const std::vector<std::size_t> lines = {7};
+  CHECK(row_words(lines, 0) == "line 7");
+  CHECK(row_words(lines, 1) == "row 2 of the rows in use");
 }
 
 }  // namespace formsieve::checks

@@ -44,7 +44,7 @@ TEST_CASE("pipeline: a candidate without a row scores as one fitted to the table
   expected->data.predictors = without.data.predictors;
   for (std::size_t i = 0; i < without.data.n_rows; ++i) CHECK(without.data.response[i] == expected->data.response[i]);
   const pipeline::Examiner one(without), two(*expected);
-  for (const std::uint16_t form : {1, 2}) {
+  for (const std::uint16_t form : {std::uint16_t{1}, std::uint16_t{2}}) {
     const search::Choice choice{0, {form, 1}};
     const auto a = one.score(choice, 0), b = two.score(choice, 0);
     REQUIRE(a.candidate);
