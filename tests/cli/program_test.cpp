@@ -211,6 +211,26 @@ TEST_CASE("cli: show prints what search printed", "[cli][unit]") {
   CHECK(shown.out == searched().out);
 }
 
+TEST_CASE("cli: show --all is the shortlist, the profile and every listed candidate", "[cli][unit]") {
+  const std::string run = stores().file("stores.run");
+  const Outcome shown = run_formsieve({"show", run, "--all"});
+  REQUIRE(shown.exit_code == 0);
+  CHECK(shown.err.empty());
+  std::size_t at = 0;
+  const auto follows = [&](const std::string& part) {
+    const std::size_t found = shown.out.find(part, at);
+    if (found != std::string::npos) at = found + 1;
+    return found != std::string::npos;
+  };
+  CHECK(follows("Ranked by CV RMSE"));
+  CHECK(follows("What each form costs"));
+  const json listed = json::parse(run_formsieve({"show", run, "--json"}).out).at("shortlist");
+  for (const auto& candidate : listed) {
+    CAPTURE(candidate.at("rank"));
+    CHECK(follows("\nRank " + std::to_string(candidate.at("rank").get<int>())));
+  }
+}
+
 TEST_CASE("cli: show RANK prints one candidate in full, by rank or by name", "[cli][unit]") {
   REQUIRE(searched().exit_code == 0);
   const std::string run = stores().file("stores.run");
