@@ -191,7 +191,7 @@ Status Search::count_and_announce() {
   news.seconds_estimate = strategy_.every ? time.total() : -1.0;
   news.strategy = strategy_.why;
   news.notes = prepared_->notes;
-  outputs_->log().info("{} candidates; about {} at {:.3g} candidates a second", grouped(time.candidates),
+  outputs_->log().info("{} candidates; estimated time {} at {:.3g} candidates a second", grouped(time.candidates),
                        duration_words(time.total()), time.candidates_per_second);
   outputs_->log().info("strategy {}: {}", strategy_.name, strategy_.why);
   shortlist_.space.candidates = news.candidates;
