@@ -20,13 +20,15 @@ enum class Standing : unsigned char { unknown, passes, fails };
 class Lister {
  public:
   Lister(const Prepared& prepared, const Examiner& examiner, const run::Plan& plan,
-         std::vector<judge::Candidate> candidates, const ChoiceByNumber& choices, unsigned threads)
+         std::vector<judge::Candidate> candidates, const ChoiceByNumber& choices, unsigned threads,
+         const ListingWatch& watch)
       : prepared_(prepared),
         examiner_(examiner),
         plan_(plan),
         candidates_(std::move(candidates)),
         choices_(choices),
         threads_(threads),
+        watch_(watch),
         standing_(candidates_.size(), Standing::unknown) {}
 
   Result<Listing> run();
@@ -52,6 +54,7 @@ class Lister {
   std::vector<judge::Candidate> candidates_;
   const ChoiceByNumber& choices_;
   unsigned threads_;
+  const ListingWatch& watch_;
   std::vector<Standing> standing_;  // [candidates_]
   Status gate_status_;              // the first failure of a gate
 };
@@ -101,9 +104,12 @@ judge::Witness Lister::witness() {
 }
 
 Status Lister::complete(std::vector<judge::Candidate>& listed) const {
+  if (watch_.begin) watch_.begin("examining in full what is listed", static_cast<double>(listed.size()), "candidates");
   std::vector<Status> status(listed.size());
-  base::parallel_for(listed.size(), threads_,
-                     [&](std::size_t i) { status[i] = examiner_.complete(choices_.at(listed[i].number), listed[i]); });
+  base::parallel_for(listed.size(), threads_, [&](std::size_t i) {
+    status[i] = examiner_.complete(choices_.at(listed[i].number), listed[i]);
+    if (watch_.done) watch_.done(1);
+  });
   for (const auto& one : status)
     if (!one) return one;
   return {};
@@ -115,6 +121,7 @@ void Lister::find_mends(std::vector<judge::Candidate>& listed) const {
 }
 
 void Lister::leave_rows_out(Listing& listing) const {
+  if (watch_.begin) watch_.begin("leaving out influential rows", 0.0, "");
   for (std::string& words : find_leaders_without_rows(prepared_, plan_, choices_, listing.candidates, threads_))
     listing.remarks.push_back(std::move(words));
 }
@@ -202,8 +209,8 @@ Result<Listing> Lister::run() {
 
 Result<Listing> list_candidates(const Prepared& prepared, const Examiner& examiner, const run::Plan& plan,
                                 std::vector<judge::Candidate> candidates, const ChoiceByNumber& choices,
-                                unsigned threads) {
-  return Lister(prepared, examiner, plan, std::move(candidates), choices, threads).run();
+                                unsigned threads, const ListingWatch& watch) {
+  return Lister(prepared, examiner, plan, std::move(candidates), choices, threads, watch).run();
 }
 
 }  // namespace formsieve::pipeline

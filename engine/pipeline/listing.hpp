@@ -10,6 +10,8 @@
 #include "search/space.hpp"
 
 #include <cstddef>
+#include <cstdint>
+#include <functional>
 #include <map>
 #include <string>
 #include <vector>
@@ -21,6 +23,12 @@ using ChoiceByNumber = std::map<std::string, search::Choice>;
 /// Predictions are compared on so many rows at most, evenly taken from those in use: enough for a root mean square that
 /// is good to 1 %, and 25 leaders' predictions stay within some megabytes.
 inline constexpr std::size_t kComparedRows = 20000;
+
+/// Told what the listing is at; may be empty. `done` is called from several threads.
+struct ListingWatch {
+  std::function<void(const std::string& phase, double total, const std::string& unit)> begin;
+  std::function<void(std::uint64_t units)> done;
+};
 
 struct Listing {
   std::vector<judge::Candidate> candidates;  ///< the lines by rank, complete
@@ -35,6 +43,6 @@ struct Listing {
 /// any number of threads. Errors: those of Examiner::complete.
 Result<Listing> list_candidates(const Prepared& prepared, const Examiner& examiner, const run::Plan& plan,
                                 std::vector<judge::Candidate> candidates, const ChoiceByNumber& choices,
-                                unsigned threads);
+                                unsigned threads, const ListingWatch& watch = {});
 
 }  // namespace formsieve::pipeline

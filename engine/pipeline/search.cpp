@@ -325,8 +325,15 @@ void Search::examine() {
 Status Search::rank_and_complete() {
   shortlist_.criterion = criterion_of(plan_.rank.by);
   shortlist_.near_tie = plan_.rank.near_tie;
-  auto listing =
-      list_candidates(*prepared_, *examiner_, plan_, std::move(candidates_), choice_by_number_, options_.threads);
+  ListingWatch watch;
+  watch.begin = [this](const std::string& phase, double total, const std::string& unit) {
+    meter_.begin(phase, total, unit);
+  };
+  watch.done = [this](std::uint64_t units) { meter_.add(units); };
+  meter_.begin("ranking", 0.0, "");
+  auto listing = list_candidates(*prepared_, *examiner_, plan_, std::move(candidates_), choice_by_number_,
+                                 options_.threads, watch);
+  meter_.end();
   if (!listing) return listing.error();
   shortlist_.candidates = std::move(listing->candidates);
   shortlist_.remarks = std::move(listing->remarks);
