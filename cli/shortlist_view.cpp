@@ -71,7 +71,7 @@ std::string terms_text(const Candidate& candidate, const Candidate& first) {
 }
 
 std::string failing_words(const Candidate& candidate) {
-  const std::vector<std::string> failing = failing_checks(candidate);
+  const std::vector<std::string> failing = failing_assumptions(candidate);
   return failing.empty() ? "none" : joined(failing, ", ");
 }
 

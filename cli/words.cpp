@@ -38,10 +38,15 @@ std::string short_check_name(const std::string& name) {
   return found == kShort.end() ? name : found->second;
 }
 
-std::vector<std::string> failing_checks(const judge::Candidate& candidate) {
+std::vector<std::string> failing_assumptions(const judge::Candidate& candidate) {
   std::vector<std::string> failing;
   for (const checks::Check& check : candidate.checks) {
-    if (!check.passes) failing.push_back(short_check_name(check.name));
+    if (check.passes) continue;
+    std::string assumption = check.name;
+    for (const char* shared : {"equal-spread", "straightness", "independence"})
+      if (check.name.starts_with(shared)) assumption = shared;
+    const std::string word = short_check_name(assumption);
+    if (std::find(failing.begin(), failing.end(), word) == failing.end()) failing.push_back(word);
   }
   return failing;
 }

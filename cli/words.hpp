@@ -18,8 +18,9 @@ std::string criterion_words(judge::Criterion criterion);
 /// A check's name as a table has room for: "spread" for "equal-spread"; an unknown name comes back as it is.
 std::string short_check_name(const std::string& name);
 
-/// "1 fails: equal-spread" …: the short names of the checks that a candidate fails.
-std::vector<std::string> failing_checks(const judge::Candidate& candidate);
+/// The assumptions that a candidate's checks find broken, by short names, each once however many checks look at it:
+/// "spread" for equal-spread and equal-spread-by-thirds.
+std::vector<std::string> failing_assumptions(const judge::Candidate& candidate);
 
 /// What a named line is, in one sentence: "recommended" → "lowest AIC among …".
 std::string mark_words(const std::string& mark, const judge::Shortlist& shortlist);

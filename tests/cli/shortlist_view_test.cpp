@@ -129,3 +129,17 @@ TEST_CASE("cli: words for the shell are quoted only where needed", "[cli][unit]"
   CHECK(shell_word("it's") == "'it'\\''s'");
   CHECK(shell_word("") == "''");
 }
+
+TEST_CASE("cli: an assumption that several checks find broken is named once", "[cli][unit]") {
+  judge::Candidate candidate = samples::shortlist().candidates[0];
+  candidate.checks.clear();
+  for (const char* name : {"equal-spread", "straightness-by-term", "equal-spread-by-thirds", "no-single-row"}) {
+    checks::Check check;
+    check.name = name;
+    check.passes = false;
+    candidate.checks.push_back(check);
+  }
+  CHECK(failing_assumptions(candidate) == std::vector<std::string>{"spread", "straight", "single row"});
+  candidate.checks[0].passes = candidate.checks[2].passes = true;
+  CHECK(failing_assumptions(candidate) == std::vector<std::string>{"straight", "single row"});
+}
