@@ -69,7 +69,7 @@ void say_robust(const Influence& influence, const std::string& method, std::vect
                           std::to_string(influence.n_downweighted) +
                           (influence.n_downweighted == 1 ? " row" : " rows") + " less than half of their weight and ";
   said.push_back(moved.empty() ? fit + "moves no coefficient by more than a standard error."
-                               : fit + "moves " + moved + ": these rest on a handful of rows.");
+                               : fit + "moves " + moved + ": so much of them rests on a handful of rows.");
 }
 
 }  // namespace

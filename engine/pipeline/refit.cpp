@@ -2,7 +2,7 @@
 
 #include <formsieve/pipeline.hpp>
 
-#include "backtransform/backtransform.hpp"
+#include "backtransform/corrections.hpp"
 #include "base/parallel.hpp"
 #include "judge/comparison.hpp"
 #include "judge/words.hpp"
@@ -40,6 +40,13 @@ Result<search::Choice> choice_of(const Prepared& prepared, const judge::Candidat
                "search again with this version"};
 }
 
+/// The correction that the run says is in use; smearing, the default, where this version does not know it.
+backtransform::Method method_in_use(const judge::Candidate& recorded) {
+  for (const backtransform::Method method : backtransform::methods_for(recorded.response))
+    if (backtransform::method_name(method) == recorded.back.used) return method;
+  return backtransform::Method::smearing;
+}
+
 Result<Refit> refit_one(const Prepared& prepared, const judge::Candidate& recorded) {
   const auto choice = choice_of(prepared, recorded);
   if (!choice) return choice.error();
@@ -54,11 +61,15 @@ Result<Refit> refit_one(const Prepared& prepared, const judge::Candidate& record
   auto fit = fit::least_squares(result.x, result.response, weights);
   if (!fit) return fit.error();
   result.fit = std::move(*fit);
-  const backtransform::Smearing smearing(recorded.response, result.fit.residuals, weights);
+  const Eigen::Map<const Eigen::VectorXd> measured(data.response.data(), static_cast<Eigen::Index>(data.n_rows));
+  const auto correction = backtransform::make_correction(
+      method_in_use(recorded), {recorded.response, result.fit.fitted, result.fit.residuals, weights, measured,
+                                result.fit.sigma, static_cast<double>(result.x.rows() - result.x.cols())});
   std::vector<double> log_derivative(data.n_rows);
   for (std::size_t i = 0; i < data.n_rows; ++i) {
     const double weight = data.weights.empty() ? 1.0 : data.weights[i];
-    result.mean_own.push_back(smearing.mean(result.fit.fitted[static_cast<Eigen::Index>(i)], weight));
+    const auto row = static_cast<Eigen::Index>(i);
+    result.mean_own.push_back(correction->mean({result.fit.fitted[row], result.fit.leverage[row] / weight, weight}));
     log_derivative[i] = forms::log_abs_derivative(recorded.response, data.response[i]);
   }
   result.log_density =

@@ -23,7 +23,7 @@ struct Refit {
   Eigen::MatrixXd x;         ///< [n × k], intercept first
   Eigen::VectorXd response;  ///< [n] on the form's scale
   fit::Fit fit;
-  std::vector<double> mean_own;     ///< [n] smeared means
+  std::vector<double> mean_own;     ///< [n] means by the correction in use
   std::vector<double> log_density;  ///< [n] ln density of the measured value, own units
 };
 
