@@ -146,7 +146,7 @@ int run_apply(const ApplyArguments& arguments) {
 
 void add_apply_command(CLI::App& program, Action& chosen) {
   const auto arguments = std::make_shared<ApplyArguments>();
-  CLI::App* command = program.add_subcommand("apply", "scores new rows: mean, median, intervals, flags");
+  CLI::App* command = program.add_subcommand("apply", "scores new rows: mean, intervals, flags");
   const auto help = std::make_shared<HelpPage>();
   help->usage = "apply RUN RANK DATA";
   help->notes = {"Writes mean, median, two intervals and flags for each row; what cannot be said is left empty."};

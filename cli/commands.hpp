@@ -16,5 +16,6 @@ void add_search_command(CLI::App& program, Action& chosen);
 void add_show_command(CLI::App& program, Action& chosen);
 void add_apply_command(CLI::App& program, Action& chosen);
 void add_compare_command(CLI::App& program, Action& chosen);
+void add_equation_command(CLI::App& program, Action& chosen);
 
 }  // namespace formsieve::cli

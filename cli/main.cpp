@@ -56,6 +56,7 @@ int run(int argc, char** argv) {
   add_show_command(program, chosen);
   add_apply_command(program, chosen);
   add_compare_command(program, chosen);
+  add_equation_command(program, chosen);
 
   const std::vector<std::string> arguments(argv + 1, argv + argc);
   if (arguments.empty()) {

@@ -29,7 +29,7 @@ TEST_CASE("cli: a variable forces an instruction set, and a wrong one is refused
 }
 
 TEST_CASE("cli: every help page fits a screen of 24 lines and 80 columns and shows an example", "[cli][unit]") {
-  for (const char* command : {"", "survey", "draft", "search", "show", "compare", "apply"}) {
+  for (const char* command : {"", "survey", "draft", "search", "show", "compare", "apply", "equation"}) {
     CAPTURE(command);
     const std::string name(command);
     const Outcome outcome =
@@ -44,10 +44,11 @@ TEST_CASE("cli: every help page fits a screen of 24 lines and 80 columns and sho
 
 TEST_CASE("cli: help lists the commands that exist and no others", "[cli][unit]") {
   const std::string help = run_formsieve({"--help"}).out;
-  for (const char* command : {"survey DATA", "draft DATA", "search PLAN", "show RUN", "compare RUN", "apply RUN"})
+  for (const char* command :
+       {"survey DATA", "draft DATA", "search PLAN", "show RUN", "compare RUN", "apply RUN", "equation RUN"})
     CHECK(has(help, command));
-  for (const char* command : {"equation", "audit", "merge", "watch"}) CHECK_FALSE(has(help, command));
-  for (const char* command : {"equation", "audit", "merge", "watch", "help"}) {
+  for (const char* command : {"audit", "merge", "watch"}) CHECK_FALSE(has(help, command));
+  for (const char* command : {"audit", "merge", "watch", "help"}) {
     CHECK(run_formsieve({command, "a.run"}).exit_code == 2);
   }
 }
@@ -74,7 +75,9 @@ TEST_CASE("cli: wrong arguments end with 2 and say what to type", "[cli][unit]")
        "did you mean --separator?"},
       {{"survey", "a.csv", "--zzz"}, "formsieve survey has no option --zzz", "formsieve survey --help lists"},
       {{"survey", "a.csv", "b.csv"}, "the argument 'b.csv' is one too many", "write formsieve survey DATA"},
-      {{"show", "survey", "1", "2"}, "the argument '2' is one too many", "write formsieve show RUN [RANK | --profile]"},
+      {{"show", "survey", "1", "2"},
+       "the argument '2' is one too many",
+       "write formsieve show RUN [RANK | --profile | --all]"},
       {{"--json", "survey", "a.csv"}, "--json stands before the command", "put options after the command"},
       {{"survey", "a.csv", "--threads"}, "--threads needs a value", "write --threads N"},
       {{"survey", "a.csv", "--threads", "two"}, "'two' is not a whole number of 1 to 1,024", "--threads 2"},

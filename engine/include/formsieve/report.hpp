@@ -7,6 +7,7 @@
 #include <formsieve/model.hpp>
 #include <formsieve/survey.hpp>
 
+#include <optional>
 #include <string>
 
 namespace formsieve::report {
@@ -19,6 +20,16 @@ Result<judge::Shortlist> read_shortlist_json(const std::string& text, const std:
 /// models.json, schema 1: what scores new rows, one model a line. Doubles read back to the same bits.
 std::string models_json(const model::ModelSet& set);
 Result<model::ModelSet> read_models_json(const std::string& text, const std::string& path);
+
+enum class CodeLanguage { text, spreadsheet, sql, c, python };
+
+/// The mean in own units by one kept model, ready to paste: full-precision coefficients, ranges and cautions as
+/// comments; an input that is missing or outside a form's domain gives no value (a blank cell, NULL, NAN). `model` must
+/// be sound, as pipeline::open_models leaves it. `smearing_factor`: ratio of the corrected to the uncorrected
+/// predictions (backtransform::Summary), by which spreadsheet and sql approximate a mean without a closed form. Errors
+/// (kind usage): the language cannot say it; the hint names one that can.
+Result<std::string> equation_code(const model::ModelSet& set, const model::Model& model, CodeLanguage language,
+                                  const std::optional<double>& smearing_factor = {});
 
 /// One line a candidate, RFC 4180, decimal point.
 std::string shortlist_csv(const judge::Shortlist& shortlist);
