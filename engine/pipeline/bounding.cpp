@@ -79,7 +79,9 @@ Bounded bound_and_walk(const Prepared& prepared, const base::GramSet& grams, con
   const double seconds = kSafety * seconds_of(estimates, limits.candidates_per_second);
   const double end = start + limits.seconds;
   if (!(meter.seconds() + seconds <= end)) {
-    result.words = "Not certain are " + list_words(limits.keep) + ": to visit what a bound leaves would take too long";
+    result.words = "Not certain are " + list_words(limits.keep) +
+                   ": to visit what a bound leaves would take more than its share of the budget "
+                   "(a 300th part)";
     return result;
   }
   meter.begin("visiting what a bound leaves", kSteps, "thousandths");
