@@ -212,6 +212,7 @@ TEST_CASE("cli: show prints what search printed", "[cli][unit]") {
 }
 
 TEST_CASE("cli: show --all is the shortlist, the profile and every listed candidate", "[cli][unit]") {
+  REQUIRE(searched().exit_code == 0);
   const std::string run = stores().file("stores.run");
   const Outcome shown = run_formsieve({"show", run, "--all"});
   REQUIRE(shown.exit_code == 0);
