@@ -27,8 +27,8 @@
 namespace {
 
 using namespace formsieve;
-using Eigen::Index;
 using bench::best_thread_seconds;
+using Eigen::Index;
 
 constexpr std::size_t kPredictors = 8;
 constexpr std::size_t kPool = 2000;           // what a plan pools by default
