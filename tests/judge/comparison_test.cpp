@@ -41,7 +41,8 @@ bool has(const std::string& text, const std::string& part) { return text.find(pa
 }  // namespace
 
 TEST_CASE("judge: the corrected resampled t agrees with SciPy", "[judge][reference]") {
-  for (const auto& expected : reference().at("folds")) {
+  const auto values = reference();  // kept while its parts are looked at
+  for (const auto& expected : values.at("folds")) {
     const CrossValidation first = errors(expected.at("first")), second = errors(expected.at("second"));
     const FoldDifference found = fold_difference(first, second, expected.at("n_folds"));
     REQUIRE(found.t);
