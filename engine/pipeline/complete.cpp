@@ -8,7 +8,6 @@
 #include "judge/judge.hpp"
 #include "pipeline/held_out_intervals.hpp"
 #include "pipeline/own_units.hpp"
-#include "pipeline/refit.hpp"
 #include "report/equation.hpp"
 
 #include <algorithm>
@@ -31,18 +30,11 @@ std::vector<fit::Coefficient> coefficients_of(const judge::Candidate& candidate,
   return coefficients;
 }
 
-/// Line of the file, or row of a table that has no lines, of each row in use.
-std::vector<std::size_t> lines_of(const table::Table& table, std::size_t n_rows) {
-  std::vector<std::size_t> lines(n_rows);
-  for (std::size_t i = 0; i < n_rows; ++i) lines[i] = line_of(table, i);
-  return lines;
-}
-
 checks::Subject subject_of(const judge::Candidate& candidate, const Eigen::MatrixXd& x, const fit::Fit& fit,
                            const Eigen::VectorXd& weights, const Prepared& prepared) {
   checks::Subject subject{x,  fit.fitted, fit.residuals,           fit.leverage,  weights, fit.sigma,
                           {}, {},         !prepared.order.empty(), prepared.order};
-  subject.lines = lines_of(prepared.table, candidate.n);
+  subject.lines = lines_of(prepared.table);
   std::size_t at = 1;
   for (const auto& term : candidate.terms) {
     subject.term_first.push_back(at);

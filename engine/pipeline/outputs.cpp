@@ -13,12 +13,6 @@ namespace formsieve::pipeline {
 
 namespace {
 
-std::vector<std::size_t> lines_of(const table::Table& table) {
-  std::vector<std::size_t> lines(table.n_rows);
-  for (std::size_t i = 0; i < lines.size(); ++i) lines[i] = i < table.line_of_row.size() ? table.line_of_row[i] : i + 1;
-  return lines;
-}
-
 /// The plan as it must read in `folder` to find its table: the name made relative to the folder, so that both can move
 /// together, or absolute where there is no such way.
 run::Plan seen_from(const std::string& folder, run::Plan plan) {

@@ -231,6 +231,16 @@ Status profile_rows_in_use(Prepared& prepared, const run::Plan& plan, const Role
 
 }  // namespace
 
+std::size_t line_of(const table::Table& table, std::size_t row) {
+  return row < table.line_of_row.size() ? table.line_of_row[row] : row + 1;
+}
+
+std::vector<std::size_t> lines_of(const table::Table& table) {
+  std::vector<std::size_t> lines(table.n_rows);
+  for (std::size_t i = 0; i < lines.size(); ++i) lines[i] = line_of(table, i);
+  return lines;
+}
+
 std::string line_text(const table::Table& table, std::size_t row) {
   if (row < table.line_of_row.size()) return table.source + ", line " + std::to_string(table.line_of_row[row]);
   return table.source + ", row " + std::to_string(row + 1);

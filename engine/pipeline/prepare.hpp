@@ -64,6 +64,11 @@ bool only_repeats(const table::Table& table, const run::Plan& plan, const std::s
 /// The profile of a column by name; it must be there.
 const survey::ColumnProfile& profile_of(const survey::Survey& survey, const std::string& column);
 
+/// Where a row in use stands in its table: the line, or the row counted from 1 where the table has no lines.
+std::size_t line_of(const table::Table& table, std::size_t row);
+/// That of every row in use.
+std::vector<std::size_t> lines_of(const table::Table& table);
+
 /// "coldstores.csv, line 7" of a row in use.
 std::string line_text(const table::Table& table, std::size_t row);
 

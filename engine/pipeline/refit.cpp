@@ -108,10 +108,6 @@ Result<std::vector<Refit>> refit(const Prepared& prepared, const std::vector<jud
   return refits;
 }
 
-std::size_t line_of(const table::Table& table, std::size_t row) {
-  return row < table.line_of_row.size() ? table.line_of_row[row] : row + 1;
-}
-
 std::string cell_text(const table::Table& table, const std::string& name, std::size_t row) {
   const auto index = table.find(name);
   if (!index) return {};

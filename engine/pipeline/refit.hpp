@@ -32,9 +32,6 @@ struct Refit {
 Result<std::vector<Refit>> refit(const Prepared& prepared, const std::vector<judge::Candidate>& recorded,
                                  unsigned threads);
 
-/// Where a row in use stands in its table: the line, or the row counted from 1 where the table has no lines.
-std::size_t line_of(const table::Table& table, std::size_t row);
-
 /// The raw value of a cell in as many digits as it has; empty for an unknown column.
 std::string cell_text(const table::Table& table, const std::string& column, std::size_t row);
 
